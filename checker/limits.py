@@ -1,0 +1,27 @@
+"""How much of a stranger's file is accepted. Counts and sizes only, never wall-clock, so that results do not depend
+on the machine. Beyond a limit the run ends with status 2; a cut report is never printed as if it were whole."""
+
+from __future__ import annotations
+
+FILE_BYTES = 64 * 2**20  # one netlist, BOM or layout
+YAML_BYTES = 4 * 2**20  # declaration, project file, parts file, ruleset, concessions, policy
+REPORT_BYTES = 256 * 2**20  # a saved report
+DEPTH = 32  # nested forms or elements; the deepest real netlist has 8
+TOKEN = 64 * 2**10  # characters of one atom or string
+NAME = 1024  # characters of a reference, pin, net or domain name
+ATOMS = 5_000_000  # atoms of one S-expression file, elements and attributes of one XML file
+PARTS = 250_000
+NETS = 500_000
+PINS_PER_NET = 500_000
+PINS_PER_PART = 20_000
+BOM_ROWS = 250_000
+BOM_COLUMNS = 512
+CELL = 1024  # characters of a BOM cell that are looked at for values and ratings
+REFERENCES_PER_ROW = 20_000
+RANGE = 1_000  # references one range such as C1-C40 may stand for
+ALTERNATES = 32  # candidates of one part
+YAML_DEPTH = 16
+YAML_NODES = 200_000
+DOMAINS = 10_000  # named domains of one design
+VERDICTS = 2_000_000
+DESIGNS = 1_000  # designs of one project file
