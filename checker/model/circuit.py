@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
-from checker.model.fact import Fact, Source
+from checker.model.fact import NOWHERE, Fact, Source
 from checker.model.reading import Note
 
 
@@ -52,6 +52,11 @@ class Part:
         """The nets its pins are on, each once, in pin order."""
         return tuple(dict.fromkeys(pin.net for pin in self.pins if pin.net is not None))
 
+    @property
+    def fact(self) -> Fact:
+        """That this part stands in the design, as evidence with its place."""
+        return Fact("part", self.ref, self.sources[0] if self.sources else NOWHERE)
+
 
 @dataclass(frozen=True, slots=True)
 class Net:
@@ -62,6 +67,11 @@ class Net:
     source: Source
     automatic: bool = False
     classes: tuple[str, ...] = ()
+
+    @property
+    def fact(self) -> Fact:
+        """That this net stands in the design, as evidence with its place."""
+        return Fact("net", self.name, self.source)
 
 
 @dataclass(frozen=True, slots=True)

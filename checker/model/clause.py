@@ -82,6 +82,7 @@ class Clause:
         **more: Any,
     ) -> Verdict:
         """Pass when never_above <= limit, fail when surely > limit, else open. Values in the limit's unit, compared unrounded."""
+        found: Number | None
         if never_above is not None and never_above.value <= limit.value:
             outcome, found = "pass", never_above
         elif surely.value > limit.value:
@@ -110,6 +111,7 @@ class Clause:
         surely: the largest value the part can be said to have (an upper bound); never_below: the smallest. A stated
         figure is both.
         """
+        found: Number | None
         if never_below is not None and never_below.value >= limit.value:
             outcome, found = "pass", never_below
         elif surely is not None and surely.value < limit.value:

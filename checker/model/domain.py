@@ -91,6 +91,7 @@ class Isolation:
 
     domain_of: net -> domain name; nets of a chain link and nets with pins of fewer than two parts are absent.
     links: nets inside chains. inactive: insulating parts with both sides in one domain that no short explains.
+    idle: not-fitted parts that would cross if they were fitted.
     """
 
     domains: Mapping[str, Domain]
@@ -101,6 +102,7 @@ class Isolation:
     questions: tuple[Question, ...] = ()
     links: tuple[str, ...] = ()
     inactive: tuple[str, ...] = ()
+    idle: tuple[Crossing, ...] = ()
 
     def crossing(self, part: str) -> tuple[Crossing, ...]:
         """Every crossing of that part."""

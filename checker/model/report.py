@@ -14,8 +14,9 @@ SCHEMA = "withstand-report/1"
 SCHEMA_SEVERAL = "withstand-reports/1"
 
 CAUTION = (
-    "Withstand does not certify anything. It checks the files it was given against general clauses; accredited certification "
-    "bodies, licensed practice and local codes decide. What is open is not proven. Measure and test before anybody touches the product."
+    "Withstand does not certify anything. It checks the files it was given against general clauses; accredited "
+    "certification bodies, licensed practice and local codes decide. What is open is not proven. "
+    "Measure and test before anybody touches the product."
 )
 
 

@@ -1,0 +1,256 @@
+"""The command line: it parses, calls, and returns an exit status.
+
+0 done; 1 `--stop-at` reached; 2 unusable input or arguments; 3 a fault of the program; 130 interrupted. Reports go to
+standard output, everything else to standard error.
+"""
+
+from __future__ import annotations
+
+import os
+import sys
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING, Any
+
+import click
+
+if TYPE_CHECKING:
+    from checker.model.report import Report, Reports
+
+EXIT_STOP, EXIT_UNUSABLE, EXIT_FAULT, EXIT_INTERRUPTED = 1, 2, 3, 130
+PROJECT_FILE = "withstand.yaml"
+
+
+class _Group(click.Group):
+    """Commands in the order they are written."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        return list(self.commands)
+
+
+@click.group(cls=_Group, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.version_option(package_name="withstand", message="withstand %(version)s")
+def command() -> None:
+    """Prove, from a netlist and a bill of materials, whether an isolated power supply keeps people safe from its hazardous side.
+
+    Withstand does not certify anything; certification bodies, licensed practice and local codes decide.
+    """
+
+
+def _inputs(function: Callable[..., Any]) -> Callable[..., Any]:
+    """The options that say what is judged, the same on every command that reads a design."""
+    for option in (
+        click.option("--variant", metavar="NAME", help="Assembly variant of the netlist or the declaration."),
+        click.option(
+            "--ruleset", metavar="NAME|FILE", multiple=True, help="Ruleset to judge by, instead of the declaration's; repeatable."
+        ),
+        click.option("--declaration", metavar="FILE", help="What the netlist cannot say: supply, environment, hints."),
+        click.option("--parts", metavar="FILE", multiple=True, help="Parts file with ratings and marks; repeatable."),
+        click.option("--bom", metavar="FILE", multiple=True, help="Bill of materials; repeatable."),
+    ):
+        function = option(function)
+    return function
+
+
+@command.command()
+@click.argument("netlist", required=False)
+@_inputs
+@click.option(
+    "--format", "form", metavar="FORM", default="text", show_default=True, help="Form of the report on standard output: text, json."
+)
+@click.option(
+    "--output", metavar="[FORM=]FILE", multiple=True, help="Write the report to a file as well; repeatable, one form each."
+)
+@click.option(
+    "--stop-at",
+    type=click.Choice(["fail", "open", "never"]),
+    default="fail",
+    show_default=True,
+    help="What ends the run with status 1.",
+)
+def verify(
+    netlist: str | None,
+    bom: tuple[str, ...],
+    parts: tuple[str, ...],
+    declaration: str | None,
+    ruleset: tuple[str, ...],
+    variant: str | None,
+    form: str,
+    output: tuple[str, ...],
+    stop_at: str,
+) -> int:
+    """Judge a design: what is proven, what fails, what is open and the one fact that settles it.
+
+    NETLIST is a file, or - for standard input. Without it, every design of withstand.yaml in the current folder is judged.
+    """
+    from checker import api, plugins
+    from checker.errors import ArgumentError
+
+    targets = [_target(text, form) for text in output]
+    writers = {name: plugins.writer(name) for name in (form, *(name for name, _ in targets))}
+    report: Report | Reports
+    if netlist is None:
+        if bom or parts or declaration or variant:
+            raise ArgumentError("--bom, --parts, --declaration and --variant belong to a NETLIST; none was given")
+        if not os.path.exists(PROJECT_FILE):
+            raise ArgumentError(
+                f"no NETLIST was given and there is no {PROJECT_FILE} in the current folder. Name a netlist: "
+                f"withstand verify board.net"
+            )
+        report, raised = api.verify_project(PROJECT_FILE, ruleset=ruleset)
+    else:
+        judged = api.judged(netlist, bom=bom, parts=parts, declaration=declaration, ruleset=ruleset, variant=variant)
+        report, raised = judged.report, judged.raised
+    _write(writers[form].write(report), [(path, writers[name].write(report)) for name, path in targets])
+    return _status(report, raised, stop_at)
+
+
+def _target(text: str, form: str) -> tuple[str, str]:
+    """(form, file) of one --output; a bare file takes the form of --format."""
+    name, mark, path = text.partition("=")
+    return (name, path) if mark and name.isalnum() else (form, text)
+
+
+def _write(shown: bytes, targets: Sequence[tuple[str, bytes]]) -> None:
+    from checker import files
+
+    for path, data in targets:
+        files.write(path, data)
+    sys.stdout.buffer.write(shown)
+    sys.stdout.buffer.flush()
+
+
+def _status(report: Report | Reports, raised: Sequence[str], stop_at: str) -> int:
+    """The exit status of a finished run, the highest that applies."""
+    from checker.model.report import Reports
+
+    for text in raised:
+        click.echo(text, err=True)
+    if raised:
+        return EXIT_FAULT
+    several = isinstance(report, Reports)
+    if isinstance(report, Reports) and report.unreadable:
+        for lost in report.unreadable:
+            click.echo(f"withstand: {lost.design}: {lost.message}", err=True)
+        return EXIT_UNUSABLE
+    reports = report.reports if isinstance(report, Reports) else [report]
+    del several
+    stops = any(_stops(verdict, stop_at) for one in reports for verdict in one.verdicts)
+    return EXIT_STOP if stops else 0
+
+
+def _stops(verdict: Any, stop_at: str) -> bool:
+    if stop_at == "never" or verdict.level == "note" or verdict.conceded is not None:
+        return False
+    if verdict.outcome == "fail":
+        return True
+    return stop_at == "open" and (verdict.outcome == "open" or (verdict.outcome == "pass" and verdict.verified != "true"))
+
+
+@command.command()
+@click.argument("design", metavar="NETLIST|REPORT")
+@_inputs
+def barrier(
+    design: str,
+    bom: tuple[str, ...],
+    parts: tuple[str, ...],
+    declaration: str | None,
+    ruleset: tuple[str, ...],
+    variant: str | None,
+) -> int:
+    """Show the domains, the barriers between them, and what lies across each."""
+    from checker.writers import barriers
+
+    report = _report(design, bom, parts, declaration, ruleset, variant)
+    _write(barriers.write(report).encode(), [])
+    return 0
+
+
+def _report(
+    design: str,
+    bom: tuple[str, ...],
+    parts: tuple[str, ...],
+    declaration: str | None,
+    ruleset: tuple[str, ...],
+    variant: str | None,
+) -> Report | Reports:
+    """A fresh report of a netlist, or a saved one read back."""
+    from checker import api, files, limits
+    from checker.writers import json as json_form
+
+    if design != "-" and os.path.isfile(design):
+        blob = files.read(design, limit=limits.REPORT_BYTES, shown=api.shown_path(design))
+        if blob.data.lstrip()[:1] == b"{":
+            if bom or parts or declaration or ruleset or variant:
+                from checker.errors import ArgumentError
+
+                raise ArgumentError(
+                    "a saved report holds its inputs; --bom, --parts, --declaration, --ruleset and --variant do not apply to it"
+                )
+            return json_form.read(blob)
+    return api.verify(design, bom=bom, parts=parts, declaration=declaration, ruleset=ruleset, variant=variant)
+
+
+@command.command()
+@click.argument("rule")
+def explain(rule: str) -> int:
+    """Print the manual page of a RULE: what it asks, when it passes, fails or stays open, and what settles it."""
+    from checker import plugins
+
+    found = plugins.rule(rule)
+    click.echo(f"{found.id} ({found.hazard})\n\n{found.manual.strip()}")
+    return 0
+
+
+@command.group(cls=_Group)
+def ruleset() -> None:
+    """The rulesets that designs are judged by."""
+
+
+@ruleset.command("list")
+def ruleset_list() -> int:
+    """List every ruleset that can be named."""
+    from checker import rulesets
+
+    for found in rulesets.available():
+        name = f"{found.name}:{found.edition}" if found.edition else found.name
+        clauses = f"{found.clauses} clause{'s' * (found.clauses != 1)}"
+        click.echo(f"{name:<24} revision {found.revision:<4} {clauses:<11} {found.unverified} unverified   {found.title}")
+    return 0
+
+
+def main(arguments: Sequence[str] | None = None) -> None:
+    """Entry point of the console script."""
+    sys.exit(run(arguments))
+
+
+def run(arguments: Sequence[str] | None = None) -> int:
+    """The command line as a function: the exit status, every message already on standard error."""
+    from checker.errors import WithstandError
+
+    try:
+        status = command.main(args=list(arguments) if arguments is not None else None, prog_name="withstand", standalone_mode=False)
+    except click.exceptions.Abort:
+        return EXIT_INTERRUPTED
+    except click.ClickException as error:
+        error.show()
+        return EXIT_UNUSABLE
+    except WithstandError as error:
+        click.echo(f"withstand: {error}", err=True)
+        return error.status
+    except KeyboardInterrupt:
+        return EXIT_INTERRUPTED
+    except BrokenPipeError:
+        # the reader of our output went away; there is nobody to tell
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return EXIT_UNUSABLE
+    except Exception:
+        import traceback
+
+        click.echo(traceback.format_exc(), err=True)
+        click.echo("withstand: a fault of the program, not of your files. Please report it with the lines above.", err=True)
+        return EXIT_FAULT
+    return int(status or 0)
+
+
+if __name__ == "__main__":
+    main()

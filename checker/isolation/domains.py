@@ -1,0 +1,238 @@
+"""The isolation stage: from a circuit to domains, what crosses between them, what defeats them, and what is not known."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+
+from checker.isolation import evidence, shorts, unlisted
+from checker.isolation.crossings import crossings, separations
+from checker.isolation.islands import Islands, build, settle_capacitors, settle_windings
+from checker.isolation.naming import named
+from checker.isolation.shorts import Culprit
+from checker.isolation.sides import assign
+from checker.model.candidate import Candidate
+from checker.model.circuit import Design
+from checker.model.condition import NORMAL, Condition
+from checker.model.declaration import Declaration
+from checker.model.domain import Isolation, Question, Short
+from checker.model.step import Step
+
+ROUNDS = 8  # independent shorts looked for in one design
+WEIGHED = 24  # insulating parts that share one island for which the sides' evidence is compared
+
+
+def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declaration, condition: Condition = NORMAL) -> Isolation:
+    """Domains and barriers of the fitted circuit under a condition.
+
+    A short that defeats insulating parts is taken out and reported, and the domains are those without it: so one planted
+    resistor does not hide what else is wrong with the barrier.
+    """
+    suspects = unlisted.find(design, choice, condition.removed)
+    halved = {suspect.ref: suspect.halves for suspect in suspects}
+    opened = condition.removed
+    found: list[Short] = []
+    while True:
+        isle = build(design, choice, opened, halved)
+        for group in condition.joined:
+            first, *others = [net for net in group if net in isle.live] or [""]
+            for net in others:
+                isle.union.join(first, net)
+        settle_windings(isle)
+        settle_capacitors(isle)
+        short, cut = _next_short(isle, declaration, found)
+        if short is None or len(found) >= ROUNDS:
+            break
+        found.append(short)
+        if not cut:
+            break
+        opened |= frozenset(cut)
+    ordinary = {ref: short for short in found for ref in short.chain if ref in opened}
+    found += _harmless(isle, found)
+    _join_alike(isle, declaration)
+    members = isle.members()
+    gathered = evidence.gather(isle, members)
+    sides = assign(isle, members, gathered, declaration)
+    domains, domain_of = named(isle, members, sides, declaration)
+    crossed, idle = crossings(isle, domain_of, domains, suspects, ordinary)
+    barriers = separations(domains, crossed)
+    inactive = tuple(ref for ref in _inactive(isle) if not any(ref in short.parts for short in found))
+    questions = tuple(_isolator(design, suspect) for suspect in suspects) + tuple(sides.questions)
+    return Isolation(domains, domain_of, crossed, barriers, tuple(found), questions, tuple(isle.links), inactive, idle)
+
+
+def _inactive(isle: Islands) -> list[str]:
+    """Insulating parts with two pin groups or more on live nets, all on one island."""
+    return [
+        ref
+        for ref, candidate in isle.choice.items()
+        if (candidate.insulating or ref in isle.halved)
+        and isle.design.parts[ref].fitted
+        and ref not in isle.opened
+        and len(isle.sides[ref]) > 1
+        and len(isle.part_islands(ref)) == 1
+    ]
+
+
+def _next_short(isle: Islands, declaration: Declaration, known: Sequence[Short]) -> tuple[Short | None, tuple[str, ...]]:
+    """The next fault that joins what should be apart, and the parts to open so that the rest can be judged."""
+    members = isle.members()
+    for reason, one, two in _opposed(isle, members, declaration):
+        if any(set(short.nets) == {one[0], two[0]} for short in known):
+            continue
+        return _joined(isle, members, reason, one, two)
+    inactive = _inactive(isle)
+    if not inactive:
+        return None, ()
+    for culprit in shorts.find(isle, members, inactive)[:WEIGHED]:
+        if culprit.chain and (len(culprit.parts) > 1 or _sides_differ(isle, culprit)):
+            cut = culprit.chain if culprit.cut else shorts.easiest(isle, culprit.chain)
+            if cut:
+                return _short(isle, members, culprit, cut), cut
+    return None, ()
+
+
+def _opposed(isle: Islands, members: Mapping[str, list[str]], declaration: Declaration) -> list[tuple[str, list[str], list[str]]]:
+    """Groups of nets on one island that evidence or the declaration says are two circuits: reason, nets of one, nets of the
+    other."""
+    found = []
+    seeds: dict[str, tuple[str, str]] = {}
+    for domain in declaration.domains.values():
+        for net in domain.nets:
+            if net in isle.live and net not in isle.links:
+                island = isle.island(net)
+                if island in seeds and seeds[island][0] != domain.name:
+                    other, first = seeds[island]
+                    found.append((f"the declaration keeps {other} and {domain.name} apart", [first], [net]))
+                seeds.setdefault(island, (domain.name, net))
+    bonded = {net for domain in declaration.domains.values() if domain.side == "earth" for net in domain.nets}
+    for island, gathered in evidence.gather(isle, members).items():
+        if gathered.is_mains and gathered.is_earth and not bonded & set(members[island]):
+            earth = _seed_nets(isle, island, gathered.earth.values())
+            mains = [net for net in _seed_nets(isle, island, gathered.mains.values()) if net not in earth]
+            if earth and mains:
+                found.append(("protective earth and the mains conductors are two circuits", mains[:1], earth[:1]))
+    return found
+
+
+def _seed_nets(isle: Islands, island: str, pieces) -> list[str]:  # type: ignore[no-untyped-def]
+    """Nets the strongest pieces of evidence point at: the net itself, or those of the part on this island."""
+    nets: dict[str, None] = {}
+    for weight, sentence, fact in sorted(pieces, key=lambda piece: -piece[0]):
+        if fact.attribute == "net":
+            nets[str(fact.value)] = None
+        elif weight == evidence.STRONG:
+            for pin in isle.design.parts[str(fact.value)].pins:
+                if pin.net in isle.live and isle.island(pin.net) == island and f".{pin.number}" in sentence:
+                    nets[pin.net] = None
+            for net in isle.design.parts[str(fact.value)].nets():
+                if net in isle.live and isle.island(net) == island and "contact" not in sentence:
+                    nets[net] = None
+    return [net for net in nets if isle.island(net) == island]
+
+
+def _joined(
+    isle: Islands, members: Mapping[str, list[str]], reason: str, one: list[str], two: list[str]
+) -> tuple[Short, tuple[str, ...]]:
+    nets = members[isle.island(one[0])]
+    chain, cut = shorts.between(isle, nets, one, two)
+    way = shorts.path(isle, one, two, nets)
+    opened = chain if cut else shorts.easiest(isle, chain) if chain else ()
+    facts = tuple(isle.design.parts[ref].fact for ref in opened) + tuple(isle.design.nets[net].fact for net in (one[0], two[0]))
+    step = Step(
+        f"{reason}, yet direct current flows from {one[0]} to {two[0]} through {_through(way)}", facts, result=" - ".join(way)
+    )
+    return Short(tuple(opened), (), (one[0], two[0]), way, True, step), tuple(opened)
+
+
+def _through(way: Sequence[str]) -> str:
+    parts = way[1::2]
+    return ", ".join(parts) if parts else "one net"
+
+
+def _sides_differ(isle: Islands, culprit: Culprit) -> bool:
+    """Whether one side of an insulating part hangs on the mains and the other does not, once the chain is open."""
+    trial = build(isle.design, isle.choice, isle.opened | set(culprit.chain), isle.halved)
+    settle_windings(trial)
+    settle_capacitors(trial)
+    gathered = evidence.gather(trial, trial.members())
+    for first, second in culprit.split.values():
+        hazard = [any(gathered[trial.island(net)].is_mains for net in side if net not in trial.links) for side in (first, second)]
+        if hazard[0] != hazard[1]:
+            return True
+    return False
+
+
+def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, cut: tuple[str, ...]) -> Short:
+    part = culprit.parts[0]
+    first, second = culprit.split[part]
+    way = shorts.path(isle, first, second, members[isle.island(first[0])])
+    any_of = " - ".join(culprit.chain)
+    facts = tuple(isle.design.parts[ref].fact for ref in (*cut, *culprit.parts[:6]))
+    count = len(culprit.parts)
+    step = Step(
+        f"with {any_of if len(culprit.chain) == 1 else 'any one of ' + any_of} taken out, {count} insulating part{'s' * (count > 1)} "
+        f"({', '.join(culprit.parts[:6])}{' ...' * (count > 6)}) separate two circuits; with it they do not",
+        facts,
+        result=" - ".join(way),
+    )
+    nets = way[:1] + way[-1:] if way else (first[0], second[0])
+    return Short(culprit.chain if not culprit.cut else cut, culprit.parts, nets, way, True, step)
+
+
+def _harmless(isle: Islands, known: Sequence[Short]) -> list[Short]:
+    """Insulating parts that insulate nothing, without evidence that they should: one piece of information each."""
+    members = isle.members()
+    found = []
+    inactive = [ref for ref in _inactive(isle) if not any(ref in short.parts for short in known)]
+    for culprit in shorts.find(isle, members, inactive):
+        part = culprit.parts[0]
+        facts = tuple(isle.design.parts[ref].fact for ref in (*culprit.chain[:4], *culprit.parts[:6]))
+        if culprit.chain:
+            first, second = culprit.split[part]
+            way = shorts.path(isle, first, second, members[isle.island(first[0])])
+            text = f"{' - '.join(culprit.chain)} joins the two sides of {', '.join(culprit.parts)}"
+            found.append(Short(culprit.chain, culprit.parts, way[:1] + way[-1:], way, False, Step(text, facts)))
+        else:
+            faulty = len(culprit.parts) > 1
+            text = f"net {', '.join(culprit.nets)} is on both sides of {', '.join(culprit.parts)}"
+            found.append(Short((), culprit.parts, culprit.nets, culprit.nets[:1], faulty, Step(text, facts)))
+    return found
+
+
+def _join_alike(isle: Islands, declaration: Declaration) -> None:
+    """Make one what is one without a conductor on the board: nets of a declared domain, all mains wires, all protective earth."""
+    declared: dict[str, str] = {}
+    for domain in declaration.domains.values():
+        nets = [net for net in domain.nets if net in isle.live and net not in isle.links]
+        for net in nets:
+            declared[net] = domain.name
+            isle.union.join(nets[0], net)
+    members = isle.members()
+    owner = {isle.island(net): name for net, name in declared.items()}
+    gathered = evidence.gather(isle, members)
+    for test in ("is_mains", "is_earth"):
+        alike = [
+            island for island, piece in gathered.items() if getattr(piece, test) and not (test == "is_mains" and piece.is_earth)
+        ]
+        names = {owner[island] for island in alike if island in owner}
+        for island in alike[1:] if len(names) <= 1 else ():
+            isle.union.join(alike[0], island)
+
+
+def _isolator(design: Design, suspect: unlisted.Unlisted) -> Question:
+    low, high = (f"{half[0]} to {half[-1]}" for half in suspect.halves)
+    text = (
+        f"{suspect.ref} has {suspect.nets[0]} nets on the side of pins {low} and {suspect.nets[1]} on that of pins {high}, "
+        "and nothing else joins them: is it an isolator?"
+    )
+    part = design.parts[suspect.ref]
+    return Question(
+        "isolator",
+        text,
+        (suspect.ref,),
+        (),
+        "kind",
+        f"parts: {{{suspect.ref}: {{kind: ...}}}} in the declaration, or kind in a parts file",
+        (("an insulating kind such as digital-isolator", "pass"), ("an ordinary kind such as ic", "fail")),
+        Step(text, (part.fact, *part.facts[:4])),
+    )

@@ -1,0 +1,256 @@
+"""Islands: nets that direct current can reach from one another, before anybody knows what they mean.
+
+Steps 1, 3, 5 and 6 of finding domains: pins that do not count, pin groups, their union, then what capacitors and surge
+limiters add. An island is named by its first net in file order.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, field
+
+from checker.isolation.groups import LIMITERS, TRANSFORMERS, Groups, groups
+from checker.isolation.names import earth_like, role
+from checker.model.candidate import CONNECTORS, INSULATING, MECHANICAL, Candidate
+from checker.model.circuit import Design, Part
+
+# what a stub may hold: an island of these carries a conductor somewhere, it does not process anything
+_PASSIVE = CONNECTORS | MECHANICAL | INSULATING | LIMITERS | {
+    "capacitor", "fuse", "resettable-fuse", "switch", "common-mode-choke", "filter", "inductor", "ferrite", "jumper", "net-tie",
+    "thermistor", "lamp", "motor", "antenna",
+}  # fmt: skip
+SMOOTHING = 90e-9  # F; 0.1 uF and more, with the tolerance of a nominal 100 nF, smooths; a barrier capacitor was 1 to 10 nF
+SMALL = 11e-9  # F; up to about 10 nF a capacitor between two islands is taken for a barrier capacitor
+LINE_RATING = 250.0  # V; a capacitor rated for this much is never taken for a smoothing capacitor
+
+
+class Union:
+    """Disjoint sets of hashable items, near-linear; the root of a set is its first-added member."""
+
+    def __init__(self, items: Iterable[str]) -> None:
+        self.parent = {item: item for item in items}
+        self.order = {item: at for at, item in enumerate(self.parent)}
+
+    def find(self, item: str) -> str:
+        """The representative of the item's set."""
+        parent = self.parent
+        root = item
+        while parent[root] != root:
+            root = parent[root]
+        while parent[item] != root:
+            parent[item], item = root, parent[item]
+        return root
+
+    def join(self, one: str, two: str) -> None:
+        """Make the two sets one."""
+        a, b = self.find(one), self.find(two)
+        if a != b:
+            if self.order[a] > self.order[b]:
+                a, b = b, a
+            self.parent[b] = a
+
+
+@dataclass(slots=True)
+class Islands:
+    """The circuit as conduction sees it, while the isolation stage works on it.
+
+    live: nets that count. sides: reference -> its pin groups as tuples of live nets, lone pins as groups of one.
+    union: the islands. opened: parts taken out of conduction on purpose. joined: capacitors and limiters that joined a stub.
+    links: net -> the link it belongs to (nets with nothing but capacitors between two islands).
+    """
+
+    design: Design
+    choice: Mapping[str, Candidate]
+    opened: frozenset[str] = frozenset()
+    live: dict[str, tuple[str, ...]] = field(default_factory=dict)
+    sides: dict[str, tuple[tuple[str, ...], ...]] = field(default_factory=dict)
+    union: Union = field(default_factory=lambda: Union(()))
+    joined: dict[str, tuple[str, str]] = field(default_factory=dict)
+    links: set[str] = field(default_factory=set)
+    halved: dict[str, Groups] = field(default_factory=dict)
+
+    def kind(self, ref: str) -> str:
+        """The kind of the candidate under judgement."""
+        return self.choice[ref].kind
+
+    def island(self, net: str) -> str:
+        """The island of a live net."""
+        return self.union.find(net)
+
+    def members(self) -> dict[str, list[str]]:
+        """Island -> its nets, both in file order, links left out."""
+        found: dict[str, list[str]] = {}
+        for net in self.live:
+            if net not in self.links:
+                found.setdefault(self.union.find(net), []).append(net)
+        return found
+
+    def part_islands(self, ref: str) -> tuple[str, ...]:
+        """The islands a part's live nets lie in, each once, links left out."""
+        return tuple(dict.fromkeys(self.union.find(n) for side in self.sides[ref] for n in side if n not in self.links))
+
+
+def build(
+    design: Design,
+    choice: Mapping[str, Candidate],
+    opened: frozenset[str] = frozenset(),
+    halved: Mapping[str, Groups] | None = None,
+) -> Islands:
+    """Islands of the fitted circuit. opened: parts that join nothing. halved: parts to be taken as insulating, with their
+    pin groups."""
+    isle = Islands(design, choice, opened, halved=dict(halved or {}))
+    isle.live = live_nets(design, choice)
+    diodes = {
+        frozenset(nets)
+        for ref, part in design.parts.items()
+        if part.fitted and choice[ref].kind in ("diode", "zener", "tvs") and len(nets := part.nets()) == 2
+    }
+    isle.union = Union(isle.live)
+    for ref, part in design.parts.items():
+        isle.sides[ref] = _sides(isle, part, choice[ref], diodes)
+        if ref not in opened:
+            for side in isle.sides[ref]:
+                for net in side[1:]:
+                    isle.union.join(side[0], net)
+    return isle
+
+
+def live_nets(design: Design, choice: Mapping[str, Candidate]) -> dict[str, tuple[str, ...]]:
+    """Nets with pins of two parts or more, each with its parts; holes and logos do not count, not-fitted parts do (they may
+    be fitted)."""
+    live = {}
+    for name, net in design.nets.items():
+        refs = tuple(dict.fromkeys(ref for ref, _ in net.pins if ref in choice and choice[ref].kind not in ("fiducial", "logo")))
+        if len(refs) > 1:
+            live[name] = refs
+    return live
+
+
+def _sides(isle: Islands, part: Part, candidate: Candidate, diodes: set[frozenset[str]]) -> tuple[tuple[str, ...], ...]:
+    net_of = {pin.number: pin.net for pin in part.pins if pin.net in isle.live}
+    if part.ref in isle.halved:
+        found: Groups = isle.halved[part.ref]
+    else:
+        found = groups(part, candidate, lambda a, b: frozenset((a, b)) in diodes)
+    taken = {pin for group in found for pin in group}
+    sides = [tuple(dict.fromkeys(net_of[pin] for pin in group if pin in net_of)) for group in found]
+    sides += [(net,) for pin, net in net_of.items() if pin not in taken]
+    return tuple(dict.fromkeys(side for side in sides if side))
+
+
+def settle_windings(isle: Islands) -> None:
+    """Join the two ends of a winding that the circuit does not join: both on one transformer and on one connector, nothing
+    else there."""
+    members = isle.members()
+    stub = {island: is_stub(isle, nets) for island, nets in members.items()}
+    before = {net: isle.island(net) for net in isle.live}
+    for ref, candidate in isle.choice.items():
+        if candidate.kind not in TRANSFORMERS or candidate.windings or ref in isle.opened:
+            continue
+        by_connector: dict[str, list[str]] = {}
+        for net in (side[0] for side in isle.sides[ref] if len(side) == 1):
+            if stub.get(before[net], False):
+                for other in _reached(isle, net, members[before[net]]):
+                    if isle.kind(other) in CONNECTORS:
+                        by_connector.setdefault(other, []).append(net)
+        for nets in by_connector.values():
+            for net in nets[1:]:
+                isle.union.join(nets[0], net)
+
+
+def _reached(isle: Islands, net: str, island: list[str]) -> tuple[str, ...]:
+    """Parts on the net's island when it is small, else on the net alone: the connector behind a fuse or a choke counts."""
+    nets = island if len(island) <= 6 else [net]
+    return tuple(dict.fromkeys(ref for each in nets for ref in isle.live[each]))
+
+
+def is_stub(isle: Islands, nets: list[str]) -> bool:
+    """Whether these nets hold only windings, connectors, capacitors and the like: nothing that processes or loads."""
+    return all(isle.kind(ref) in _PASSIVE for net in nets for ref in isle.live[net])
+
+
+def settle_capacitors(isle: Islands) -> None:
+    """Find the links of capacitor chains, then let smoothing capacitors and limiters join what only hangs on them.
+
+    A net with nothing but capacitors belongs to the one island it touches, else it is a link. 0.1 uF and more with one end
+    on a stub joins; so does a small one on a stub that nothing marks as a conductor of its own. Nothing with a safety class
+    or a line rating joins, and nothing that would put both sides of an insulating part on one island.
+    """
+    _find_links(isle)
+    members = isle.members()
+    stubs = {island: is_stub(isle, nets) for island, nets in members.items()}
+    for ref, candidate in isle.choice.items():
+        if (
+            (candidate.kind != "capacitor" and candidate.kind not in LIMITERS)
+            or not isle.design.parts[ref].fitted
+            or ref in isle.opened
+        ):
+            continue
+        islands = isle.part_islands(ref)
+        if len(islands) != 2 or not (stubs.get(islands[0], False) or stubs.get(islands[1], False)):
+            continue
+        stub = islands[0] if stubs.get(islands[0], False) else islands[1]
+        if _joins(isle, candidate, members[stub]) and not _defeats(isle, islands, members):
+            one, two = islands
+            isle.joined[ref] = (one, two)
+            isle.union.join(one, two)
+            kept = isle.union.find(one)
+            gone = two if kept == one else one
+            members[kept] = [*members[kept], *members.pop(gone)]
+            stubs[kept] = stubs[one] and stubs[two]
+            stubs.pop(gone)
+
+
+def _joins(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
+    if candidate.kind in LIMITERS:
+        return not any(earth_like(net) for net in stub)
+    if candidate.marks or ((rating := candidate.ratings.get("voltage")) is not None and float(rating.value) >= LINE_RATING):
+        return False
+    value = candidate.value
+    if value is not None and isinstance(value.value, float) and value.value >= SMOOTHING:
+        return True
+    return not any(earth_like(net) or role(net) for net in stub)
+
+
+def _defeats(isle: Islands, islands: tuple[str, str], members: Mapping[str, list[str]]) -> bool:
+    """Whether joining two islands would leave an insulating part with all its pins on one."""
+    smaller = min(islands, key=lambda island: len(members[island]))
+    for net in members[smaller]:
+        for ref in isle.live[net]:
+            if isle.choice[ref].insulating or ref in isle.halved:
+                here = set(isle.part_islands(ref))
+                if len(here) > 1 and here <= set(islands):
+                    return True
+    return False
+
+
+def _find_links(isle: Islands) -> None:
+    """Nets on which only capacitors stand, grouped through capacitors; joined to the one island they touch, else links."""
+    bare = {
+        net
+        for net, refs in isle.live.items()
+        if all(isle.kind(ref) == "capacitor" and isle.design.parts[ref].fitted and ref not in isle.opened for ref in refs)
+    }
+    seen: set[str] = set()
+    for net in isle.live:
+        if net not in bare or net in seen:
+            continue
+        touched: dict[str, str] = {}
+        group, stack = [], [net]
+        seen.add(net)
+        while stack:
+            here = stack.pop()
+            group.append(here)
+            for ref in isle.live[here]:
+                for other in isle.design.parts[ref].nets():
+                    if other in bare:
+                        if other not in seen:
+                            seen.add(other)
+                            stack.append(other)
+                    elif other in isle.live:
+                        touched.setdefault(isle.island(other), other)
+        if len(touched) == 1:
+            for other in group:
+                isle.union.join(next(iter(touched.values())), other)
+        elif touched:
+            isle.links.update(group)

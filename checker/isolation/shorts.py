@@ -1,0 +1,311 @@
+"""Which ordinary part defeats the insulating parts (step 9 of finding domains).
+
+The question is asked from the two sides of an insulating part whose sides lie on one island: which part, taken out, makes
+them come apart again? A part that does is an articulation point of the circuit graph on the way between the sides, so one
+depth-first walk per island answers for all parts and all insulating parts (Hopcroft and Tarjan, Communications of the ACM
+16, 1973: a child c of p lies apart from the rest without p when low(c) >= depth(p)).
+"""
+
+from __future__ import annotations
+
+from bisect import bisect_right
+from collections import Counter
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, field
+
+import networkx as nx
+
+from checker.isolation.groups import TRANSFORMERS
+from checker.isolation.islands import Islands
+from checker.model.candidate import MECHANICAL
+
+MOST_CUTS = 8  # insulating parts for which a minimum cut is tried when no single part explains the short
+DEAREST_CUT = 12  # beyond this many parts' worth the two sides are simply one circuit
+CUT_NODES = 20_000  # nets and parts of an island beyond which no minimum cut is tried
+
+
+@dataclass(frozen=True, slots=True)
+class Culprit:
+    """chain: ordinary parts in series, any of which, taken out, separates `parts`. nets: when a net itself is on both sides.
+
+    split: for each insulating part its live nets on the first and the second side once the chain is open.
+    """
+
+    chain: tuple[str, ...]
+    parts: tuple[str, ...]
+    nets: tuple[str, ...] = ()
+    split: Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]] = field(default_factory=dict)
+    cut: bool = False
+
+
+@dataclass(slots=True)
+class _Walk:
+    """Depth-first numbers of one island's graph; nodes are `n:net` and `p:ref:side`."""
+
+    enter: dict[str, int] = field(default_factory=dict)
+    leave: dict[str, int] = field(default_factory=dict)
+    low: dict[str, int] = field(default_factory=dict)
+    parent: dict[str, str | None] = field(default_factory=dict)
+    children: dict[str, list[str]] = field(default_factory=dict)
+
+    def without(self, node: str, other: str) -> str:
+        """The component `other` lies in when `node` is taken out, named by a child of `node` or "" for the part above."""
+        if not self.enter[node] < self.enter[other] <= self.leave[node]:
+            return ""
+        children = self.children[node]
+        child = children[bisect_right([self.enter[c] for c in children], self.enter[other]) - 1]
+        return child if self.low[child] >= self.enter[node] else ""
+
+    def between(self, one: str, two: str) -> list[str]:
+        """Nodes of the tree path from one to two, ends included."""
+        up, down = [one], [two]
+        while up[-1] != down[-1]:
+            if self.enter[up[-1]] > self.enter[down[-1]]:
+                up.append(self.parent[up[-1]] or "")
+            else:
+                down.append(self.parent[down[-1]] or "")
+        return up + down[-2::-1]
+
+
+def _graph(isle: Islands, nets: Iterable[str]) -> dict[str, list[str]]:
+    graph: dict[str, list[str]] = {f"n:{net}": [] for net in nets}
+    seen = set()
+    for net in nets:
+        for ref in isle.live[net]:
+            if ref in seen or ref in isle.opened:
+                continue
+            seen.add(ref)
+            sides = list(isle.sides[ref])
+            if ref in isle.joined:
+                sides = [tuple(n for side in sides for n in side)]
+            for at, side in enumerate(sides):
+                here = [f"n:{n}" for n in side if f"n:{n}" in graph]
+                if len(here) > 1:
+                    node = f"p:{at}:{ref}"
+                    graph[node] = here
+                    for other in here:
+                        graph[other].append(node)
+    return graph
+
+
+def _walk(graph: Mapping[str, Sequence[str]], root: str) -> _Walk:
+    walk = _Walk()
+    clock = 0
+    stack: list[tuple[str, int]] = [(root, 0)]
+    walk.parent[root] = None
+    while stack:
+        node, at = stack.pop()
+        if at == 0:
+            walk.enter[node] = walk.low[node] = clock
+            walk.children[node] = []
+            clock += 1
+        elif walk.children[node] and walk.parent[graph[node][at - 1]] == node:
+            walk.low[node] = min(walk.low[node], walk.low[graph[node][at - 1]])
+        neighbours = graph[node]
+        while at < len(neighbours):
+            other = neighbours[at]
+            at += 1
+            if other not in walk.enter:
+                walk.parent[other] = node
+                walk.children[node].append(other)
+                stack.append((node, at))
+                stack.append((other, 0))
+                break
+            if other != walk.parent[node]:
+                walk.low[node] = min(walk.low[node], walk.enter[other])
+        else:
+            walk.leave[node] = clock - 1
+    return walk
+
+
+def _ref(node: str) -> str:
+    return node.split(":", 2)[2]
+
+
+def find(isle: Islands, members: Mapping[str, Sequence[str]], inactive: Sequence[str]) -> tuple[Culprit, ...]:
+    """For insulating parts with all sides on one island: what joins them, best explanation first. Parts nothing explains are
+    absent."""
+    by_island: dict[str, list[str]] = {}
+    for ref in inactive:
+        for island in isle.part_islands(ref)[:1]:
+            by_island.setdefault(island, []).append(ref)
+    found: list[Culprit] = []
+    for island, refs in by_island.items():
+        found += _on_island(isle, members[island], refs)
+    return tuple(sorted(found, key=lambda culprit: -len(culprit.parts)))
+
+
+def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str]) -> list[Culprit]:
+    graph = _graph(isle, nets)
+    walk = _walk(graph, f"n:{nets[0]}")
+    separates: dict[str, dict[str, tuple[tuple[str, ...], tuple[str, ...]]]] = {}
+    shared: list[Culprit] = []
+    for ref in refs:
+        both = shared_nets(isle, ref)
+        if both:
+            shared.append(Culprit((), (ref,), both))
+            continue
+        for node in _candidates(isle, walk, ref):
+            split = _split(isle, walk, node, ref)
+            if split is not None:
+                separates.setdefault(_ref(node), {})[ref] = split
+    culprits = _grouped(separates, walk)
+    explained = {ref for culprit in culprits for ref in culprit.parts} | {ref for culprit in shared for ref in culprit.parts}
+    rest = [ref for ref in refs if ref not in explained]
+    if rest and not culprits and len(graph) <= CUT_NODES:
+        culprits += _cuts(isle, graph, rest)
+    merged: dict[tuple[str, ...], list[str]] = {}
+    for culprit in shared:
+        merged.setdefault(culprit.nets, []).append(culprit.parts[0])
+    return culprits + [Culprit((), tuple(parts), both) for both, parts in merged.items()]
+
+
+def shared_nets(isle: Islands, ref: str) -> tuple[str, ...]:
+    """Nets that are on both sides of a part with two or more pin groups."""
+    sides = [set(side) for side in isle.sides[ref] if len(side) > 0]
+    if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings:
+        return ()
+    counts = Counter(net for side in sides for net in side)
+    return tuple(net for net in isle.live if counts.get(net, 0) > 1) if any(n > 1 for n in counts.values()) else ()
+
+
+def _candidates(isle: Islands, walk: _Walk, ref: str) -> list[str]:
+    """Ordinary parts on the tree paths between the sides of an insulating part."""
+    ends = [f"n:{side[0]}" for side in isle.sides[ref] if f"n:{side[0]}" in walk.enter]
+    found: dict[str, None] = {}
+    for end in ends[1:]:
+        for node in walk.between(ends[0], end):
+            if node.startswith("p:") and not isle.choice[_ref(node)].insulating and _ref(node) not in isle.halved:
+                found[node] = None
+    return list(found)
+
+
+def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> tuple[tuple[str, ...], tuple[str, ...]] | None:
+    """The nets of an insulating part on the two sides of `node` once it is open, None when that does not separate the part."""
+    parts: dict[str, list[str]] = {}
+    pins: Counter[str] = Counter()
+    net_pins = Counter(pin.net for pin in isle.design.parts[ref].pins)
+    for side in isle.sides[ref]:
+        homes = {walk.without(node, f"n:{net}") for net in side if f"n:{net}" in walk.enter}
+        if len(homes) != 1:
+            return None
+        home = homes.pop()
+        parts.setdefault(home, []).extend(side)
+        pins[home] += sum(net_pins[net] for net in side)
+    if len(parts) < 2:
+        return None
+    if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings:
+        # a winding has two ends: a cut that leaves one pin alone opens a rectifier or a switch, not the barrier
+        parts = {home: nets for home, nets in parts.items() if pins[home] >= 2}
+        if len(parts) < 2 or sum(pins[home] for home in parts) < sum(pins.values()):
+            return None
+    first, *others = parts.values()
+    return tuple(dict.fromkeys(first)), tuple(dict.fromkeys(net for nets in others for net in nets))
+
+
+def _grouped(separates: Mapping[str, Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]], walk: _Walk) -> list[Culprit]:
+    """The part that separates most insulating parts wins; ties that separate the same ones are one chain. Repeated for what
+    is left."""
+    left = {ref: dict(parts) for ref, parts in separates.items()}
+    found = []
+    while left:
+        most = max(len(parts) for parts in left.values())
+        best = next(ref for ref, parts in left.items() if len(parts) == most)
+        parts = tuple(left[best])
+        chain = tuple(ref for ref, others in left.items() if tuple(others) == parts)
+        found.append(Culprit(chain, parts, (), left[best]))
+        left = {ref: rest for ref, others in left.items() if (rest := {p: s for p, s in others.items() if p not in parts})}
+    return found
+
+
+def _flow(isle: Islands, graph: Mapping[str, Sequence[str]]) -> nx.DiGraph:
+    """The flow network whose minimum cut is the cheapest set of ordinary parts; a part costs more the more nets it joins."""
+    flow = nx.DiGraph()
+    for node, neighbours in graph.items():
+        capacity = float("inf")
+        if node.startswith("p:") and not isle.choice[_ref(node)].insulating and _ref(node) not in isle.halved:
+            count = len(neighbours)
+            capacity = 1 if count <= 2 else 2 if count == 3 else 3 if count <= 8 else 10
+        flow.add_edge(("in", node), ("out", node), capacity=capacity)
+        for other in neighbours:
+            flow.add_edge(("out", node), ("in", other), capacity=float("inf"))
+    return flow
+
+
+def _minimum_cut(isle: Islands, flow: nx.DiGraph, one: str, two: str) -> tuple[str, ...]:
+    """References of the cheapest cut between two nets, in file order; () when only insulating parts or nets could be cut."""
+    try:
+        value, (near, _) = nx.minimum_cut(flow, ("out", f"n:{one}"), ("in", f"n:{two}"))
+    except nx.NetworkXUnbounded:
+        return ()
+    if value > DEAREST_CUT:
+        return ()
+    cut = {_ref(node) for half, node in near if half == "in" and node.startswith("p:") and ("out", node) not in near}
+    return tuple(ref for ref in isle.design.parts if ref in cut)
+
+
+def _cuts(isle: Islands, graph: Mapping[str, Sequence[str]], refs: Sequence[str]) -> list[Culprit]:
+    """Several parts bridge: the cheapest cut between the sides of each insulating part that no single part explains."""
+    flow = _flow(isle, graph)
+    found: list[Culprit] = []
+    for ref in refs[:MOST_CUTS]:
+        sides = [side for side in isle.sides[ref] if f"n:{side[0]}" in graph]
+        if len(sides) < 2 or (isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings):
+            continue
+        parts = _minimum_cut(isle, flow, sides[0][0], sides[1][0])
+        if parts:
+            found.append(Culprit(parts, (ref,), (), {ref: (sides[0], sides[1])}, cut=True))
+    merged: dict[tuple[str, ...], Culprit] = {}
+    for culprit in found:
+        known = merged.get(culprit.chain)
+        parts = (known.parts if known else ()) + culprit.parts
+        merged[culprit.chain] = Culprit(culprit.chain, parts, (), {**(known.split if known else {}), **culprit.split}, cut=True)
+    return list(merged.values())
+
+
+def path(isle: Islands, one: Sequence[str], two: Sequence[str], nets: Iterable[str]) -> tuple[str, ...]:
+    """The shortest conducting way from one group of nets to another: net, part, net ... ; () when there is none."""
+    graph = _graph(isle, nets)
+    goal = {f"n:{net}" for net in two}
+    came: dict[str, str] = {f"n:{net}": "" for net in one if f"n:{net}" in graph}
+    queue = list(came)
+    for node in queue:
+        if node in goal:
+            way = [node]
+            while came[way[-1]]:
+                way.append(came[way[-1]])
+            return tuple(n.split(":", 1)[1] if n.startswith("n:") else _ref(n) for n in reversed(way))
+        for other in graph[node]:
+            if other not in came:
+                came[other] = node
+                queue.append(other)
+    return ()
+
+
+def easiest(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
+    """Which links of a series chain to open: the run around the part that most likely does not belong there."""
+    order = ("net-tie", "jumper", "resistor", "ferrite", "potentiometer", "network", "inductor", "capacitor", "diode", "led")
+    rank = {kind: at for at, kind in enumerate(order)}
+    best = min(chain, key=lambda ref: (rank.get(isle.kind(ref), len(order)), len(isle.design.parts[ref].pins)))
+    return tuple(ref for ref in chain if ref == best) if isle.kind(best) not in MECHANICAL else ()
+
+
+def between(isle: Islands, nets: Sequence[str], one: Sequence[str], two: Sequence[str]) -> tuple[tuple[str, ...], bool]:
+    """What joins two groups of nets of one island: (series chain of ordinary parts, False), or (cheapest cut, True), or ((),
+    False)."""
+    graph = _graph(isle, nets)
+    walk = _walk(graph, f"n:{nets[0]}")
+    way = walk.between(f"n:{one[0]}", f"n:{two[0]}")
+    chain = tuple(
+        dict.fromkeys(
+            _ref(node)
+            for node in way
+            if node.startswith("p:")
+            and not isle.choice[_ref(node)].insulating
+            and walk.without(node, f"n:{one[0]}") != walk.without(node, f"n:{two[0]}")
+        )
+    )
+    if chain or set(one) & set(two) or len(graph) > CUT_NODES:
+        return chain, False
+    parts = _minimum_cut(isle, _flow(isle, graph), one[0], two[0])
+    return parts, bool(parts)

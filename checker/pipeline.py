@@ -1,0 +1,156 @@
+"""The order of the stages, and nothing else: readings -> design -> identity -> isolation -> setting -> grades -> verdicts ->
+report."""
+
+from __future__ import annotations
+
+import traceback
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+
+from checker import plugins
+from checker.assemble.join import assemble
+from checker.errors import WithstandError
+from checker.identify.candidates import identify
+from checker.isolation.domains import isolate
+from checker.limits import VERDICTS
+from checker.model.candidate import Candidate, Identity
+from checker.model.circuit import Design
+from checker.model.clause import Clause, Subject
+from checker.model.declaration import Declaration
+from checker.model.reading import Reading
+from checker.model.report import Report
+from checker.model.requirement import Grade
+from checker.model.rule import Analysis
+from checker.model.ruleset import Ruleset
+from checker.model.step import Step
+from checker.model.verdict import OUTCOMES, Missing, Verdict
+from checker.reporting import fingerprint, report
+from checker.requirements.grade import TABLE, needed
+from checker.stress.sources import setting
+
+
+@dataclass(frozen=True, slots=True)
+class Judged:
+    """A report, and the tracebacks of rules that raised (each is an open verdict in the report; the run ends with 3)."""
+
+    report: Report
+    raised: tuple[str, ...] = ()
+
+
+def judge(
+    name: str,
+    readings: Sequence[Reading],
+    declaration: Declaration,
+    rulesets: Sequence[Ruleset],
+    inputs: Sequence[tuple[str, str, str]],
+    variant: str | None = None,
+) -> Judged:
+    """Everything from readings to the report. inputs: (role, path as shown, sha256) of each file the run rests on."""
+    design = assemble(name, readings, declaration, variant)
+    identity = identify(design, declaration)
+    raised: list[str] = []
+    worst: dict[tuple[str, str], Verdict] = {}
+    first: Analysis | None = None
+    for choice in choices(identity):
+        analysis = analyse(design, declaration, identity, choice, rulesets)
+        first = first or analysis
+        for verdict in verdicts(analysis, rulesets, raised):
+            key = (verdict.clause, fingerprint(verdict))
+            if key not in worst or _rank(verdict) < _rank(worst[key]):
+                worst[key] = verdict if analysis is first else _from_alternate(verdict, choice, identity)
+            if len(worst) > VERDICTS:
+                raise WithstandError(f"{name}: more than {VERDICTS:,} verdicts; split the design")
+    assert first is not None
+    return Judged(report(first, tuple(worst.values()), rulesets, inputs, plugins.plugin_names()), tuple(raised))
+
+
+def choices(identity: Identity) -> Iterator[Mapping[str, Candidate]]:
+    """Choices to judge: every first candidate, then every second, ..., so that each candidate of each part is judged once."""
+    yield {ref: candidates[0] for ref, candidates in identity.items()}
+    for at in range(1, max((len(candidates) for candidates in identity.values()), default=1)):
+        yield {ref: candidates[min(at, len(candidates) - 1)] for ref, candidates in identity.items()}
+
+
+def analyse(
+    design: Design, declaration: Declaration, identity: Identity, choice: Mapping[str, Candidate], rulesets: Sequence[Ruleset]
+) -> Analysis:
+    """The stages between identity and rules for one choice of candidates."""
+    isolation = isolate(design, choice, declaration)
+    set_up = setting(declaration, isolation)
+    grades: dict[tuple[str, str], Grade] = {}
+    for ruleset in rulesets:
+        found = needed(isolation.separations, isolation.domains, declaration, set_up, ruleset.tables.get(TABLE))
+        grades.update({(ruleset.id, separation): grade for separation, grade in found.items()})
+    return Analysis(design, declaration, identity, choice, isolation, set_up, grades)
+
+
+def verdicts(analysis: Analysis, rulesets: Sequence[Ruleset], raised: list[str]) -> Iterator[Verdict]:
+    """The verdicts of every clause. A rule that raises leaves its question open and adds its traceback to `raised`."""
+    for ruleset in rulesets:
+        for clause in ruleset.clauses:
+            if not _applies(clause, analysis):
+                continue
+            try:
+                for verdict in plugins.rule(clause.rule).ask(analysis, clause):
+                    if _concerns(clause, verdict, analysis):
+                        yield verdict
+            except WithstandError:
+                raise
+            except Exception as error:
+                raised.append(traceback.format_exc())
+                step = Step(f"the rule {clause.rule} stopped with {type(error).__name__}", ())
+                missing = Missing("an answer of the program itself", "a report of this fault to the program's authors", ())
+                yield clause.opens(
+                    Subject(key=("raised",)), "The program failed to answer this question.", step.text, step, missing, level="error"
+                )
+
+
+def _applies(clause: Clause, analysis: Analysis) -> bool:
+    """Whether the conditions of a clause that concern the whole design hold."""
+    mains = analysis.setting.mains
+    known = {
+        "protection_class": analysis.setting.protection_class,
+        "overvoltage_category": mains.overvoltage_category if mains else "",
+    }
+    return all(known[key] in wanted for key, wanted in clause.when.items() if key in known)
+
+
+def _concerns(clause: Clause, verdict: Verdict, analysis: Analysis) -> bool:
+    """Whether the conditions of a clause that concern a subject hold for this verdict."""
+    domains = [
+        analysis.isolation.domains[analysis.isolation.domain_of[net]] for net in verdict.nets if net in analysis.isolation.domain_of
+    ]
+    for key, wanted in clause.when.items():
+        if key == "kind" and not any(analysis.kind(ref) in wanted for ref in verdict.parts if ref in analysis.choice):
+            return False
+        if key == "side" and not any(domain.side in wanted for domain in domains):
+            return False
+        if key == "accessible" and not any(str(domain.accessible).lower() in wanted for domain in domains):
+            return False
+        if key == "grade":
+            names = {domain.name for domain in domains} | {
+                name for ref in verdict.parts for crossing in analysis.isolation.crossing(ref) for name in crossing.between
+            }
+            grades = [
+                analysis.grades[(clause.ruleset, separation.id)].grade
+                for separation in analysis.isolation.separations
+                if names >= set(separation.between)
+            ]
+            if not any(grade in wanted for grade in grades):
+                return False
+    return True
+
+
+def _rank(verdict: Verdict) -> tuple[int, float]:
+    """Worse is smaller: by outcome, then by margin."""
+    return OUTCOMES.index(verdict.outcome), verdict.margin if verdict.margin is not None else 0.0
+
+
+def _from_alternate(verdict: Verdict, choice: Mapping[str, Candidate], identity: Identity) -> Verdict:
+    """A verdict that an alternate part makes worse says which one."""
+    labels = [
+        f"{ref} as {choice[ref].label}" for ref in verdict.parts if ref in choice and choice[ref].label and len(identity[ref]) > 1
+    ]
+    if not labels:
+        return verdict
+    return replace(verdict, candidate=", ".join(labels), because=f"with the alternate {', '.join(labels)}: {verdict.because}")

@@ -1,0 +1,341 @@
+"""From verdicts and stages to the report: ids for steps, fingerprints, rounding, order. What is printed is decided here, once."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Iterable, Mapping, Sequence
+from importlib.metadata import PackageNotFoundError, version
+
+from checker.formulas.rounding import significant
+from checker.model.candidate import Candidate
+from checker.model.clause import LEVELS
+from checker.model.declaration import DeclaredBarrier
+from checker.model.domain import Crossing
+from checker.model.fact import Fact, Source
+from checker.model.order import natural
+from checker.model.report import (
+    AssumptionMade,
+    BarrierShown,
+    BridgingPart,
+    Consequence,
+    DomainShown,
+    Evidence,
+    Figure,
+    InputFile,
+    LimitShown,
+    MissingFact,
+    PartShown,
+    Report,
+    RulesetUsed,
+    StepShown,
+    Tool,
+    VerdictShown,
+    WorkingVoltage,
+)
+from checker.model.rule import Analysis
+from checker.model.ruleset import Ruleset
+from checker.model.separation import GRADES, Separation
+from checker.model.step import Step
+from checker.model.verdict import OUTCOMES, Limit, Number, Verdict, Words
+
+MOST_EVIDENCE = 12  # places shown with one verdict; its steps have them all
+_DISTANCES = ("clearance", "creepage", "through_insulation", "isolation_working", "isolation_test", "impulse")
+
+
+def tool_version() -> str:
+    """The installed version, "0" in a checkout that was never installed."""
+    try:
+        return version("withstand")
+    except PackageNotFoundError:
+        return "0"
+
+
+def fingerprint(verdict: Verdict) -> str:
+    """Which question about what: rule, clause and subject, never a value, a line, a path or an automatic net name."""
+    subject = verdict.key or tuple(sorted(verdict.parts))
+    return _hash([verdict.rule, verdict.clause, list(subject)])
+
+
+def facts_hash(verdict: Verdict) -> str:
+    """Everything the verdict rests on: the facts behind its steps and its limit, without their places."""
+    facts = sorted({(f.attribute, str(f.value), f.unit, f.form) for f in _facts(verdict)})
+    limit = verdict.limit
+    bound = [limit.value, limit.unit, limit.form, limit.bound] if isinstance(limit, Limit) else [limit.text] if limit else []
+    return _hash([verdict.rule, verdict.clause, [list(fact) for fact in facts], bound, verdict.candidate])
+
+
+def _hash(content: object) -> str:
+    return hashlib.sha256(json.dumps(content, ensure_ascii=True, separators=(",", ":")).encode()).hexdigest()[:32]
+
+
+def _facts(verdict: Verdict) -> tuple[Fact, ...]:
+    return verdict.evidence or (verdict.step.facts() if verdict.step is not None else ())
+
+
+class _Steps:
+    """Numbers steps in the order they are first shown, inputs before what rests on them."""
+
+    def __init__(self) -> None:
+        self.ids: dict[int, str] = {}
+        self.kept: list[Step] = []
+        self.shown: list[StepShown] = []
+
+    def id(self, step: Step | None) -> str | None:
+        if step is None:
+            return None
+        stack: list[tuple[Step, bool]] = [(step, False)]
+        while stack:
+            at, ready = stack.pop()
+            if id(at) in self.ids:
+                continue
+            if not ready:
+                stack.append((at, True))
+                stack.extend((link, False) for link in reversed(at.inputs) if isinstance(link, Step))
+                continue
+            self.ids[id(at)] = f"s{len(self.shown) + 1}"
+            self.kept.append(at)
+            result = significant(at.result) if isinstance(at.result, float) else at.result
+            self.shown.append(
+                StepShown(
+                    id=self.ids[id(at)],
+                    text=at.text,
+                    formula=at.formula,
+                    inputs=[self.ids[id(link)] for link in at.inputs if isinstance(link, Step)],
+                    result=result,
+                    unit=at.unit,
+                    form=at.form,
+                    citation=at.citation,
+                    evidence=_evidence(link for link in at.inputs if isinstance(link, Fact)),
+                )
+            )
+        return self.ids[id(step)]
+
+
+def report(
+    analysis: Analysis,
+    verdicts: Sequence[Verdict],
+    rulesets: Sequence[Ruleset],
+    inputs: Sequence[tuple[str, str, str]],
+    plugin_names: Sequence[str],
+) -> Report:
+    """The report of one design."""
+    steps = _Steps()
+    design, isolation = analysis.design, analysis.isolation
+    domains = [
+        DomainShown(
+            name=domain.name,
+            side=domain.side,
+            earthed=domain.earthed,
+            nets=list(domain.nets),
+            parts=list(domain.parts),
+            step=steps.id(domain.step),
+            accessible=domain.accessible,
+        )
+        for domain in isolation.domains.values()
+    ]
+    barriers = [_barrier(analysis, separation, steps) for separation in isolation.separations]
+    ordered = sorted(verdicts, key=_order)
+    shown = [_verdict(verdict, steps) for verdict in ordered]
+    return Report(
+        design=design.name,
+        variant=design.variant,
+        tool=Tool(version=tool_version()),
+        plugins=list(plugin_names),
+        inputs=[InputFile(role=role, path=path, sha256=sha) for role, path, sha in inputs],
+        rulesets=[
+            RulesetUsed(id=r.id, edition=r.edition, revision=r.revision, sha256=r.sha256, unverified=r.unverified) for r in rulesets
+        ],
+        assumptions=[AssumptionMade(key=a.key, value=a.value, because=a.because) for a in analysis.setting.assumptions],
+        parts=_parts(analysis),
+        domains=domains,
+        barriers=barriers,
+        separations=[],
+        stress=[],
+        verdicts=shown,
+        steps=steps.shown,
+        summary=summary(shown),
+        notes=_notes(analysis),
+    )
+
+
+def summary(verdicts: Iterable[VerdictShown]) -> dict[str, int]:
+    """Counts by outcome; conceded fails and passes on unverified limits are counted besides."""
+    counts = dict.fromkeys(("pass", "fail", "open", "not-applicable", "conceded", "unconfirmed"), 0)
+    for verdict in verdicts:
+        counts[verdict.outcome] += 1
+        counts["conceded"] += verdict.conceded is not None
+        counts["unconfirmed"] += verdict.outcome == "pass" and verdict.verified != "true"
+    return counts
+
+
+def _order(verdict: Verdict) -> tuple[int, int, str, list[object], str]:
+    return (
+        OUTCOMES.index(verdict.outcome),
+        LEVELS.index(verdict.level),
+        verdict.rule,
+        [natural(ref) for ref in verdict.parts],
+        fingerprint(verdict),
+    )
+
+
+def _verdict(verdict: Verdict, steps: _Steps) -> VerdictShown:
+    missing = verdict.missing
+    return VerdictShown(
+        rule=verdict.rule,
+        clause=verdict.clause,
+        citation=verdict.citation,
+        outcome=verdict.outcome,
+        level=verdict.level,
+        hazard=verdict.hazard,
+        parts=list(verdict.parts),
+        nets=list(verdict.nets),
+        condition=verdict.condition,
+        what=verdict.what,
+        found=_figure(verdict.found),
+        limit=_limit(verdict.limit),
+        margin=None if verdict.margin is None else significant(verdict.margin),
+        missing=None
+        if missing is None
+        else MissingFact(
+            part=missing.part,
+            fact=missing.fact,
+            supply_as=missing.supply_as,
+            then=[Consequence(answer=answer, outcome=outcome) for answer, outcome in missing.then],
+        ),
+        because=verdict.because,
+        step=steps.id(verdict.step),
+        remedy=None if verdict.remedy is None else verdict.remedy.text,
+        evidence=_evidence(_facts(verdict)[:MOST_EVIDENCE]),
+        fingerprint=fingerprint(verdict),
+        facts_hash=facts_hash(verdict),
+        verified=verdict.verified,
+        candidate=verdict.candidate,
+    )
+
+
+def _figure(found: Number | Words | None) -> Figure | None:
+    if found is None:
+        return None
+    if isinstance(found, Words):
+        return Figure(text=found.text)
+    return Figure(value=significant(found.value), unit=found.unit, form=found.form)
+
+
+def _limit(limit: Limit | Words | None) -> LimitShown | None:
+    if limit is None:
+        return None
+    if isinstance(limit, Words):
+        return LimitShown(text=limit.text)
+    return LimitShown(value=significant(limit.value), unit=limit.unit, form=limit.form, bound=limit.bound, status=limit.status)
+
+
+def _evidence(facts: Iterable[Fact]) -> list[Evidence]:
+    found: dict[tuple[Source, str], Evidence] = {}
+    for fact in facts:
+        said = fact.text or (f"{fact.value:g} {fact.unit}".strip() if isinstance(fact.value, float) else str(fact.value))
+        text = f"{fact.attribute}: {said}"
+        place = fact.source
+        found.setdefault(
+            (place, text), Evidence(path=place.path, line=place.line, column=place.column, cell=place.cell or None, text=text)
+        )
+    return list(found.values())
+
+
+def _parts(analysis: Analysis) -> list[PartShown]:
+    isolation = analysis.isolation
+    crossing = {c.part for c in isolation.crossings}
+    hazardous = {ref for domain in isolation.domains.values() if domain.hazard for ref in domain.parts}
+    shown = []
+    for ref in sorted(analysis.design.parts, key=natural):
+        part, candidate = analysis.design.parts[ref], analysis.choice[ref]
+        value = candidate.value
+        domains = dict.fromkeys(isolation.domain_of[net] for net in part.nets() if net in isolation.domain_of)
+        shown.append(
+            PartShown(
+                ref=ref,
+                kind=candidate.kind,
+                value=significant(float(value.value)) if value is not None else None,
+                unit=value.unit if value is not None else "",
+                ratings=_ratings(candidate),
+                marks=[mark.name for mark in candidate.marks],
+                maker=candidate.maker or None,
+                type=candidate.type or None,
+                fitted=part.fitted,
+                critical=ref in crossing or ref in hazardous or bool(candidate.marks),
+                domains=list(domains),
+                evidence=[Evidence(path=s.path, line=s.line, column=s.column, cell=s.cell or None, text=ref) for s in part.sources],
+                because=candidate.because,
+                candidates=[other.label for other in analysis.identity[ref][1:]],
+            )
+        )
+    return shown
+
+
+def _ratings(candidate: Candidate) -> dict[str, Figure]:
+    return {
+        name: Figure(value=significant(float(fact.value)), unit=fact.unit, form=fact.form)
+        for name, fact in candidate.ratings.items()
+        if isinstance(fact.value, float)
+    }
+
+
+def _barrier(analysis: Analysis, separation: Separation, steps: _Steps) -> BarrierShown:
+    grades = [grade for (_, barrier), grade in analysis.grades.items() if barrier == separation.id and grade.grade]
+    highest = max((grade.grade for grade in grades), key=_grade_rank, default="")
+    declared = next((b for b in analysis.declaration.barriers if set(b.between) == set(separation.between)), None)
+    crossings = [c for c in analysis.isolation.crossings if c.between == separation.between]
+    return BarrierShown(
+        id=separation.id,
+        between=list(separation.between),
+        grade=highest,
+        bridged_by=list(separation.bridged_by),
+        chains=[list(chain) for chain in separation.chains],
+        working_voltage=_working_voltage(declared, steps),
+        required=[],
+        parts=[_bridging(analysis, crossing, steps) for crossing in sorted(crossings, key=lambda c: natural(c.part))],
+        reason=separation.reason,
+        step=steps.id(next((grade.step for grade in grades if grade.grade == highest), separation.step)),
+    )
+
+
+def _grade_rank(grade: str) -> int:
+    return GRADES.index(grade) if grade in GRADES else len(GRADES)
+
+
+def _working_voltage(declared: DeclaredBarrier | None, steps: _Steps) -> WorkingVoltage | None:
+    if declared is None or (declared.rms is None and declared.peak is None):
+        return None
+    rms, peak = (None if bound is None else significant(bound.high) for bound in (declared.rms, declared.peak))
+    fact = Fact("working_voltage", f"{rms} V r.m.s., {peak} V peak", declared.source)
+    return WorkingVoltage(rms=rms, peak=peak, step=steps.id(Step("working voltage as declared", (fact,))))
+
+
+def _bridging(analysis: Analysis, crossing: Crossing, steps: _Steps) -> BridgingPart:
+    candidate = analysis.choice[crossing.part]
+    provided: Mapping[str, object] = {
+        name: significant(float(fact.value))
+        for name in _DISTANCES
+        if (fact := candidate.ratings.get(name)) is not None and isinstance(fact.value, float)
+    }
+    return BridgingPart(
+        part=crossing.part,
+        pins=[*crossing.sides[0], *crossing.sides[1]],
+        provided=dict(provided),
+        how=crossing.how,
+        listed=crossing.listed,
+        step=steps.id(crossing.step),
+    )
+
+
+def _notes(analysis: Analysis) -> list[str]:
+    """What was noticed on the way: notes of the readers, not-fitted parts that would cross, parts that insulate nothing."""
+    found = []
+    for note in analysis.design.notes:
+        places = ", ".join(str(source) for source in note.sources[:2])
+        found.append(f"{note.text} ({places})" if places and places not in note.text else note.text)
+    for crossing in analysis.isolation.idle:
+        found.append(f"{crossing.part} is not fitted; fitted, it would lie across {' and '.join(crossing.between)}")
+    for ref in analysis.isolation.inactive:
+        found.append(f"{ref} is made to insulate but has both sides in one circuit")
+    return found

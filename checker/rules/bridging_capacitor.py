@@ -1,0 +1,196 @@
+"""Are the capacitors across a barrier of the right class, enough of them, and on a quiet node?
+
+A capacitor across insulation is part of it: when it fails short, the barrier is gone. IEC 60384-14 classes say what a
+capacitor may bridge: Y1 double or reinforced insulation, Y2 (and Y1) basic or supplementary; class X is for places where a
+failure cannot shock. The ruleset says which arrangements each grade accepts (`Y1`, `Y2+Y2`: two in series).
+
+Per chain across a barrier: pass when its classes satisfy the needed grade; fail when a class is stated that does not, when
+no class is stated by anything that was read and the part is described completely enough to tell that it is an ordinary one
+(a stated voltage rating or part type without any class), and when the chain hangs on a switching node (a winding with its
+switch or rectifier), where it would carry the switching voltage across. Open when the grade is not known, or when nothing
+but a value is stated about the part.
+
+To settle it: BOM column `Class`, or `marks: [Y1]` in a parts file or the declaration.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import Annotated
+
+from checker.model.candidate import Candidate
+from checker.model.clause import Clause, Subject
+from checker.model.domain import Crossing
+from checker.model.rule import Analysis, Rule
+from checker.model.step import Step
+from checker.model.verdict import Missing, Verdict, Words
+from checker.parameters import TextSet
+
+_CLASSES = ("Y1", "Y2", "Y3", "Y4", "X1", "X2", "X3")
+_RANK = {"Y1": 3, "Y2": 2, "Y4": 1, "Y3": 1}
+BULK = 0.9e-6  # F; a node with this much capacitance to its own circuit is quiet (common practice, no source)
+
+
+@dataclass(frozen=True, slots=True)
+class Params:
+    """Accepted arrangements by grade: a class, or classes in series joined by `+`; any order, better classes count too."""
+
+    reinforced: Annotated[tuple[str, ...], TextSet()] = ("Y1", "Y2+Y2")
+    basic: Annotated[tuple[str, ...], TextSet()] = ("Y1", "Y2")
+
+
+def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
+    """One verdict per chain of capacitors, and one more where it hangs on a switching node."""
+    seen: set[tuple[tuple[str, ...], tuple[str, str]]] = set()
+    for crossing in analysis.isolation.crossings:
+        if crossing.how != "capacitor" or (crossing.chain, crossing.between) in seen:
+            continue
+        seen.add((crossing.chain, crossing.between))
+        yield _of_class(analysis, clause, crossing)
+        yield from _of_node(analysis, clause, crossing)
+
+
+def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict:
+    barrier = "|".join(crossing.between)
+    grade = analysis.grades[(clause.ruleset, barrier)]
+    subject = Subject(crossing.chain, _end_nets(analysis, crossing), key=(*crossing.chain, "class"))
+    classes = [_class_of(analysis.choice[ref]) for ref in crossing.chain]
+    shown = " + ".join(name or "no class" for name in classes)
+    facts = tuple(mark.fact for ref in crossing.chain for mark in analysis.choice[ref].marks) or tuple(
+        fact for ref in crossing.chain for fact in analysis.design.parts[ref].facts[:4]
+    )
+    step = Step(
+        f"{' - '.join(crossing.chain)}: {shown}; needed across {barrier}: {grade.grade or 'not known'}",
+        (crossing.step, grade.step, *facts),
+    )
+    what = "Class of the capacitors across this barrier."
+    if grade.grade in ("none", "functional"):
+        return clause.does_not_apply(subject, "These capacitors bridge functional insulation only.", grade.step.text, step)
+    wanted = clause.params.basic if grade.grade in ("basic", "supplementary") else clause.params.reinforced
+    if not grade.grade:
+        if all(_rank(name) >= 3 for name in classes):
+            return clause.passes(
+                subject, what, f"class {shown} bridges every grade", step, found=Words(shown), limit=Words(", ".join(wanted))
+            )
+        missing = Missing(
+            "the hazardous source, which sets the grade",
+            "supply: in the declaration",
+            (("mains", "fail unless Y1 or Y2"), ("none", "not-applicable")),
+        )
+        return clause.opens(subject, what, grade.step.text, step, missing, found=Words(shown))
+    words = {"found": Words(shown), "limit": Words(" or ".join(wanted))}
+    if any(_satisfies(classes, arrangement) for arrangement in wanted):
+        return clause.passes(subject, what, f"{grade.grade} insulation accepts {shown}", step, **words)
+    unknown = [
+        ref for ref, name in zip(crossing.chain, classes, strict=True) if name is None and not _described(analysis.choice[ref])
+    ]
+    if unknown and any(_satisfies([name or "Y1" for name in classes], arrangement) for arrangement in wanted):
+        then = tuple(
+            (name, "pass" if any(_satisfies([c or name for c in classes], a) for a in wanted) else "fail")
+            for name in ("Y1", "Y2", "none")
+        )
+        missing = Missing("class", "BOM column Class, or marks in a parts file", then, unknown[0])
+        because = (
+            f"nothing that was read states a class or rating of {', '.join(unknown)}; {grade.grade} insulation "
+            f"needs {' or '.join(wanted)}"
+        )
+        return clause.opens(subject, what, because, step, missing, **words)
+    return clause.fails(
+        subject,
+        what,
+        f"{grade.grade} insulation needs {' or '.join(wanted)}, the chain is {shown} ({_said(analysis, crossing)})",
+        step,
+        **words,
+    )
+
+
+def _class_of(candidate: Candidate) -> str | None:
+    """The best class marked on a capacitor, Y before X; None when no class is stated."""
+    names = [mark.name for mark in candidate.marks if mark.name in _CLASSES]
+    return min(names, key=_CLASSES.index) if names else None
+
+
+def _rank(name: str | None) -> int:
+    return _RANK.get(name or "", 0)
+
+
+def _satisfies(classes: list[str | None] | list[str], arrangement: str) -> bool:
+    """Whether a chain has, for each class of the arrangement, one capacitor of at least that class."""
+    wanted = sorted((_rank(name) for name in arrangement.split("+")), reverse=True)
+    have = sorted((_rank(name) for name in classes), reverse=True)
+    return len(have) >= len(wanted) and all(there >= need > 0 for there, need in zip(have, wanted, strict=False))
+
+
+def _described(candidate: Candidate) -> bool:
+    """Whether enough is stated about a capacitor that a missing class means an ordinary one: a rating, a technology, or
+    another class."""
+    return "voltage" in candidate.ratings or "technology" in candidate.attributes
+
+
+def _said(analysis: Analysis, crossing: Crossing) -> str:
+    texts = []
+    for ref in crossing.chain:
+        part, rating = analysis.design.parts[ref], analysis.choice[ref].ratings.get("voltage")
+        texts.append(
+            f"{ref}: {part.text('description') or part.text('value')}" + (f", {float(rating.value):g} V" if rating else "")
+        )
+    return "; ".join(texts)
+
+
+def _end_nets(analysis: Analysis, crossing: Crossing) -> tuple[str, ...]:
+    """The nets the two ends of the chain hang on."""
+    nets = []
+    for ref in dict.fromkeys((crossing.chain[0], crossing.chain[-1])):
+        nets += [net for net in analysis.design.parts[ref].nets() if analysis.isolation.domain_of.get(net) in crossing.between]
+    return tuple(dict.fromkeys(nets))
+
+
+def _of_node(analysis: Analysis, clause: Clause, crossing: Crossing) -> Iterator[Verdict]:
+    if analysis.grades[(clause.ruleset, "|".join(crossing.between))].grade in ("none", "functional", ""):
+        return
+    nets = _end_nets(analysis, crossing)
+    switching = [(net, because) for net in nets if (because := _switching(analysis, net))]
+    subject = Subject(crossing.chain, nets, key=(*crossing.chain, "node"))
+    facts = tuple(analysis.design.nets[net].fact for net in nets)
+    if switching:
+        net, because = switching[0]
+        step = Step(f"{' - '.join(crossing.chain)} hangs on {net}: {because}", (crossing.step, *facts))
+        yield clause.fails(subject, "A capacitor across the barrier hangs on a switching node.", step.text, step, found=Words(net))
+    else:
+        step = Step(
+            f"{' - '.join(crossing.chain)} hangs on {' and '.join(nets)}, no winding is switched or rectified there",
+            (crossing.step, *facts),
+        )
+        yield clause.passes(
+            subject, "The capacitors across the barrier hang on quiet nodes.", step.text, step, found=Words(", ".join(nets))
+        )
+
+
+def _switching(analysis: Analysis, net: str) -> str:
+    """Why a net swings with the converter: a winding and a switch or rectifier meet there and nothing holds it; "" when it
+    does not."""
+    refs = dict.fromkeys(
+        ref for ref, _ in analysis.design.nets[net].pins if ref in analysis.choice and analysis.design.parts[ref].fitted
+    )
+    windings = [ref for ref in refs if analysis.kind(ref) in ("transformer", "gate-drive-transformer", "inductor")]
+    movers = [ref for ref in refs if analysis.kind(ref) in ("mosfet", "igbt", "bipolar", "diode", "controller", "regulator")]
+    if not windings or not movers:
+        return ""
+    for ref in refs:
+        value = analysis.choice[ref].value
+        if analysis.kind(ref) == "capacitor" and value is not None and float(value.value) >= BULK:
+            return ""
+        if analysis.kind(ref) in ("connector", "inlet", "bridge", "fuse"):
+            return ""
+    if _is_return(analysis, refs, net):
+        return ""
+    return f"winding of {windings[0]} and {movers[0]} meet there"
+
+
+def _is_return(analysis: Analysis, refs: dict[str, None], net: str) -> bool:
+    """A reference conductor: many parts hang on it, a switch only with its source or emitter."""
+    return len(refs) >= 8
+
+
+RULE = Rule("bridging-capacitor", "shock", Params, ask, __doc__ or "")
