@@ -15,7 +15,6 @@ from checker.model.declaration import Declaration
 from checker.model.report import Report, Reports, Unreadable
 from checker.model.ruleset import Ruleset
 
-DEFAULT_RULESETS = ("iec-62368-1", "derating-commercial")
 PathLike = str | os.PathLike[str]
 
 
@@ -104,16 +103,17 @@ def _judge(
 ) -> pipeline.Judged:
     readings = [plugins.reader_for(blob, role).read(blob) for role, blob in blobs]
     inputs = [(role, blob.path, blob.sha256) for role, blob in blobs]
-    inputs += list(extra) + [("ruleset", ruleset.path, ruleset.sha256) for ruleset in chosen]
+    inputs += list(extra)
     return pipeline.judge(name, readings, declared, chosen, inputs, variant)
 
 
 def _rulesets(asked: tuple[str, ...], declared: Declaration, folder: Path | None) -> tuple[Ruleset, ...]:
+    """The rulesets in force: those asked for, else the declaration's (files relative to its folder), else the default."""
     if asked:
         return rulesets.load_all(asked)
     if declared.rulesets:
         return rulesets.load_all(declared.rulesets, folder)
-    return rulesets.load_all(DEFAULT_RULESETS)
+    return rulesets.load_all(rulesets.DEFAULT)
 
 
 def shown_path(path: PathLike) -> str:

@@ -34,7 +34,6 @@ from checker.model.report import Report
 from checker.strict_yaml import Map, load
 from checker.strict_yaml import Node as YamlNode
 
-DEFAULT_RULESETS = ("iec-62368-1", "derating-commercial")
 Expected = tuple[str, str, tuple[str, ...]]
 
 
@@ -90,7 +89,7 @@ def _case(rule: str, keys: Map, bases: dict[str, dict[str, Described]], path: st
         keys.need("outcome").one_of(("pass", "fail", "open", "not-applicable")),
         tuple(parts.values()),
         declarations.from_map(declared.map(), path) if declared is not None else Declaration(),
-        chosen.texts() if chosen is not None else DEFAULT_RULESETS,
+        chosen.texts() if chosen is not None else rulesets.DEFAULT,
         tuple(_expected(node) for node in keys.need("expect").items()),
     )
     keys.done()

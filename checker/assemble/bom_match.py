@@ -13,7 +13,6 @@ from checker.model.fact import Fact, Source
 from checker.model.reading import Note, Reading, Row
 from checker.neutral import neutral
 
-_MAKE = frozenset({"type", "maker", "distributor"})
 # things a BOM need not list, as words of footprint, symbol or value (common practice, no source)
 _UNLISTED = (
     "mounting hole",
@@ -111,8 +110,7 @@ def _add(draft: Draft, row: Row) -> Iterator[Note]:
         draft.choices[at].extend([fact for fact in facts if fact not in held] if held else facts)
     if row.alternates:
         names = {_name(choice).casefold() for choice in draft.choices}
-        shared = [fact for fact in facts if fact.attribute not in _MAKE]
-        draft.choices.extend([*shared, *choice] for choice in row.alternates if _name(choice).casefold() not in names)
+        draft.choices.extend(list(choice) for choice in row.alternates if _name(choice).casefold() not in names)
     if len(draft.choices) > limits.ALTERNATES:
         raise InputError(
             row.source.path,

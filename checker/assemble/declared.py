@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-import difflib
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterator, Mapping
+from itertools import chain, islice
 from typing import Literal
 
 from checker.assemble.draft import Book
@@ -12,6 +12,7 @@ from checker.model.declaration import Declaration, DeclaredPart
 from checker.model.fact import Source
 from checker.model.reading import Note
 from checker.neutral import neutral
+from checker.strict_yaml import suggestion
 
 _COMPARED = 5_000  # names a misspelt one is compared with
 _SUGGESTED = 20  # misspelt names that get a suggestion: comparing is slow
@@ -40,8 +41,8 @@ def unused(book: Book, nets: Mapping[str, Net], joined: Mapping[str, str], decla
         if sort != "part" and name in joined:
             text = f"{where}: the net {neutral(name, 80)} is part of {neutral(joined[name], 80)}, since a pin stands on both"
         elif len(notes) < _SUGGESTED:
-            near = _near(name, (*(book.copies if sort != "net" else ()), *(nets if sort != "part" else ())))
-            text += f"; did you mean {neutral(near, 80)}?" if near else ""
+            names = chain(book.copies if sort != "net" else (), nets if sort != "part" else ())
+            text += neutral(suggestion(name, islice(names, _COMPARED)), 120)
         parts, of_nets = ((name,), ()) if sort == "part" else ((), (name,) if sort == "net" else ())
         notes.append(Note("unused", text, (source,), parts, of_nets))
     for declared in declaration.parts.values():
@@ -91,10 +92,3 @@ def _pins(book: Book, declared: DeclaredPart) -> Iterator[Note]:
         if pin not in numbers:
             text = f"parts: {neutral(declared.ref, 80)} has no pin {neutral(pin, 40)}"
             yield Note("unused", text, (declared.source,), (declared.ref,))
-
-
-def _near(name: str, names: Iterable[str]) -> str:
-    compared = [text for text, _ in zip(names, range(_COMPARED), strict=False)]
-    folded = name.casefold()
-    same = next((text for text in compared if text.casefold() == folded), "")
-    return same or next(iter(difflib.get_close_matches(name[:80], [text[:80] for text in compared], 1, 0.75)), "")

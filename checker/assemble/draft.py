@@ -7,19 +7,21 @@ import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
+from checker import limits
 from checker.model.circuit import Part, Pin
 from checker.model.fact import Fact, Source, Trust
 from checker.model.reading import Row
 
 _UNIT_SUFFIX = re.compile(r"(.+[0-9])[-._]?[A-Za-z]\Z")
 _RANGE_LIKE = re.compile(r"([A-Za-z_]{1,16})([0-9]{1,9})(?:[-~–]|\.\.)([A-Za-z_]{0,16})([0-9]{1,9})\Z")
-_OF_ONE_MAKE = frozenset({"type", "maker", "distributor"})
 
 
 @dataclass(slots=True)
 class Draft:
-    """said: what the netlist says. choices: what the BOM says of each choice, first first. always: what holds for all.
+    """A part in the making.
 
+    said: what the netlist says. choices: what BOM and parts file say of each choice, the first one first.
+    always: what parts files and the declaration say of the reference.
     rows: each BOM row that lists the part, with what it says of being fitted. forced: what the variant says.
     """
 
@@ -62,15 +64,13 @@ class Draft:
         return str(max(types, key=lambda fact: fact.trust).value) if types else ""
 
     def part(self) -> Part:
-        """The finished part. An alternate repeats what holds for every choice and leaves out the make the netlist names."""
-        always = tuple(self.always)
-        shared = tuple(fact for fact in self.said if fact.attribute not in _OF_ONE_MAKE) if len(self.choices) > 1 else ()
+        """The finished part. An alternate holds what is said of that choice alone: it inherits no mark or rating of the first."""
         return Part(
             self.ref,
             self.pins,
-            (*self.said, *self.choices[0], *always),
+            (*self.said, *self.choices[0], *self.always),
             tuple(dict.fromkeys(self.sources)),
-            tuple((*shared, *choice, *always) for choice in self.choices[1:]),
+            tuple(map(tuple, self.choices[1:])),
             self.units,
             self.fitted(),
         )
@@ -135,7 +135,7 @@ def _members(ref: str) -> tuple[str, ...]:
         return ()
     low, high = int(match[2]), int(match[4])
     width = len(match[2]) if match[2].startswith("0") else 0
-    return tuple(f"{match[1]}{number:0{width}d}" for number in range(low, high + 1)) if low < high <= low + 1000 else ()
+    return tuple(f"{match[1]}{number:0{width}d}" for number in range(low, high + 1)) if low < high <= low + limits.RANGE else ()
 
 
 def row_fitted(facts: Sequence[Fact]) -> bool | None:

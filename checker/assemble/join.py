@@ -15,10 +15,10 @@ from checker.errors import ArgumentError
 from checker.model.circuit import Design, Input, Net, Pin
 from checker.model.declaration import Declaration
 from checker.model.fact import NOWHERE, Source
-from checker.model.reading import NetRecord, Note, PartRecord, Reading
+from checker.model.reading import Node, Note, PartRecord, Reading, SymbolPin
 from checker.neutral import neutral
 
-Listed = dict[str, tuple[str, str]]  # pin number -> (name, type), in file order
+Named = Node | SymbolPin  # what a net or a symbol says of a pin
 
 
 def assemble(name: str, readings: Sequence[Reading], declaration: Declaration, variant: str | None = None) -> Design:
@@ -109,10 +109,10 @@ def _alike(copies: Mapping[str, list[Draft]]) -> Iterator[Note]:
     """References that differ in bytes and are one after compatibility normalisation."""
     same: dict[str, str] = {}
     for ref in copies:
-        if ref.isascii():
+        plain = ref if ref.isascii() else unicodedata.normalize("NFKC", ref)
+        if plain == ref:
             continue
-        plain = unicodedata.normalize("NFKC", ref)
-        other = plain if plain != ref and plain in copies else same.get(plain, "")
+        other = plain if plain in copies else same.get(plain, "")
         same.setdefault(plain, ref)
         if other:
             text = f"the references {neutral(ascii(other), 80)} and {neutral(ascii(ref), 80)} look alike and are two parts"
@@ -122,39 +122,41 @@ def _alike(copies: Mapping[str, list[Draft]]) -> Iterator[Note]:
 def _place_pins(book: Book, netlist: Reading, nets: Mapping[str, Net]) -> None:
     """Give every draft its pins: those of its symbol, then those only nets name, each number once."""
     on = {pin: net.name for net in nets.values() for pin in net.pins}
-    noted = _noted(netlist.nets)
-    symbols: dict[str, list[Listed]] = {}
-    for record in netlist.parts:
-        listed: Listed = {}
-        for pin in record.pins:
-            name, kind = listed.get(pin.number, ("", ""))
-            listed[pin.number] = (name or pin.name, kind or pin.type)
-        symbols.setdefault(record.ref, []).append(listed)
+    noted: dict[str, dict[str, Named]] = {}
+    for record in netlist.nets:
+        for node in record.nodes:
+            _note_pin(noted.setdefault(node.ref, {}), node.pin, node)
+    symbols: dict[int, dict[str, Named]] = {}  # parts of one symbol share its tuple of pins
+    shown: dict[str, list[dict[str, Named]]] = {}
+    for part in netlist.parts:
+        if id(part.pins) not in symbols:
+            listed: dict[str, Named] = {}
+            for pin in part.pins:
+                _note_pin(listed, pin.number, pin)
+            symbols[id(part.pins)] = listed
+        shown.setdefault(part.ref, []).append(symbols[id(part.pins)])
     for ref, drafts in book.copies.items():
         said = noted.get(ref, {})
-        shown = symbols.get(ref, [{}])
-        somewhere = {number for listed in shown for number in listed} if len(drafts) > 1 else set()
-        for draft, listed in zip(drafts, shown, strict=True):
+        lists = shown.get(ref, [{}])
+        somewhere = {number for listed in lists for number in listed} if len(drafts) > 1 else set()
+        for draft, listed in zip(drafts, lists, strict=True):
             # of two parts with one reference each has the pins its own symbol lists, and those that no symbol lists
             own = said if len(drafts) == 1 or not listed else [pin for pin in said if pin in listed or pin not in somewhere]
-            draft.pins = tuple(_pin(ref, number, said, listed, on) for number in dict.fromkeys((*listed, *own)))
+            numbers = listed if len(listed) == len(own) and listed.keys() == set(own) else dict.fromkeys((*listed, *own))
+            draft.pins = tuple(_pin(number, said.get(number), listed.get(number), on.get((ref, number))) for number in numbers)
 
 
-def _noted(records: Sequence[NetRecord]) -> dict[str, Listed]:
-    """What the nets say of each pin: the first name and type that is not empty."""
-    noted: dict[str, Listed] = {}
-    for record in records:
-        for node in record.nodes:
-            pins = noted.setdefault(node.ref, {})
-            name, kind = pins.get(node.pin, ("", ""))
-            pins[node.pin] = (name or node.name, kind or node.type)
-    return noted
+def _note_pin(pins: dict[str, Named], number: str, named: Named) -> None:
+    """Keep the first statement about a pin, or the first with a name when that one has none."""
+    if number not in pins or (named.name and not pins[number].name):
+        pins[number] = named
 
 
-def _pin(ref: str, number: str, said: Listed, listed: Listed, on: Mapping[tuple[str, str], str]) -> Pin:
-    name, kind = said.get(number, ("", ""))
-    own, own_kind = listed.get(number, ("", ""))
-    return Pin(number, name or own, kind or own_kind, on.get((ref, number)))
+def _pin(number: str, said: Named | None, listed: Named | None, net: str | None) -> Pin:
+    first, second = said or listed, listed or said
+    if first is None or second is None:
+        return Pin(number, net=net)
+    return Pin(number, first.name or second.name, first.type or second.type, net)
 
 
 def _with_copies(book: Book, nets: dict[str, Net]) -> dict[str, Net]:

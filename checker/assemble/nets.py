@@ -8,7 +8,7 @@ from dataclasses import dataclass
 
 from checker.model.circuit import Net
 from checker.model.fact import NOWHERE, Source
-from checker.model.reading import NetRecord, Note
+from checker.model.reading import NetRecord, Node, Note
 from checker.neutral import neutral
 
 _SHOWN = 5
@@ -38,20 +38,26 @@ def merged(records: Sequence[NetRecord]) -> Merged:
     names, groups, again = _by_name(records)
     notes = list(_merged_note(again))
     parent = list(range(len(names)))
-    first: dict[tuple[str, str], tuple[int, Source]] = {}
+    first: dict[tuple[str, str], int] = {}  # pin -> its first place in `places`
+    places: list[tuple[NetRecord, Node]] = []
+    of: list[int] = []  # place -> group
+    pins: list[list[tuple[str, str]]] = []
     told: set[tuple[str, str, int]] = set()
     for at, group in enumerate(groups):
+        pins.append([])
         for record in group:
             for node in record.nodes:
                 pin = node.ref, node.pin
-                source = node.source if node.source != NOWHERE else record.source
-                other, place = first.setdefault(pin, (at, source))
-                if other == at or (*pin, at) in told:
-                    continue
-                told.add((*pin, at))
-                one, two = _root(parent, other), _root(parent, at)
-                parent[max(one, two)] = min(one, two)
-                notes.append(_joined_note(pin, names[other], names[at], place, source))
+                seen = first.setdefault(pin, len(places))
+                if seen == len(places):
+                    places.append((record, node))
+                    of.append(at)
+                    pins[at].append(pin)
+                elif of[seen] != at and (*pin, at) not in told:
+                    told.add((*pin, at))
+                    one, two = _root(parent, of[seen]), _root(parent, at)
+                    parent[max(one, two)] = min(one, two)
+                    notes.append(_joined_note(pin, names[of[seen]], names[at], _place(*places[seen]), _place(record, node)))
     automatic = [is_automatic(group[0].name) for group in groups]
     members: dict[int, list[int]] = {}
     for at in range(len(names)):
@@ -62,10 +68,9 @@ def merged(records: Sequence[NetRecord]) -> Merged:
         kept = next((at for at in group_of if not automatic[at]), group_of[0])
         name = names[kept]
         joined.update((names[at], name) for at in group_of if at != kept)
-        all_records = [record for at in group_of for record in groups[at]]
-        pins = dict.fromkeys((node.ref, node.pin) for record in all_records for node in record.nodes)
-        classes = dict.fromkeys(word for record in all_records for word in record.classes)
-        nets[name] = Net(name, tuple(pins), groups[kept][0].source, automatic[kept], tuple(classes))
+        on = tuple(pins[kept]) if len(group_of) == 1 else tuple(pin for at in group_of for pin in pins[at])
+        classes = dict.fromkeys(word for at in group_of for record in groups[at] for word in record.classes)
+        nets[name] = Net(name, on, groups[kept][0].source, automatic[kept], tuple(classes))
     return Merged(nets, joined, tuple(notes))
 
 
@@ -90,6 +95,10 @@ def _by_name(records: Sequence[NetRecord]) -> tuple[list[str], list[list[NetReco
         names.append(name)
         groups.append([record])
     return names, groups, again
+
+
+def _place(record: NetRecord, node: Node) -> Source:
+    return node.source if node.source != NOWHERE else record.source
 
 
 def _root(parent: list[int], at: int) -> int:

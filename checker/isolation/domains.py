@@ -170,7 +170,7 @@ def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, cu
     facts = tuple(isle.design.parts[ref].fact for ref in (*cut, *culprit.parts[:6]))
     count = len(culprit.parts)
     step = Step(
-        f"with {any_of if len(culprit.chain) == 1 else 'any one of ' + any_of} taken out, {count} insulating part{'s' * (count > 1)} "
+        f"with {'any one of ' * (len(culprit.chain) > 1)}{any_of} taken out, {count} insulating part{'s' * (count > 1)} "
         f"({', '.join(culprit.parts[:6])}{' ...' * (count > 6)}) separate two circuits; with it they do not",
         facts,
         result=" - ".join(way),

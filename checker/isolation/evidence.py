@@ -87,11 +87,10 @@ def _from_part(found: Mapping[str, Evidence], isle: Islands, ref: str, kind: str
         _from_connector(found, isle, ref, kind)
     elif kind == "isolated-module":
         for pin in part.pins:
-            if (pin.net in isle.live and pin.net not in isle.links and role(pin.name) in ("line", "neutral")) or _is_ac(pin.name):
-                if pin.net in isle.live and pin.net not in isle.links:
-                    found[isle.island(pin.net)].mains.setdefault(
-                        "module", (STRONG, f"a.c. pin {pin.number} of module {ref}", part.fact)
-                    )
+            if pin.net in isle.live and pin.net not in isle.links and (role(pin.name) in ("line", "neutral") or _is_ac(pin.name)):
+                found[isle.island(pin.net)].mains.setdefault(
+                    "module", (STRONG, f"a.c. pin {pin.number} of module {ref}", part.fact)
+                )
     elif kind == "triac":
         here.mains.setdefault("triac", (STRONG, f"triac {ref}", part.fact))
     elif kind == "capacitor" and candidate.marked(*_LINE_CLASSES) and not candidate.marked("Y1", "Y2", "Y3", "Y4"):

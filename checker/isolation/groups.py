@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Sequence
+from itertools import pairwise
 
 from checker.model.candidate import CONNECTORS, MECHANICAL, Candidate
 from checker.model.circuit import Part, Pin
@@ -135,7 +136,7 @@ def _module_by_numbers(part: Part, candidate: Candidate) -> Groups:
         ends = tuple(str(n) for n in numbers if n <= count / 4 or n > 3 * count / 4)
         middle = tuple(str(n) for n in numbers if str(n) not in ends)
         return (ends, middle) if ends and middle else ()
-    gaps = [high - low for low, high in zip(numbers, numbers[1:], strict=False)]
+    gaps = [high - low for low, high in pairwise(numbers)]
     widest = max(gaps)
     if widest > 1 and gaps.count(widest) == 1:
         cut = numbers[gaps.index(widest)]

@@ -16,9 +16,9 @@ _EARTH_LIKE = frozenset(
     {"PE", "EARTH", "CHASSIS", "SHIELD", "SHLD", "FG", "FGND", "CHGND", "CASE", "GNDPWR", "FRAME", "CHASIS", "ERDE"}
 )
 _BESIDE = frozenset(
-    {"AC", "MAINS", "MAIN", "IN", "INPUT", "VAC", "FUSED", "FUSE", "F", "F1", "SW", "SWITCHED", "OUT", "FILT", "FILTERED", "LINE", "NET",
-     "PROT", "PWR", "POWER", "LOAD", "RECT", "AFTER", "NTC", "X", "RAW", "HV"}
-)  # fmt: skip
+    "AC MAINS MAIN IN INPUT VAC FUSED FUSE F F1 SW SWITCHED OUT FILT FILTERED LINE NET PROT PWR POWER LOAD RECT AFTER NTC "
+    "X RAW HV".split()
+)
 _MAINS_VOLTS = re.compile(r"(?:1[0-3]\d|2[0-6]\d|400)V?(?:AC)|(?:110|115|120|220|230|240)V")
 
 
@@ -40,7 +40,7 @@ def role(name: str) -> str:
         return ""
     if "".join(words) in ("PROTECTIVEEARTH", "EARTHPROTECTIVE", "SAFETYEARTH", "PROTEARTH"):
         return "earth"
-    for position in (len(words) - 1, 0):
+    for position in (len(words) - 1, *range(len(words) - 1)):
         others = words[:position] + words[position + 1 :]
         if all(word in _BESIDE or _MAINS_VOLTS.fullmatch(word) for word in others):
             word = words[position]

@@ -205,7 +205,8 @@ def _take_best(isle, members, scores, hazard, supply, found, sides, reasons) -> 
         found[live[0]] = (hazard, f"the only circuit on the board, so the declared {what} feeds it")
     else:
         names = [members[island][0] for island in (top or live)[:6]]
-        text = f"the declared {what} could enter at {' or at '.join(names) if names else 'none of the circuits found'}: which one is it?"
+        places = " or at ".join(names) or "none of the circuits found"
+        text = f"the declared {what} could enter at {places}: which one is it?"
         sides.questions.append(
             Question(
                 "side",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -48,6 +49,8 @@ def draft(form: Form, path: str) -> Drafted:
     said = _Statements(path)
     library = symbol = ""
     described = Form()
+    units: list[tuple[str, tuple[str, ...]]] = []
+    variants: list[tuple[str, bool | None, int]] = []
     for item in form.forms():
         word, line = item.keyword, item.line
         if word == "property":
@@ -73,19 +76,22 @@ def draft(form: Form, path: str) -> Drafted:
             described = item.child("description") or described
         elif word == "sheetpath":
             said.add("sheet", item.said("names"), line)
+        elif word == "units":
+            units.extend(_units(item, path))
+        elif word == "variants":
+            variants.extend(_variant(variant, path) for variant in item.children("variant"))
     said.weak_fields()
     if described and "description" not in said.attributes:
         said.add("description", described.text, described.line)
-    variants, overrides = _variants(form, path)
     return Drafted(
         ref=ref,
         facts=tuple(said.facts),
         source=Source(path, form.line),
         symbol=(library, symbol),
         described="description" in said.attributes,
-        units=_units(form, path),
-        variants=variants,
-        overrides=overrides,
+        units=tuple(units),
+        variants=tuple((name, fits) for name, fits, _ in variants if name),
+        overrides=sum(count for _, _, count in variants),
     )
 
 
@@ -188,30 +194,24 @@ class _Statements:
                 self.add(other or f"field:{name}", text, line)
 
 
-def _units(form: Form, path: str) -> tuple[tuple[str, tuple[str, ...]], ...]:
+def _units(form: Form, path: str) -> Iterator[tuple[str, tuple[str, ...]]]:
     """The pins of each unit of a part with several, where the file tells."""
-    units = []
-    for unit in form.nested("units", "unit"):
+    for unit in form.children("unit"):
         pins = tuple(identifier(pin, "num", path, "the number of a unit's pin") for pin in unit.nested("pins", "pin"))
-        units.append((identifier(unit, "name", path, "the name of a unit"), tuple(pin for pin in pins if pin)))
-    return tuple(units)
+        yield identifier(unit, "name", path, "the name of a unit"), tuple(pin for pin in pins if pin)
 
 
-def _variants(form: Form, path: str) -> tuple[tuple[tuple[str, bool | None], ...], int]:
-    """What assembly variants change about the part: whether it is fitted, and how many other things."""
-    found: list[tuple[str, bool | None]] = []
+def _variant(form: Form, path: str) -> tuple[str, bool | None, int]:
+    """What an assembly variant changes about the part: whether it is fitted (None: not said), how many other things."""
+    fits: bool | None = None
     overrides = 0
-    for variant in form.nested("variants", "variant"):
-        name = identifier(variant, "name", path, "the name of a variant")
-        fits: bool | None = None
-        for item in variant.forms():
-            if item.keyword == "dnp" or (item.keyword == "property" and item.said("name").casefold() == "dnp"):
-                text = item.text if item.keyword == "dnp" else item.said("value")
-                fits = text.strip().casefold() in _FALSE
-            elif item.keyword == "fields":
-                overrides += sum(1 for _ in item.children("field"))
-            elif item.keyword in ("field", "value", "footprint"):
-                overrides += 1
-        if name:
-            found.append((name, fits))
-    return tuple(found), overrides
+    for item in form.forms():
+        word = item.keyword
+        if word == "dnp" or (word == "property" and item.said("name").casefold() == "dnp"):
+            text = item.text if word == "dnp" else item.said("value")
+            fits = text.strip().casefold() in _FALSE
+        elif word == "fields":
+            overrides += len(item.children("field"))
+        elif word in ("field", "value", "footprint"):
+            overrides += 1
+    return identifier(form, "name", path, "the name of a variant"), fits, overrides

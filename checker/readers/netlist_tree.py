@@ -139,11 +139,13 @@ class Netlist:
 
     def reading(self, blob: Blob, form: str, notes: Iterable[Note] = ()) -> Reading:
         """The whole file. Raises InputError when it holds no parts, no nets, or connects nothing."""
-        for section, things in (("components", "parts"), ("nets", "nets")):
+        for section in ("components", "nets"):
             if section not in self._sections:
                 raise InputError(self.path, f"the netlist has no section `{section}`", remedy="Export the netlist again, whole.")
-            if not (self._parts if things == "parts" else self._nets):
-                raise InputError(self.path, f"the netlist holds no {things}: the section `{section}` is empty")
+        if not self._parts:
+            raise InputError(self.path, "the netlist holds no parts: the section `components` is empty")
+        if not self._nets:
+            raise InputError(self.path, "the netlist holds no nets: the section `nets` is empty")
         nets = tuple(self._labelled())
         if not _connects(nets):
             raise InputError(

@@ -23,14 +23,16 @@ from checker.readers.netlist_tree import Netlist
 FORM = "S-expression netlist"
 
 _ITEM = 3  # how many forms are open inside a part or net: (export (components (comp
-_CLAIM = re.compile(r"\([ \t\r\n\f\v]*+export(?=[ \t\r\n\f\v()])")
+_CLAIM = re.compile(r"\([ \t\r\n\f\v]*+export(?![^ \t\r\n\f\v()\"])")
 _WORD = re.compile(r"[^ \t\r\n\f\v()\"]++")
 _STRING = re.compile(r'"([^"\\]*+(?:\\.[^"\\]*+)*+)"', re.DOTALL)
 _ESCAPE = re.compile(r"\\(.)", re.DOTALL)
 _ESCAPED = {"n": "\n", "r": "\r", "t": "\t"}
-_KEYWORD = re.compile(r"[ \t\r\n\f\v]*+([^ \t\r\n\f\v()\"]*+)")
-# `keyword`, `keyword word` or `keyword "string"` up to the closing parenthesis: nine forms of ten
-_LEAF = re.compile(r"([^ \t\r\n\f\v()\"]++)[ \t\r\n\f\v]*+(?:\"([^\"\\]*+)\"|([^ \t\r\n\f\v()\"]++))?+[ \t\r\n\f\v]*+(?=\))").match
+# `(keyword)`, `(keyword word)` and `(keyword "text")`: nine forms of ten
+_LEAF = re.compile(
+    r"[ \t\r\n\f\v]*+\(([^ \t\r\n\f\v()\"]++)[ \t\r\n\f\v]*+(?:\"([^\"\\]*+)\"|([^ \t\r\n\f\v()\"]++))?+[ \t\r\n\f\v]*+\)"
+).match
+_FIRST = re.compile(r"[ \t\r\n\f\v]*+([^ \t\r\n\f\v()\"]++)").match
 
 
 class _Parser(sexpdata.Parser):  # type: ignore[misc]  # the library has no annotations
@@ -59,25 +61,16 @@ class _Parser(sexpdata.Parser):  # type: ignore[misc]  # the library has no anno
     def parse_sexp(self, i: int) -> tuple[int, Form | None]:
         """The form that opens before offset i, and the offset of its closing parenthesis."""
         string = self.string
-        self.line = line = self.line + string.count("\n", self.counted, i)
-        self.counted = i
-        self.atoms += 1
-        if self.depth >= _ITEM and self.atoms < limits.ATOMS:
-            leaf = _LEAF(string, i)
-            if leaf and leaf.end() - i <= limits.TOKEN:
-                made = Form(leaf.group(1, leaf.lastindex) if leaf.lastindex != 1 else (leaf[1],))  # type: ignore[arg-type]
-                made.line = line
-                return leaf.end(), made
-        self.checked()
-        self.opened(i)
         made = Form()
-        made.line = line
+        made.line = self.line_at(i)
+        self.opened(i)
         while True:
+            i = self.leaves(i, made)
             i, items = super().parse_sexp(i)
             made.extend(items)
             if i == len(string):
                 word = f" `{made.keyword}`" if made.keyword else ""
-                raise InputError(self.path, f"the file ends inside the form{word} that opens here", line=line, remedy=_CUT)
+                raise InputError(self.path, f"the file ends inside the form{word} that opens here", line=made.line, remedy=_CUT)
             if string[i] == ")":
                 break
             i, word = self.parse_atom(i)
@@ -89,14 +82,45 @@ class _Parser(sexpdata.Parser):  # type: ignore[misc]  # the library has no anno
         self.closed = self.depth == 0
         return i, made
 
+    def leaves(self, i: int, made: Form) -> int:
+        """Read the keyword and the plain forms that follow at i; the library reads whatever is not as plain."""
+        if self.depth < _ITEM:
+            return i
+        string = self.string
+        if not made and (first := _FIRST(string, i)) and len(first[1]) <= limits.TOKEN:
+            made.append(first[1])
+            self.atoms += 1
+            i = first.end()
+        if self.depth >= limits.DEPTH:
+            return i
+        while leaf := _LEAF(string, i):
+            end = leaf.end()
+            if end - i > limits.TOKEN or self.atoms >= limits.ATOMS:
+                break
+            inner = Form(leaf.group(1, leaf.lastindex) if leaf.lastindex != 1 else (leaf[1],))  # type: ignore[arg-type]
+            inner.line = self.line_at(leaf.start(1))
+            made.append(inner)
+            self.atoms += 1
+            i = end
+        return i
+
+    def line_at(self, i: int) -> int:
+        """The line of an offset; offsets only grow."""
+        self.line += self.string.count("\n", self.counted, i)
+        self.counted = i
+        return self.line
+
     def opened(self, i: int) -> None:
         """One more form is open."""
+        self.atoms += 1
+        self.checked()
         self.depth += 1
         if self.depth > limits.DEPTH:
             self.fail("parentheses are nested too deep", i, expected=f"at most {limits.DEPTH} levels")
         if self.depth > _ITEM - 1:
             return
-        keyword = _KEYWORD.match(self.string, i)[1]  # type: ignore[index]  # matches the empty text too
+        first = _FIRST(self.string, i)
+        keyword = first[1] if first else ""
         if self.depth == _ITEM - 1:
             self.section = keyword
             self.netlist.open(keyword)

@@ -39,6 +39,7 @@ def head(blob: Blob) -> str:
     Never raises: bytes that are no text come back one character a byte.
     """
     data = blob.data
+    start = 0
     if not data.startswith(_BINARY):
         start = _LEADING.match(data).end()  # type: ignore[union-attr]  # matches the empty text too
         second = ""
@@ -54,7 +55,7 @@ def head(blob: Blob) -> str:
                 break
         if second:
             return second
-    return data[:HEAD].decode("latin-1")
+    return data[start : start + HEAD].decode("latin-1")
 
 
 def root(text: str) -> str:

@@ -60,13 +60,15 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
         crossings = [c for c in analysis.isolation.crossings if c.between == barrier.between]
         if frozenset(barrier.between) not in spoiled and any(c.listed for c in crossings) and all(c.listed for c in crossings):
             key = (barrier.id,) if barrier.named else barrier.bridged_by
-            because = (f"{_listed(barrier.bridged_by)} lie across {barrier.between[0]} and {barrier.between[1]}, and "
-            f"direct current finds no way")
+            across = f"{_listed(barrier.bridged_by)} lie across {barrier.between[0]} and {barrier.between[1]}"
+            because = f"{across}, and direct current finds no way"
             yield clause.passes(
-                Subject(barrier.bridged_by, key=key), "Only insulating parts and capacitors cross this barrier.", "
-                "because, barrier.step,
+                Subject(barrier.bridged_by, key=key),
+                "Only insulating parts and capacitors cross this barrier.",
+                because,
+                barrier.step,
                 found=Words(", ".join(barrier.bridged_by[:12])),
-            )  # fmt: skip
+            )
 
 
 def _listed(refs: tuple[str, ...]) -> str:

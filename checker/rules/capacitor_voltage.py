@@ -70,7 +70,7 @@ def _judge(analysis: Analysis, clause: Clause, ref: str, candidate: Candidate, o
     rated = float(rating.value)
     facts = (rail, rating) + ((said,) if said is not None else ())
     step = Step(
-        f"{output.net} reaches {high.value:g} V; {ref} is rated {rated:g} V{f', {technology}' if technology else ', technology not stated'}",
+        f"{output.net} reaches {high.value:g} V; {ref} is rated {rated:g} V, {technology or 'technology not stated'}",
         facts, formula="U <= ratio x U_rated", result=strict * rated, unit="V", form=high.form, citation=clause.citation,
     )  # fmt: skip
     # without a technology the strictest ratio decides a pass and the laxest a fail

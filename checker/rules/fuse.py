@@ -39,9 +39,9 @@ _ON_THE_WAY = frozenset(
     }
 )
 _LOADS = frozenset(
-    {"varistor", "gas-tube", "tvs", "bridge", "diode", "transformer", "isolated-module", "relay", "triac", "thyristor", "controller", "mosfet",
-     "bipolar", "igbt", "regulator", "ic", "module", "lamp", "motor", "optocoupler", "solid-state-relay", "led", "zener", "current-transformer"}
-)  # fmt: skip
+    "varistor gas-tube tvs bridge diode transformer isolated-module relay triac thyristor controller mosfet bipolar igbt "
+    "regulator ic module lamp motor optocoupler solid-state-relay led zener current-transformer".split()
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +93,8 @@ def _of_entry(analysis: Analysis, clause: Clause, ref: str, entry: Entry) -> Ver
     )
     if tapped:
         parts = tuple(tapped)
-        because = f"{', '.join(parts[:6])} hang{'s' * (len(parts) == 1)} on {best} ahead of fuse {', '.join(before.fuses)}, which cannot clear a short there"
+        ahead = f"{', '.join(parts[:6])} hang{'s' * (len(parts) == 1)} on {best} ahead of fuse {', '.join(before.fuses)}"
+        because = f"{ahead}, which cannot clear a short there"
         step = Step(because, (*facts, *(analysis.design.parts[part].fact for part in parts[:6])))
         return clause.fails(
             Subject((*parts[:6], *before.fuses), (best,), key=(ref, "fuse")), "A part is tapped ahead of the fuse.", because, step

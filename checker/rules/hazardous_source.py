@@ -44,7 +44,8 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     located = next((question for question in isolation.questions if question.about == "side"), None)
     if located is not None:
         yield clause.opens(
-            Subject(nets=located.nets, key=("source",)), "The declared supply is not found on the board.", located.text, located.step,
+            Subject(nets=located.nets, key=("source",)), "The declared supply is not found on the board.", located.text,
+            located.step,
             Missing(located.fact, located.supply_as, located.then),
         )  # fmt: skip
     elif hazardous:

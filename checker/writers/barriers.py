@@ -29,8 +29,8 @@ def write(report: Report | Reports, width: int = WIDTH) -> str:
 
 
 def _one(page: Page, report: Report) -> None:
-    counts = f"{len(report.domains)} domain{'s' * (len(report.domains) != 1)}, {len(report.barriers)} barrier{'s' * (len(report.barriers) != 1)}"
-    page.put(f"{report.design}: {counts}", "Design")
+    domains, barriers = len(report.domains), len(report.barriers)
+    page.put(f"{report.design}: {domains} domain{'s' * (domains != 1)}, {barriers} barrier{'s' * (barriers != 1)}", "Design")
     page.put()
     steps = {step.id: step.text for step in report.steps}
     for domain in report.domains:
