@@ -3,7 +3,7 @@ on the machine. Beyond a limit the run ends with status 2; a cut report is never
 
 from __future__ import annotations
 
-FILE_BYTES = 64 * 2**20  # one netlist, BOM or layout
+FILE_BYTES = 128 * 2**20  # one netlist, BOM or layout; a verbose netlist of 100,000 parts has 97 MB
 YAML_BYTES = 4 * 2**20  # declaration, project file, parts file, ruleset, concessions, policy
 REPORT_BYTES = 256 * 2**20  # a saved report
 DEPTH = 32  # nested forms or elements; the deepest real netlist has 8

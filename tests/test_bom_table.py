@@ -177,6 +177,7 @@ def test_value_that_says_not_fitted(text):
         ("Reference,Value\nR1" + "," * 90_000 + "\n", 2, "separators in one row"),
         ("Reference,Value\n" + "R1,1k\n" * (limits.BOM_ROWS + 1), limits.BOM_ROWS + 1, "more than 250,000 rows"),
         ('Reference,Value\n"' + ",".join(f"R{n}-R{n + 999}" for n in range(0, 22_000, 1000)) + '",1k\n', 2, "in one cell"),
+        ("Reference" + ",MPN" * 40 + "\nR1" + "".join(f",T{n}" for n in range(40)) + "\n", 2, "too many choices of part"),
         ("Reference,Value\nR1,10k\0\n", 0, "binary data"),
         ("Reference,Value\n" + "R1,10k\n" * 1000 + "\0", 1002, "NUL"),
         ('(export (version "E") (components))', 0, "an S-expression netlist"),

@@ -1,8 +1,9 @@
 """Which type family a part number belongs to.
 
-A pattern begins with a plain letter or digit, a class or a group, matches the start of a word in upper case and must not be
-followed by a further digit: `LM317` is found in `LM317T` and not in `LM3171`. A pattern that ends with `$` takes the whole
-word. Values, packages and pin names must match no family; a test holds the table to that.
+A pattern begins with a plain letter or digit, a class or a group and matches the start of a word in upper case. One that ends
+in a number of two or more digits must not be followed by a further digit: `LM350` is found in `LM350T` and not in `LM3501`.
+One that ends in a letter or a single digit is open: what follows does not matter. `$` takes the whole word. Values, packages
+and pin names must match no family; a test holds the table to that.
 """
 
 from __future__ import annotations
@@ -85,26 +86,53 @@ class _Bucket:
 
 def starts(pattern: str) -> frozenset[str]:
     """The characters a word that matches `pattern` may begin with."""
-    if pattern.startswith("(?:"):
-        depth, at = 1, 3
-        choices = [3]
-        while depth:
-            if pattern[at] == "|" and depth == 1:
-                choices.append(at + 1)
-            depth += (pattern[at] == "(") - (pattern[at] == ")")
-            at += 1
-        found = frozenset[str]().union(*(starts(pattern[choice:]) for choice in choices))
-        return found | starts(pattern[at + 1 :]) if pattern[at : at + 1] == "?" else found
+    end = _first_item(pattern)
+    item = pattern[:end]
+    found: frozenset[str]
+    if item.startswith("(?:"):
+        found = frozenset[str]().union(*(starts(choice) for choice in _choices(item[3:-1])))
+    elif item.startswith("["):
+        spans = re.findall(r"(\w)-(\w)", item)
+        single = re.sub(r"\w-\w", "", item[1:-1])
+        found = frozenset(single).union(chr(code) for low, high in spans for code in range(ord(low), ord(high) + 1))
+    else:
+        found = frozenset("0123456789") if item == r"\d" else frozenset(item)
+    rest = pattern[end:]
+    return found | starts(rest[1:]) if rest.startswith("?") else found
+
+
+def _first_item(pattern: str) -> int:
+    """Where the first character, class or group of a pattern ends."""
     if pattern.startswith("["):
-        listed = pattern[1 : pattern.index("]")]
-        spans = re.findall(r"(\w)-(\w)", listed)
-        chars = {chr(code) for low, high in spans for code in range(ord(low), ord(high) + 1)}
-        return frozenset(chars | set(re.sub(r"\w-\w", "", listed)))
-    if pattern.startswith(r"\d"):
-        return frozenset("0123456789")
-    if pattern[1:2] == "?":
-        return frozenset(pattern[0]) | starts(pattern[2:])
-    return frozenset(pattern[0])
+        return pattern.index("]") + 1
+    if not pattern.startswith("("):
+        return 2 if pattern.startswith("\\") else 1
+    depth = 0
+    for at, character in enumerate(pattern):
+        depth += (character == "(") - (character == ")")
+        if not depth:
+            return at + 1
+    raise ValueError(f"a group is not closed: {pattern}")
+
+
+def _choices(inside: str) -> list[str]:
+    """The alternatives of a group, nested groups left whole."""
+    depth, found = 0, [""]
+    for character in inside:
+        depth += (character == "(") - (character == ")")
+        if character == "|" and not depth:
+            found.append("")
+        else:
+            found[-1] += character
+    return found
+
+
+_DIGIT = r"(?:\\d|[0-9]|\[[0-9-]+\])"
+_ENDS_IN_NUMBER = re.compile(rf"(?:{_DIGIT}(?:\{{[0-9,]+\}}|\?)?{_DIGIT}(?:\{{[0-9,]+\}}|\?)?|{_DIGIT}\{{[0-9,]+\}}|\))\Z")
+
+
+def _closed(pattern: str) -> str:
+    return f"({pattern})(?![0-9])" if _ENDS_IN_NUMBER.search(pattern) else f"({pattern})"
 
 
 def _buckets(rows: tuple[Row, ...]) -> dict[str, _Bucket]:
@@ -115,7 +143,7 @@ def _buckets(rows: tuple[Row, ...]) -> dict[str, _Bucket]:
             for start in sorted(starts(pattern)):
                 parts.setdefault(start, []).append((pattern, family))
     return {
-        start: _Bucket(re.compile("|".join(f"({one})(?![0-9])" for one, _ in found)), tuple(family for _, family in found))
+        start: _Bucket(re.compile("|".join(_closed(one) for one, _ in found)), tuple(family for _, family in found))
         for start, found in parts.items()
     }
 

@@ -19,10 +19,14 @@ _NAMES = (
 )
 _COUNTED = re.compile(rf"(?<![A-Z])(?:{_NAMES})[-_]?(\d{{1,4}})(?![0-9])")
 # the land-pattern naming of surface-mount packages: pitch P span X height - pins
-_LAND_PATTERN = re.compile(r"(?:SOIC|SOP|SSOP|TSSOP|SON|QFN|QFP|DFN|SOJ|SOT|DIP\w?|TO)\d{1,4}P\d{2,5}X\d{2,5}(?:X\d{2,5})?-(\d{1,4})(?![0-9])")
+_LAND_PATTERN = re.compile(
+    r"(?:SOIC|SOP|SSOP|TSSOP|SON|QFN|QFP|DFN|SOJ|SOT|DIP\w?|TO)\d{1,4}P\d{2,5}X\d{2,5}(?:X\d{2,5})?-(\d{1,4})(?![0-9])"
+)
 _OUTLINES = re.compile(r"(?<![A-Z])(?:SOT|TSOT|TO|SC)-?(\d{1,3})-(\d{1,2})(?![0-9])")
 _PINS_IN_WORDS = re.compile(r"(?<![0-9A-Z.])(\d{1,3})-?(?:PIN|LEAD)S?(?![A-Z])")
-_DIGITS_FIRST = re.compile(r"(?<![0-9A-Z.])(\d{1,2})-?(?:PDIP|SMDIP|DIP|SIP|SOIC|SO|SOP|TSSOP|SSOP|MSOP|QFN|DFN|LQFP|TQFP)(?![A-Z])")
+_DIGITS_FIRST = re.compile(
+    r"(?<![0-9A-Z.])(\d{1,2})-?(?:PDIP|SMDIP|DIP|SIP|SOIC|SO|SOP|TSSOP|SSOP|MSOP|QFN|DFN|LQFP|TQFP)(?![A-Z])"
+)
 _POLES = re.compile(r"(?<![0-9A-Z])\d{1,2}X\d{1,2}(?![0-9.MX])")
 _CONNECTORS = re.compile(r"(?<![A-Z])(?:CONN\w{0,8}|PIN_?HEADER|PIN_?SOCKET|TERMINAL_?BLOCK|HEADER|RECEPTACLE|IDC|JACK)")
 # with a TO, SOT or SC number the name is an outline; its pins are the well-known ones only

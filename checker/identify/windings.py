@@ -14,8 +14,8 @@ _PIN = r"[A-Za-z]{0,3}\d{1,3}[A-Za-z]?"
 _PINS = re.compile(rf"{_PIN}(?:-{_PIN}){{1,7}}")
 _TURNS = re.compile(r"\d{1,5}(?:[.,]\d{1,3})?")
 # `1-3:128, 4-5:16` inside other words; a range of values such as 10-20 has no colon and turns
-_IN_WORDS = re.compile(rf"(?<![\w.-]){_PIN}(?:-{_PIN}){{1,7}} ?: "
-f"?\d{{1,5}}(?:\.\d{{1,3}})?T?(?:[+:]\d{{1,5}}(?:\.\d{{1,3}})?T?){{0,6}}(?![\w.])")
+_COUNT = r"\d{1,5}(?:\.\d{1,3})?T?"
+_IN_WORDS = re.compile(rf"(?<![\w.-]){_PIN}(?:-{_PIN}){{1,7}} ?: ?{_COUNT}(?:[+:]{_COUNT}){{0,6}}(?![\w.])")
 _RATIO = re.compile(r"turns\s*:?\s*(\d{1,5}(?:\.\d{1,3})?(?:\s*:\s*\d{1,5}(?:\.\d{1,3})?){1,15})", re.IGNORECASE)
 _NAMED = re.compile(rf"(?<![\w-])([A-Za-z][A-Za-z ]{{0,30}}?)\s?({_PIN}(?:-{_PIN}){{1,7}})(?![\w-])")
 

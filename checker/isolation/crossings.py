@@ -44,6 +44,9 @@ def crossings(
         for pin in part.pins:
             if pin.net is not None and pin.net in domain_of:
                 by_domain.setdefault(domain_of[pin.net], {})[pin.number] = None
+        if kind in CONNECTORS:
+            # the shield and the lamps of a jack with transformers inside are no winding of it
+            by_domain = {name: pins for name, pins in by_domain.items() if len(pins) > 1}
         if len(by_domain) < 2:
             continue
         if ref in ordinary:

@@ -105,8 +105,10 @@ def _opposed(isle: Islands, members: Mapping[str, list[str]], declaration: Decla
                     found.append((f"the declaration keeps {other} and {domain.name} apart", [first], [net]))
                 seeds.setdefault(island, (domain.name, net))
     bonded = {net for domain in declaration.domains.values() if domain.side == "earth" for net in domain.nets}
-    for island, gathered in evidence.gather(isle, members).items():
-        if gathered.is_mains and gathered.is_earth and not bonded & set(members[island]):
+    pieces = evidence.gather(isle, members)
+    for island in evidence.on_mains(pieces):
+        gathered = pieces[island]
+        if gathered.is_earth and not bonded & set(members[island]):
             earth = _seed_nets(isle, island, gathered.earth.values())
             mains = [net for net in _seed_nets(isle, island, gathered.mains.values()) if net not in earth]
             if earth and mains:
@@ -154,9 +156,9 @@ def _sides_differ(isle: Islands, culprit: Culprit) -> bool:
     trial = build(isle.design, isle.choice, isle.opened | set(culprit.chain), isle.halved)
     settle_windings(trial)
     settle_capacitors(trial)
-    gathered = evidence.gather(trial, trial.members())
+    hazardous = set(evidence.on_mains(evidence.gather(trial, trial.members())))
     for first, second in culprit.split.values():
-        hazard = [any(gathered[trial.island(net)].is_mains for net in side if net not in trial.links) for side in (first, second)]
+        hazard = [any(trial.island(net) in hazardous for net in side if net not in trial.links) for side in (first, second)]
         if hazard[0] != hazard[1]:
             return True
     return False
@@ -210,10 +212,8 @@ def _join_alike(isle: Islands, declaration: Declaration) -> None:
     members = isle.members()
     owner = {isle.island(net): name for net, name in declared.items()}
     gathered = evidence.gather(isle, members)
-    for test in ("is_mains", "is_earth"):
-        alike = [
-            island for island, piece in gathered.items() if getattr(piece, test) and not (test == "is_mains" and piece.is_earth)
-        ]
+    mains = [island for island in evidence.on_mains(gathered) if not gathered[island].is_earth]
+    for alike in (mains, [island for island, piece in gathered.items() if piece.is_earth]):
         names = {owner[island] for island in alike if island in owner}
         for island in alike[1:] if len(names) <= 1 else ():
             isle.union.join(alike[0], island)

@@ -33,11 +33,16 @@ class Evidence:
         return sum(weight for weight, _, _ in self.mains.values())
 
     @property
+    def is_strong(self) -> bool:
+        """Whether one piece of mains evidence suffices alone."""
+        return any(weight == STRONG for weight, _, _ in self.mains.values())
+
+    @property
     def is_mains(self) -> bool:
         """One strong piece, or middling ones with enough besides: two middling, or one that is no varistor with two weak, or
         a varistor with three."""
         weights = {sort: weight for sort, (weight, _, _) in self.mains.items()}
-        if STRONG in weights.values():
+        if self.is_strong:
             return True
         middling = [sort for sort, weight in weights.items() if weight == MIDDLING]
         return bool(middling) and self.score >= (5 if middling == ["varistor"] else 4)
@@ -46,6 +51,20 @@ class Evidence:
     def is_earth(self) -> bool:
         """A conductor somebody calls protective earth."""
         return any(weight == STRONG for weight, _, _ in self.earth.values())
+
+
+def on_mains(gathered: Mapping[str, Evidence]) -> list[str]:
+    """The islands taken for mains: every one with strong evidence; without any, the one with most evidence if that is enough.
+
+    Weak evidence never makes a second mains side: it would be merged with the first and hide the barrier between them.
+    """
+    strong = [island for island, piece in gathered.items() if piece.is_strong]
+    if strong:
+        return strong
+    likely = [island for island, piece in gathered.items() if piece.is_mains]
+    best = max((gathered[island].score for island in likely), default=0)
+    likely = [island for island in likely if gathered[island].score == best]
+    return likely if len(likely) == 1 else []
 
 
 def gather(isle: Islands, members: Mapping[str, list[str]]) -> dict[str, Evidence]:
@@ -94,7 +113,8 @@ def _from_part(found: Mapping[str, Evidence], isle: Islands, ref: str, kind: str
     elif kind == "triac":
         here.mains.setdefault("triac", (STRONG, f"triac {ref}", part.fact))
     elif kind == "capacitor" and candidate.marked(*_LINE_CLASSES) and not candidate.marked("Y1", "Y2", "Y3", "Y4"):
-        for island in islands:
+        ends = [net for net in part.nets() if earth_like(net) or role(net) == "earth"]
+        for island in islands if not ends else ():
             sort = "line-capacitor" if len(islands) == 1 else "line-capacitor-end"
             weight = STRONG if len(islands) == 1 else MIDDLING
             found[island].mains.setdefault(sort, (weight, f"line capacitor {ref} (class {candidate.marks[0].name})", part.fact))

@@ -20,6 +20,7 @@ Groups = tuple[tuple[str, ...], ...]
 LIMITERS = frozenset({"varistor", "gas-tube", "spark-gap"})
 OPEN_KINDS = CONNECTORS | MECHANICAL | LIMITERS | {"capacitor"}
 HALVED = frozenset({"optocoupler", "digital-isolator", "isolated-driver", "isolated-amplifier", "solid-state-relay"})
+MAGNETICS_PINS = 12  # a transformer with as many pins is a set of them in one package, line side against cable side
 TRANSFORMERS = frozenset({"transformer", "gate-drive-transformer", "current-transformer"})
 
 
@@ -32,7 +33,7 @@ def groups(part: Part, candidate: Candidate, across_diode: Callable[[str, str], 
     if not part.fitted or kind in OPEN_KINDS:
         return ()
     if kind in TRANSFORMERS:
-        return _windings(part, candidate)
+        return _windings(part, candidate) or (halves(part, candidate) if len(part.pins) >= MAGNETICS_PINS else ())
     if kind in HALVED:
         return halves(part, candidate) or _by_suffix(part)
     if kind == "isolated-module":

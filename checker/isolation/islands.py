@@ -12,13 +12,14 @@ from dataclasses import dataclass, field
 from checker.isolation.groups import LIMITERS, TRANSFORMERS, Groups, groups
 from checker.isolation.names import earth_like, role
 from checker.model.candidate import CONNECTORS, INSULATING, MECHANICAL, Candidate
-from checker.model.circuit import Design, Part
+from checker.model.circuit import Design, Part, Pin
 
 # what a stub may hold: an island of these carries a conductor somewhere, it does not process anything
 _PASSIVE = CONNECTORS | MECHANICAL | INSULATING | LIMITERS | {
     "capacitor", "fuse", "resettable-fuse", "switch", "common-mode-choke", "filter", "inductor", "ferrite", "jumper", "net-tie",
     "thermistor", "lamp", "motor", "antenna",
 }  # fmt: skip
+_NOTHING_MORE = MECHANICAL | {"test-point"}
 SMOOTHING = 90e-9  # F; 0.1 uF and more, with the tolerance of a nominal 100 nF, smooths; a barrier capacitor was 1 to 10 nF
 SMALL = 11e-9  # F; up to about 10 nF a capacitor between two islands is taken for a barrier capacitor
 LINE_RATING = 250.0  # V; a capacitor rated for this much is never taken for a smoothing capacitor
@@ -139,23 +140,48 @@ def _sides(isle: Islands, part: Part, candidate: Candidate, diodes: set[frozense
 
 
 def settle_windings(isle: Islands) -> None:
-    """Join the two ends of a winding that the circuit does not join: both on one transformer and on one connector, nothing
-    else there."""
+    """Join the ends of a winding that the circuit does not join because one of them leads to a connector only.
+
+    Two stubs on one connector and one transformer are a winding; four are two, paired in the order of the pins; an odd number
+    is left alone, since a wrong pair would hide a barrier. A stub with a single pin of a transformer belongs to the winding
+    of the neighbouring pins when these agree.
+    """
     members = isle.members()
     stub = {island: is_stub(isle, nets) for island, nets in members.items()}
     before = {net: isle.island(net) for net in isle.live}
     for ref, candidate in isle.choice.items():
-        if candidate.kind not in TRANSFORMERS or candidate.windings or ref in isle.opened:
+        if candidate.kind not in TRANSFORMERS or candidate.windings or ref in isle.opened or not isle.design.parts[ref].fitted:
             continue
+        ends = [net for pin in _in_order(isle.design.parts[ref]) if (net := pin.net) in isle.live and stub.get(before[net], False)]
         by_connector: dict[str, list[str]] = {}
-        for net in (side[0] for side in isle.sides[ref] if len(side) == 1):
-            if stub.get(before[net], False):
-                for other in _reached(isle, net, members[before[net]]):
-                    if isle.kind(other) in CONNECTORS:
-                        by_connector.setdefault(other, []).append(net)
+        for net in dict.fromkeys(ends):
+            for other in _reached(isle, net, members[before[net]]):
+                if isle.kind(other) in CONNECTORS:
+                    by_connector.setdefault(other, []).append(net)
         for nets in by_connector.values():
-            for net in nets[1:]:
-                isle.union.join(nets[0], net)
+            if len(nets) % 2 == 0:
+                for one, two in zip(nets[::2], nets[1::2], strict=True):
+                    isle.union.join(one, two)
+        _settle_lone_ends(isle, ref, ends)
+
+
+def _in_order(part: Part) -> list[Pin]:
+    """Pins by number where they are numbered, else as listed."""
+    if all(pin.number.isdecimal() and pin.number.isascii() for pin in part.pins):
+        return sorted(part.pins, key=lambda pin: int(pin.number))
+    return list(part.pins)
+
+
+def _settle_lone_ends(isle: Islands, ref: str, ends: list[str]) -> None:
+    """A stub that holds one pin of a transformer alone: joined to the island both its neighbours lie on."""
+    pins = [pin for pin in _in_order(isle.design.parts[ref]) if pin.net in isle.live]
+    homes = [isle.island(pin.net) for pin in pins if pin.net is not None]
+    for at, pin in enumerate(pins):
+        if pin.net in ends and homes.count(homes[at]) == 1 and len(pins) > 2:
+            beside = {homes[other] for other in (at - 1, at + 1) if 0 <= other < len(pins)}
+            if len(beside) == 1:
+                isle.union.join(beside.pop(), pin.net)
+                homes = [isle.island(pin.net) for pin in pins if pin.net is not None]
 
 
 def _reached(isle: Islands, net: str, island: list[str]) -> tuple[str, ...]:
@@ -164,9 +190,9 @@ def _reached(isle: Islands, net: str, island: list[str]) -> tuple[str, ...]:
     return tuple(dict.fromkeys(ref for each in nets for ref in isle.live[each]))
 
 
-def is_stub(isle: Islands, nets: list[str]) -> bool:
-    """Whether these nets hold only windings, connectors, capacitors and the like: nothing that processes or loads."""
-    return all(isle.kind(ref) in _PASSIVE for net in nets for ref in isle.live[net])
+def is_stub(isle: Islands, nets: list[str], beside: frozenset[str] = frozenset()) -> bool:
+    """Whether these nets hold only windings, connectors, capacitors and the like, and kinds in `beside`: nothing that processes."""
+    return all(isle.kind(ref) in _PASSIVE or isle.kind(ref) in beside for net in nets for ref in isle.live[net])
 
 
 def settle_capacitors(isle: Islands) -> None:
@@ -225,11 +251,19 @@ def _defeats(isle: Islands, islands: tuple[str, str], members: Mapping[str, list
 
 
 def _find_links(isle: Islands) -> None:
-    """Nets on which only capacitors stand, grouped through capacitors; joined to the one island they touch, else links."""
+    """Nets on which only capacitors stand (a test point changes nothing), grouped through capacitors.
+
+    A group is joined to the one island it touches, else its nets are links.
+    """
     bare = {
         net
         for net, refs in isle.live.items()
-        if all(isle.kind(ref) == "capacitor" and isle.design.parts[ref].fitted and ref not in isle.opened for ref in refs)
+        if sum(isle.kind(ref) == "capacitor" for ref in refs) > 1
+        and all(
+            (isle.kind(ref) == "capacitor" and isle.design.parts[ref].fitted and ref not in isle.opened)
+            or isle.kind(ref) in _NOTHING_MORE
+            for ref in refs
+        )
     }
     seen: set[str] = set()
     for net in isle.live:

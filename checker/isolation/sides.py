@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
-from checker.isolation.evidence import Evidence
+from checker.isolation.evidence import Evidence, on_mains
 from checker.isolation.groups import TRANSFORMERS
 from checker.isolation.islands import Islands, is_stub
 from checker.isolation.names import supply_volts, tokens
@@ -69,7 +69,7 @@ def assign(isle: Islands, members: Mapping[str, list[str]], gathered: Mapping[st
             hazard, because = hazards[island]
             facts = tuple(fact for _, _, fact in piece.mains.values()) or _some_facts(isle, members[island])
             sides.of[island] = Side("primary", Step(because, facts), hazard, earthed, domain)
-        elif earthed and is_stub(isle, members[island]):
+        elif earthed and is_stub(isle, members[island], frozenset({"resistor"})):
             facts = tuple(fact for _, _, fact in piece.earth.values())
             sides.of[island] = Side("earth", Step(_reasons(piece.earth.values()), facts), "", True, domain)
         elif known:
@@ -117,8 +117,8 @@ def _hazards(
     for domain_island, domain in declared.items():
         if domain.side == "primary":
             found[domain_island] = (_supply_hazard("primary", declaration), f"declared as the primary domain {domain.name}")
-    for island in allowed:
-        if gathered[island].is_mains and ("mains" in supplies or not supplies):
+    for island in on_mains(gathered):
+        if island in allowed and ("mains" in supplies or not supplies):
             found.setdefault(island, ("mains", "mains: " + _reasons(gathered[island].mains.values())))
     if "mains" in supplies and not any(hazard == "mains" for hazard, _ in found.values()):
         _locate_mains(isle, members, gathered, allowed, supplies["mains"], found, sides)

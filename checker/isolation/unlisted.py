@@ -15,7 +15,8 @@ from checker.isolation.islands import Union, live_nets
 from checker.model.candidate import CONNECTORS, Candidate
 from checker.model.circuit import Design
 
-_SUSPECT = frozenset({"ic", "unknown", "module", "sensor", "display"})
+# an inductor with four nets is two windings on a core, which may be a transformer in disguise
+_SUSPECT = frozenset({"ic", "unknown", "module", "sensor", "display", "inductor"})
 LEAST_NETS = 4
 """A part with fewer live nets cannot hold two circuits of two nets."""
 

@@ -91,7 +91,7 @@ def _facts(path: str, line: int, cells: list[str], columns: Columns) -> tuple[tu
         if unit and _BARE_NUMBER.match(text):
             text = f"{text} {unit}"
         facts.append(Fact(attribute, text, source, Trust.BOM))
-    choices: list[list[Fact]] = []
+    choices: dict[tuple[str, str], list[Fact]] = {}
     for pair in columns.choices:
         choice = []
         for attribute, index in zip(CHOICE, pair, strict=True):
@@ -103,15 +103,14 @@ def _facts(path: str, line: int, cells: list[str], columns: Columns) -> tuple[tu
                 absent = absent or Fact("fitted", False, fact.source, Trust.BOM, text=text)
             else:
                 choice.append(fact)
-        if choice and (not choices or choice[0].attribute == "type") and not any(_equal(choice, other) for other in choices):
-            choices.append(choice)
-    facts += choices[0] if choices else ()
+        if choice and (not choices or choice[0].attribute == "type"):
+            choices.setdefault((choice[0].attribute, str(choice[0].value).casefold()), choice)
+            if len(choices) > limits.ALTERNATES:
+                raise InputError(path, "the row has too many choices of part", line=line, expected=f"at most {limits.ALTERNATES}")
+    first, *further = choices.values() or [[]]
+    facts += first
     facts += _count_and_flags(path, line, cells, columns, absent)
-    return tuple(facts), tuple(map(tuple, choices[1:]))
-
-
-def _equal(one: list[Fact], other: list[Fact]) -> bool:
-    return one[0].attribute == other[0].attribute and str(one[0].value).casefold() == str(other[0].value).casefold()
+    return tuple(facts), tuple(map(tuple, further))
 
 
 def _count_and_flags(path: str, line: int, cells: list[str], columns: Columns, absent: Fact | None) -> Iterator[Fact]:

@@ -114,6 +114,8 @@ def _broken(path: str, said: str, line: int) -> InputError:
             found=f"more than {csv.field_size_limit():,} characters",
             remedy="Look for a quote that is opened and never closed.",
         )
+    if "separators" in said:
+        return InputError(path, said, line=line, expected=f"at most {limits.BOM_COLUMNS} columns")
     return InputError(
         path,
         f"the row cannot be cut into cells ({said})",

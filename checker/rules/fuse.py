@@ -39,8 +39,8 @@ _ON_THE_WAY = frozenset(
     }
 )
 _LOADS = frozenset(
-    "varistor gas-tube tvs bridge diode transformer isolated-module relay triac thyristor controller mosfet bipolar igbt "
-    "regulator ic module lamp motor optocoupler solid-state-relay led zener current-transformer".split()
+    "varistor gas-tube tvs bridge diode transformer isolated-module thyristor controller mosfet bipolar igbt regulator ic module "
+    "lamp motor optocoupler led zener".split()
 )
 
 
@@ -115,7 +115,10 @@ class _Before:
 
 
 def _before(analysis: Analysis, pole: str) -> _Before:
-    """Walk a pole's conductor up to its fuses. A choke or filter is passed on the pins that share its winding, unknown ones
+    """What a pole meets before a fuse. Contacts, triacs and current transformers hand the line to a load outside the board, whose
+    protection is not this board's; they are neither loads nor a way to the fuse.
+
+    Walk a pole's conductor up to its fuses. A choke or filter is passed on the pins that share its winding, unknown ones
     on all."""
     nets, fuses, passed, loads, capacitors = (
         {pole: None},

@@ -25,7 +25,7 @@ from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Number, Verdict, Words
 from checker.parameters import AtMost
-from checker.rules.supply_entry import entries, is_wiring
+from checker.rules.supply_entry import entries, is_wiring, line_nets
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,7 +39,8 @@ class Params:
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict per connector that carries a net of known hazard or voltage."""
-    supply_entries = entries(analysis)
+    supply_entries = {*entries(analysis, "mains"), *entries(analysis, "dc")}
+    lines = line_nets(analysis)
     outputs = {output.net: output for output in analysis.declaration.outputs}
     for ref, candidate in analysis.choice.items():
         if candidate.kind not in ("connector", "inlet") or not analysis.design.parts[ref].fitted:
@@ -47,7 +48,7 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
         nets = [net for net in analysis.design.parts[ref].nets() if net in analysis.isolation.domain_of]
         hazardous = [net for net in nets if _hazard(analysis, net, clause.params)]
         if hazardous:
-            yield _of_hazard(analysis, clause, ref, tuple(hazardous), ref in supply_entries)
+            yield _of_hazard(analysis, clause, ref, tuple(hazardous), ref in supply_entries, lines)
             continue
         rails = [outputs[net] for net in nets if net in outputs]
         if rails:
@@ -62,7 +63,7 @@ def _hazard(analysis: Analysis, net: str, params: Params) -> bool:
     return not direct or max(direct) > params.dc
 
 
-def _of_hazard(analysis: Analysis, clause: Clause, ref: str, nets: tuple[str, ...], entry: bool) -> Verdict:
+def _of_hazard(analysis: Analysis, clause: Clause, ref: str, nets: tuple[str, ...], entry: bool, lines: frozenset[str]) -> Verdict:
     part = analysis.design.parts[ref]
     domain = analysis.isolation.domains[analysis.isolation.domain_of[nets[0]]]
     step = Step(f"{ref} carries {', '.join(nets[:6])} of {domain.name}", (part.fact, domain.step))
@@ -79,14 +80,20 @@ def _of_hazard(analysis: Analysis, clause: Clause, ref: str, nets: tuple[str, ..
         (("no user can reach it", "pass"), ("a user can", "fail")),
         ref,
     )
-    if is_wiring(analysis, ref):
-        what = "Mains wiring leaves the board at a connector that is not the supply entry."
+    if is_wiring(analysis, ref, lines) if domain.hazard == "mains" else not _meets_signals(analysis, nets):
+        what = "Supply wiring leaves the board at a connector that is not the supply entry."
         return clause.opens(subject, what, step.text, step, missing)
     if not analysis.choice[ref].sure:
         return clause.opens(subject, "A part that may be a connector carries the hazardous side.", step.text, step, missing)
     what = "A connector that a user can reach carries the hazardous side."
     limit = Words(f"{clause.params.dc:g} V d.c., {clause.params.rms:g} V r.m.s., {clause.params.peak:g} V peak")
     return clause.fails(subject, what, step.text, step, found=Words(domain.hazard), limit=limit)
+
+
+def _meets_signals(analysis: Analysis, nets: tuple[str, ...]) -> bool:
+    """Whether a net of a d.c. side meets an integrated circuit: then it is a signal, not a conductor of the supply."""
+    refs = {ref for net in nets for ref, _ in analysis.design.nets[net].pins if ref in analysis.choice}
+    return any(analysis.kind(ref) in ("ic", "controller", "module", "regulator", "optocoupler", "digital-isolator") for ref in refs)
 
 
 def _of_rail(analysis: Analysis, clause: Clause, ref: str, output: Output) -> Verdict:

@@ -111,7 +111,7 @@ def _of_disagreement(clause: Clause, ref: str, found: Disagreement) -> Verdict:
     what = "Two statements about one part cannot both be true."
     return clause.fails(
         Subject((ref,), key=(ref, found.attribute)), what, because, step,
-        found=Words(_said(found.other)), limit=Words(_said(found.kept)),
+        found=Words(f"{_said(found.other)} against {_said(found.kept)}"),
     )  # fmt: skip
 
 

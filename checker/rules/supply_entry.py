@@ -1,4 +1,4 @@
-"""Where the mains enters a board, its poles, and what counts as wiring. Shared by the rules about the mains side."""
+"""Where the hazardous supply enters a board, its poles, and what is wiring of the line, for the rules about the primary side."""
 
 from __future__ import annotations
 
@@ -7,47 +7,20 @@ from dataclasses import dataclass
 
 from checker.model.rule import Analysis
 
-# parts that only carry the line on: what lies behind them is still the same conductor
-SERIES = frozenset(
-    {
-        "switch",
-        "jumper",
-        "net-tie",
-        "thermistor",
-        "common-mode-choke",
-        "filter",
-        "inductor",
-        "ferrite",
-        "test-point",
-        "fuse",
-        "resettable-fuse",
-    }
+# parts that carry a line conductor on: what lies behind them is still the line, switched or fused or filtered
+_CARRY_ON = frozenset(
+    "switch jumper net-tie thermistor common-mode-choke filter inductor ferrite fuse resettable-fuse relay solid-state-relay triac "
+    "current-transformer hall-sensor".split()
 )
 _BARE = frozenset({"connector", "inlet", "test-point"})
-_WIRING = (
-    SERIES
-    | _BARE
-    | {
-        "relay",
-        "capacitor",
-        "varistor",
-        "gas-tube",
-        "lamp",
-        "motor",
-        "triac",
-        "resistor",
-        "transformer",
-        "current-transformer",
-        "isolated-module",
-        "solid-state-relay",
-        "hall-sensor",
-    }
-)
+_LINES = frozenset({"L", "LINE", "LIVE", "PHASE", "ACL", "L1"})
+_NEUTRALS = frozenset({"N", "NEUTRAL", "NEUT", "ACN"})
+_FILLERS = frozenset({"AC", "IN", "MAINS", "INPUT", "PWR"})
 
 
 @dataclass(frozen=True, slots=True)
 class Entry:
-    """A supply entry. poles: line and neutral nets in pin order; earth: nets of its earth contact; named: poles known by name."""
+    """A supply entry. poles: hazardous nets in pin order; line, neutral: where names tell them; earth: nets of earth contacts."""
 
     ref: str
     poles: tuple[str, ...]
@@ -56,34 +29,43 @@ class Entry:
     neutral: str | None
 
 
-def entries(analysis: Analysis) -> Mapping[str, Entry]:
-    """Supply entries of the mains side by reference, the best-evidenced first.
+def entries(analysis: Analysis, hazard: str = "mains") -> Mapping[str, Entry]:
+    """Supply entries of the side with this hazard ("mains" or "dc"), by reference.
 
-    A connector on the mains side is one when it is an inlet, when it carries both poles (by net name, pin name or because
-    all its mains nets are wiring and a fuse or line filter hangs on it). When several qualify, those with a fuse at a pole win.
+    A connector on that side is a candidate; an inlet, both poles named, a fuse, varistor or filter at a pole each speak for
+    it. The best win; a connector that nothing speaks for is the entry only when it is the only one.
     """
     scored: list[tuple[int, str, Entry]] = []
     for ref, candidate in analysis.choice.items():
-        part = analysis.design.parts[ref]
-        if candidate.kind not in ("connector", "inlet") or not part.fitted:
-            continue
-        entry = _entry(analysis, ref)
-        if entry is None:
-            continue
-        score = (
-            4 * (candidate.kind == "inlet") + 2 * (entry.line is not None and entry.neutral is not None) + (len(entry.poles) == 2)
-        )
-        at_poles = {
-            analysis.kind(other) for net in entry.poles for other, _ in analysis.design.nets[net].pins if other in analysis.choice
-        }
-        score += 3 * ("fuse" in at_poles) + ("filter" in at_poles or "common-mode-choke" in at_poles) + ("varistor" in at_poles)
-        if score > 1 and (candidate.kind == "inlet" or is_wiring(analysis, ref)):
-            scored.append((score, ref, entry))
+        if candidate.kind in ("connector", "inlet") and analysis.design.parts[ref].fitted:
+            entry = _entry(analysis, ref, hazard)
+            if entry is not None:
+                scored.append((_score(analysis, candidate.kind, entry), ref, entry))
     best = max((score for score, _, _ in scored), default=0)
+    if best == 0 and len(scored) > 1:
+        return {}
     return {ref: entry for score, ref, entry in scored if score == best}
 
 
-def _entry(analysis: Analysis, ref: str) -> Entry | None:
+def _score(analysis: Analysis, kind: str, entry: Entry) -> int:
+    kinds = {
+        analysis.kind(other)
+        for net in entry.poles
+        for other, _ in analysis.design.nets[net].pins
+        if other in analysis.choice and analysis.design.parts[other].fitted
+    }
+    left_out = any(
+        analysis.kind(other) == "fuse"
+        for net in entry.poles
+        for other, _ in analysis.design.nets[net].pins
+        if other in analysis.choice
+    )
+    named = entry.line is not None and entry.neutral is not None
+    score = 4 * (kind == "inlet") + 2 * named + 3 * ("fuse" in kinds or left_out)
+    return score + ("varistor" in kinds) + bool(kinds & {"filter", "common-mode-choke"}) + ("bridge" in kinds)
+
+
+def _entry(analysis: Analysis, ref: str, hazard: str) -> Entry | None:
     isolation = analysis.isolation
     poles: dict[str, None] = {}
     earth: dict[str, None] = {}
@@ -92,43 +74,47 @@ def _entry(analysis: Analysis, ref: str) -> Entry | None:
         if pin.net is None or pin.net not in isolation.domain_of:
             continue
         domain = isolation.domains[isolation.domain_of[pin.net]]
-        if domain.hazard == "mains":
+        if domain.hazard == hazard:
             poles[pin.net] = None
             words = {_word(pin.net), _word(pin.name)}
             line = pin.net if words & _LINES else line
             neutral = pin.net if words & _NEUTRALS else neutral
         elif domain.earthed:
             earth[pin.net] = None
-    if not poles:
-        return None
-    return Entry(ref, tuple(poles), tuple(earth), line, neutral)
-
-
-_LINES = frozenset({"L", "LINE", "LIVE", "PHASE", "ACL", "L1"})
-_NEUTRALS = frozenset({"N", "NEUTRAL", "NEUT", "ACN"})
+    return Entry(ref, tuple(poles), tuple(earth), line, neutral) if poles else None
 
 
 def _word(name: str) -> str:
-    """The word of a pole's name that tells the pole: `AC_L` and `L_IN` give L."""
-    words = [
-        word
-        for word in name.rsplit("/", 1)[-1].upper().replace("-", "_").split("_")
-        if word not in ("AC", "IN", "MAINS", "INPUT", "PWR")
-    ]
+    """The word of a name that tells the pole: `AC_L` and `L_IN` give L."""
+    words = [word for word in name.rsplit("/", 1)[-1].upper().replace("-", "_").split("_") if word not in _FILLERS]
     return words[0] if len(words) == 1 else ""
 
 
-def is_wiring(analysis: Analysis, ref: str) -> bool:
-    """Whether every mains net of a connector meets only line parts: nothing that a signal would come from."""
+def line_nets(analysis: Analysis) -> frozenset[str]:
+    """Nets that are line conductors: the poles of the supply entries and what switches, fuses and filters carry on from them.
+
+    Rectified nets are none: what hangs on them is a circuit, not wiring.
+    """
+    isolation = analysis.isolation
+    found = dict.fromkeys(net for entry in entries(analysis).values() for net in entry.poles)
+    queue = list(found)
+    for net in queue:
+        for ref, _ in analysis.design.nets[net].pins:
+            part = analysis.design.parts.get(ref)
+            if part is None or analysis.kind(ref) not in _CARRY_ON:
+                continue
+            for other in part.nets():
+                domain = isolation.domain_of.get(other)
+                if other not in found and domain is not None and isolation.domains[domain].hazard == "mains":
+                    found[other] = None
+                    queue.append(other)
+    return frozenset(found)
+
+
+def is_wiring(analysis: Analysis, ref: str, lines: frozenset[str]) -> bool:
+    """Whether every mains net of a connector is a line conductor: an outlet or a load terminal, not a signal."""
     isolation = analysis.isolation
     for net in analysis.design.parts[ref].nets():
-        if net in isolation.domain_of and isolation.domains[isolation.domain_of[net]].hazard == "mains":
-            for other, _ in analysis.design.nets[net].pins:
-                if other in analysis.choice and analysis.kind(other) not in _WIRING and not _rectifier_at_line(analysis, other):
-                    return False
+        if net in isolation.domain_of and isolation.domains[isolation.domain_of[net]].hazard == "mains" and net not in lines:
+            return False
     return True
-
-
-def _rectifier_at_line(analysis: Analysis, ref: str) -> bool:
-    """A bridge hangs straight on the line on boards without a filter; so do the four diodes that stand for one."""
-    return analysis.kind(ref) in ("bridge", "diode", "tvs")
