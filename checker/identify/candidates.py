@@ -179,11 +179,10 @@ def _ratings(
     for name, said in stated.items():
         kept = max(said, key=lambda fact: fact.trust)
         chosen[name] = kept
-        other = next(
-            (fact for fact in said if fact.value != kept.value and fact.unit == kept.unit and fact.form in (kept.form, "")), None
-        )
-        if other is not None and name == "voltage" and kind in ("capacitor", "fuse", "varistor"):
-            disagreements.append(Disagreement("rating:voltage", kept, other))
+        # a part with more than was asked for contradicts nobody, one with less does
+        asked = [f for f in said if f.trust < kept.trust and f.form in (kept.form, "") and float(f.value) > float(kept.value)]
+        if asked and name == "voltage" and kind in ("capacitor", "fuse"):
+            disagreements.append(Disagreement("rating:voltage", kept, asked[0]))
     return chosen, disagreements
 
 

@@ -14,9 +14,15 @@ import re
 
 from checker.identify.values import plain
 
-_CLASS = re.compile(r"(?<![^\W_])(?P<classes>(?:X[1-3]|Y[1-4])(?:X[1-3]|Y[1-4])?)(?![^\W_])(?![.,][0-9])(?!\s?(?:mm|pcs|\?))")
-_SMALL_CLASS = re.compile(r"(?<![^\W_])(?i:class)[\s:=-]{1,3}(?P<classes>(?:x[1-3]|y[1-4])(?:/?(?:x[1-3]|y[1-4]))?)(?![^\W_])(?!\s?\?)")
-# `100 pcs X2`, `10 X2`: a count in front makes it `times two`
+# what stands behind takes it back too: `Y1 pending`, `X2: no`
+_NOT_YET = r"(?!\s?[:=(-]?\s?(?:pending|tbd|like|equiv\w{0,8}|no|not|none)(?![^\W_]))"
+_CLASS = re.compile(
+    r"(?<![^\W_])(?P<classes>(?:X[1-3]|Y[1-4])(?:X[1-3]|Y[1-4])?)(?![^\W_])(?![.,][0-9])(?!\s?(?:mm|pcs|\?))" + _NOT_YET,
+)
+_SMALL_CLASS = re.compile(
+    r"(?<![^\W_])(?i:class)[\s:=-]{1,3}(?P<classes>(?:x[1-3]|y[1-4])(?:/?(?:x[1-3]|y[1-4]))?)(?![^\W_])(?!\s?\?)" + _NOT_YET
+)
+# `100 pcs X2`, `2 X2`: a count in front makes it `times two`
 _COUNT_BEFORE = re.compile(r"(?:(?<![^\W_])pcs|(?<![^\W_])qty|(?<![^\W_.,])[1-9])[\s:]{1,2}\Z", re.IGNORECASE)
 _TAKEN_BACK = re.compile(
     r"(?<![^\W_])(?:not|no|non|never|without|instead\sof|formerly|was|replaces|replaced|unlike|isn't|lacks|missing)"
@@ -29,7 +35,7 @@ _STANDARD = re.compile(
     r"(?:(?<![^\W_])(?P<prefix>IEC|EN|UL|CSA|VDE|DIN|GB|BS|V)|(?<![^\W_]))(?:[\s-]?(?:IEC|EN|V))?[\s-]{0,2}"
     r"(?P<number>60384-14|60747-5-[25]|60747-17|61558-1|61558-2-1[67]|61558-2-6|62368-1|60601-1|60335-1|60950-1|60065|61010-1|61051-2"
     r"|61810-1|60127|0884-1[017]|0884|1577|248-14)"
-    r"(?:(?<=60127)(?:-[0-9]{1,2})?)?(?![^\W_])(?!-[0-9])(?!\s?\?)",
+    r"(?:(?<=60127)(?:-[0-9]{1,2})?)?(?![^\W_])(?!-[0-9])(?!\s?\?)" + _NOT_YET,
     re.IGNORECASE,
 )
 _IEC_NEAR = re.compile(r"(?<![^\W_])(?:IEC|EN)[\s/&,+]{0,3}\Z", re.IGNORECASE)
@@ -112,15 +118,25 @@ def column(text: str) -> tuple[tuple[str, str], ...]:
         last = max(last, end)
     rest.append(cell[last:])
     pieces = [piece for part in rest for piece in _PIECES.split(part) if piece]
-    refused = False
+    refused, previous = False, ""
     for piece in pieces:
         word = piece.strip(".:-_'\"*")
         key = word.lower()
         small = re.fullmatch(r"(?:x[1-3]|y[1-4])(?:x[1-3]|y[1-4])?", key)
+        if key in ("pending", "no", "not") and kept and kept[-1][1] == previous:
+            kept.pop()  # `VDE pending`
         if small is not None and not refused and not piece.endswith("?"):
             kept += [(key[at : at + 2].upper(), piece) for at in range(0, len(key), 2)]
-        elif key not in _FILLERS and not refused and len(word) >= 2 and len(word) <= _MARK_LENGTH and word[0].isalpha() and "?" not in word:
+        elif (
+            key not in _FILLERS
+            and not refused
+            and len(word) >= 2
+            and len(word) <= _MARK_LENGTH
+            and word[0].isalpha()
+            and "?" not in word
+        ):
             kept.append((_NAMES.get(key, word.upper() if len(word) <= 6 else word), piece))
+        previous = piece
         refused = key in _REFUSING or (refused and key in _FILLERS)
     return tuple({name: (name, words) for name, words in reversed(kept)}.values())[::-1][:_MARKS_PER_CELL]
 

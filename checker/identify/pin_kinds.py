@@ -32,7 +32,7 @@ def of_pins(pins: Pins) -> Signature | None:
     if not 2 <= len(pins) <= MOST_PINS:
         return None
     seen = _Names(pins)
-    if not seen.all:
+    if not seen.labels:
         return None
     for look in _LOOKS:
         found = look(seen)

@@ -72,7 +72,9 @@ _POWER = re.compile(
     rf"{_START}(?:1\s?/\s?(?P<share>[0-9]{{1,2}})|(?P<number>{_NUMBER}))\s{{0,2}}(?P<prefix>[mMk]?)(?:W|w|Watts?|WATTS?){_END}"
     r"(?!/(?:m|cm|K|C|mK)(?![^\W_]))"
 )
-_PERCENT = re.compile(rf"{_START}(?P<number>[0-9]{{1,3}}(?:[.,][0-9]{{1,3}})?|\.[0-9]{{1,3}})\s?%(?!\s?(?:RH|hum|duty|eff|load|derat))", re.IGNORECASE)
+_PERCENT = re.compile(
+    rf"{_START}(?P<number>[0-9]{{1,3}}(?:[.,][0-9]{{1,3}})?|\.[0-9]{{1,3}})\s?%(?!\s?(?:RH|hum|duty|eff|load|derat))", re.IGNORECASE
+)
 _TWO_SIDED = re.compile(r"[+-]\s?(?P<one>[0-9]{1,3})\s?%?\s?[/,]?\s?[+-]\s?(?P<two>[0-9]{1,3})\s?%")
 _NO_TOLERANCE_BEFORE = re.compile(r"(?:humidity|RH|eff\.?|efficiency|derat\w{0,5}|load|duty)[\s=:<>]{0,2}\Z", re.IGNORECASE)
 _DEGREES = r"(?:\s?(?:\u00b0|deg)\s?C|[oC]?C)"
@@ -86,7 +88,9 @@ _DISTANCE = re.compile(r"creepage|clearance", re.IGNORECASE)
 _GROUPED = re.compile(r"(?<![0-9.,])([1-9][0-9]{0,2}),([0-9]{3})(?=\s?V)")
 _LONG_BEFORE_COMMA = re.compile(r"(?<![0-9.,])([0-9]{4,7}),")
 _DATE = re.compile(r"(?<![0-9])(?:[0-9]{4}[-/.][0-9]{1,2}[-/.][0-9]{1,2}|[0-9]{1,2}[./][0-9]{1,2}[./][0-9]{4})(?![0-9])")
-_PRICE = re.compile(r"[$\u20ac\u00a3]\s?[0-9][0-9.,]{0,9}|[0-9][0-9.,]{0,9}\s?(?:[$\u20ac\u00a3]|EUR(?![^\W_])|USD(?![^\W_])|GBP(?![^\W_]))")
+_PRICE = re.compile(
+    r"[$\u20ac\u00a3]\s?[0-9][0-9.,]{0,9}|[0-9][0-9.,]{0,9}\s?(?:[$\u20ac\u00a3]|EUR(?![^\W_])|USD(?![^\W_])|GBP(?![^\W_]))"
+)
 
 # what a word beside a voltage makes of it
 _LABEL = re.compile(
@@ -236,7 +240,9 @@ def _contacts(found: Found, volts: list[_Volts], contacts: list[_Volts], kind: s
     if coil is not None and kind == "relay":
         rating = coil.rating
         found.attributes["coil_voltage"] = (f"{rating.value:g} V {rating.form}".strip(), rating.words)
-    switched = [one for one in volts if one is not coil and (one.rating.form == "rms" or one.rating.value >= 100 or one in contacts)]
+    switched = [
+        one for one in volts if one is not coil and (one.rating.form == "rms" or one.rating.value >= 100 or one in contacts)
+    ]
     if (voltage := _lowest(switched)) is not None:
         found.ratings["voltage"] = voltage
 
@@ -413,8 +419,12 @@ _SIZE = re.compile(
 
 def _made_of(found: Found, text: str, kind: str) -> None:
     if kind == "capacitor":
-        named = [(_CAPACITOR_WORDS[word[0].lower()], word[0]) for word in _WORD.finditer(text) if word[0].lower() in _CAPACITOR_WORDS]
-        dielectric = next((match[0] for match in _DIELECTRIC.finditer(text) if match[0].upper() in _C0G or match[0][0] not in "cnCN"), "")
+        named = [
+            (_CAPACITOR_WORDS[word[0].lower()], word[0]) for word in _WORD.finditer(text) if word[0].lower() in _CAPACITOR_WORDS
+        ]
+        dielectric = next(
+            (match[0] for match in _DIELECTRIC.finditer(text) if match[0].upper() in _C0G or match[0][0] not in "cnCN"), ""
+        )
         if dielectric:
             name = dielectric.upper()
             found.attributes["dielectric"] = ("C0G" if name in _C0G else name, dielectric)

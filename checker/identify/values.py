@@ -103,7 +103,9 @@ def _spellings() -> dict[str, dict[str, tuple[int, bool, bool]]]:
 
     hertz = {"k": (3, True, False), "K": (3, True, False), "M": (6, True, False)}
     for word in ("Hz", "HZ", "hz"):
-        hertz |= {prefix + word: (power, True, True) for prefix, power in (("", 0), ("k", 3), ("K", 3), ("M", 6), ("m", 6), ("G", 9))}
+        hertz |= {
+            prefix + word: (power, True, True) for prefix, power in (("", 0), ("k", 3), ("K", 3), ("M", 6), ("m", 6), ("G", 9))
+        }
 
     ampere = {}
     for prefix, power in (("", 0), ("m", -3), ("M", -3), ("k", 3)):
@@ -114,7 +116,13 @@ def _spellings() -> dict[str, dict[str, tuple[int, bool, bool]]]:
 
 _SPELLINGS = _spellings()
 # prefix letters that may stand for the decimal point, and what may touch the digits behind
-_INFIX = {"ohm": frozenset("RrEkKMGm") | {"Meg", "meg"}, "F": frozenset("pPnNuUm"), "H": frozenset("num"), "Hz": frozenset("kKM"), "A": frozenset("A")}
+_INFIX = {
+    "ohm": frozenset("RrEkKMGm") | {"Meg", "meg"},
+    "F": frozenset("pPnNuUm"),
+    "H": frozenset("num"),
+    "Hz": frozenset("kKM"),
+    "A": frozenset("A"),
+}
 _AFTER_INFIX = {
     "ohm": frozenset({"", "\u03a9", "R", "ohm", "Ohm", "F", "G", "J"}),
     "F": frozenset({"", "F", "f", "J", "K", "M"}),
@@ -134,7 +142,8 @@ _TOKEN = re.compile(
 _DASHED = re.compile(r"-(?:[0-9]{1,4}(?:\.[0-9]{1,2})?(?:[kK]?V|W|%)|X[1-9]|Y[1-5]|C0G|COG|NP0)")
 _TOLERANCE_BEFORE = re.compile(r"(?:\u00b1|\+/?-)\s{0,2}\Z")
 _LABEL_BEFORE = re.compile(
-    r"(?:DCR|ESR|ESL|RDC|TCR|SRF|TRIP|BREAKING|B[0-9/]{0,6}|LEAK|LEAKAGE|MAX|MIN)[\s=:<\u2264~(.]{1,4}\Z|(?:DCR|ESR|RDC)\Z", re.IGNORECASE
+    r"(?:DCR|ESR|ESL|RDC|TCR|SRF|TRIP|BREAKING|B[0-9/]{0,6}|LEAK|LEAKAGE|MAX|MIN)[\s=:<\u2264~(.]{1,4}\Z|(?:DCR|ESR|RDC)\Z",
+    re.IGNORECASE,
 )
 _ELECTROLYTIC = re.compile(r"(?<![^\W_])(?:elko|elec|electrolytic|alu|alum|alumini?um|elca|supercap|edlc)(?![^\W_])", re.IGNORECASE)
 _SUPERCAP = re.compile(r"super\s?cap|ultra\s?cap|edlc|double.?layer|(?<![^\W_])[0-9][.,][0-9]\s?V(?![^\W_])", re.IGNORECASE)
@@ -264,7 +273,9 @@ _WORDS_BEFORE = (
     r"\s*(?:(?:RES|RESISTOR|CAP|CAPACITOR|CER|CERAMIC|MLCC|DISC|DISK|CY|CX|[RCL]|IND|INDUCTOR|DNP|NA|NP|NF)(?:[\s:(]|\Z)\s*){0,3}"
 )
 _NO_UNIT_AFTER = r"(?![^\W_])(?!\.[0-9])(?![,][0-9])(?!\s*(?:[A-Za-z%\u00b0\u03a9-]|/\s*[0-9]{1,2}\s?W))"
-_LEADING_LETTER = re.compile(_WORDS_BEFORE + r"(?P<letter>[RpnuE])(?P<digits>[0-9]{1,4})(?P<unit>[FH\u03a9]?)(?![^\W_])(?!\.[0-9])(?!-)")
+_LEADING_LETTER = re.compile(
+    _WORDS_BEFORE + r"(?P<letter>[RpnuE])(?P<digits>[0-9]{1,4})(?P<unit>[FH\u03a9]?)(?![^\W_])(?!\.[0-9])(?!-)"
+)
 _BARE = re.compile(_WORDS_BEFORE + r"(?P<number>[0-9]{1,7}(?:[.,][0-9]{1,6})?|\.[0-9]{1,6})" + _NO_UNIT_AFTER)
 _CODE = re.compile(
     _WORDS_BEFORE + r"(?P<code>[1-9][0-9][0-689])(?P<tolerance>[GJKMZ]?)(?![^\W_])(?!\.[0-9])(?!,[0-9])"
@@ -385,7 +396,9 @@ def _amperes(text: str, kind: str) -> _Found | None:
     found = list(_tokens(text, "A", "fuse"))
     if not found:
         match = _NO_UNIT_FUSE.search(text) if kind == "fuse" else None
-        return None if match is None else _Found(Decimal(match["number"].replace(",", ".")), False, False, match.start(), match.end())
+        return (
+            None if match is None else _Found(Decimal(match["number"].replace(",", ".")), False, False, match.start(), match.end())
+        )
     smallest = min(found, key=lambda one: one.value)
     if smallest.value <= 0 or (len(found) == 1 and smallest.value > 1000):
         return None
@@ -398,7 +411,9 @@ _STANDOFF_TYPE = re.compile(
     r"(?<![A-Za-z])(?:SM[ABCDF]J|SMF|5KP|SM8S)(?P<number>[0-9]{1,3}(?:\.[0-9])?)(?:C?A)?(?![^\W_])(?!\.[0-9])", re.IGNORECASE
 )
 _BREAKDOWN_TYPE = re.compile(r"(?<![A-Za-z])(?:P[46]KE|1\.5KE|P[46]SM[AB]|SM6T|SM15T|1\.5SMC)[0-9]", re.IGNORECASE)
-_PLAIN_V = re.compile(r"(?<![^\W_])(?<![.\u00b1<])(?<![0-9],)(?P<number>[0-9]{1,3}(?:[.,][0-9]{1,2})?)\s?V(?P<wm>R?WM)?(?![^\W_])(?!\.[0-9])")
+_PLAIN_V = re.compile(
+    r"(?<![^\W_])(?<![.\u00b1<])(?<![0-9],)(?P<number>[0-9]{1,3}(?:[.,][0-9]{1,2})?)\s?V(?P<wm>R?WM)?(?![^\W_])(?!\.[0-9])"
+)
 
 
 def _volts(text: str, kind: str) -> _Found | None:

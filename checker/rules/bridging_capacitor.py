@@ -82,6 +82,11 @@ def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict
     words = {"found": Words(shown), "limit": Words(" or ".join(wanted))}
     if any(_satisfies(classes, arrangement) for arrangement in wanted):
         return clause.passes(subject, what, f"{grade.grade} insulation accepts {shown}", step, **words)
+    if not _from_mains(analysis, crossing):
+        answers = (("Y1 or Y2", "pass"), ("none, but made and tested for this insulation", "pass with a concession"), ("none", "fail"))
+        missing = Missing("class", "BOM column Class, or marks in a parts file", answers, crossing.chain[0])
+        because = f"{grade.grade} insulation from a d.c. source, the chain is {shown}; whether a class is needed there is not settled here"
+        return clause.opens(subject, what, because, step, missing, **words)
     unknown = [
         ref for ref, name in zip(crossing.chain, classes, strict=True) if name is None and not _described(analysis.choice[ref])
     ]
@@ -103,6 +108,12 @@ def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict
         step,
         **words,
     )
+
+
+def _from_mains(analysis: Analysis, crossing: Crossing) -> bool:
+    """Whether the mains is on one side; a d.c. source is another matter, nothing known is taken for the mains."""
+    hazards = {analysis.isolation.domains[name].hazard for name in crossing.between}
+    return "mains" in hazards or "dc" not in hazards
 
 
 def _class_of(candidate: Candidate) -> str | None:

@@ -91,7 +91,9 @@ def _of_hazard(analysis: Analysis, clause: Clause, ref: str, nets: tuple[str, ..
 
 
 def _meets_signals(analysis: Analysis, nets: tuple[str, ...]) -> bool:
-    """Whether a net of a d.c. side meets an integrated circuit: then it is a signal, not a conductor of the supply."""
+    """Whether a connector of a d.c. side carries signals: more than a pair of nets, one of which meets an integrated circuit."""
+    if len(nets) <= 2:
+        return False
     refs = {ref for net in nets for ref, _ in analysis.design.nets[net].pins if ref in analysis.choice}
     return any(analysis.kind(ref) in ("ic", "controller", "module", "regulator", "optocoupler", "digital-isolator") for ref in refs)
 

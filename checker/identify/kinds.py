@@ -1,0 +1,319 @@
+"""The kind of a part, and why.
+
+Order of trust: a declared kind; the type family of value, part number or symbol; words of symbol, value, description, library
+and footprint; pin names; the reference letters; the value. A part wrongly taken for an ordinary one makes a sound board look
+shorted, and one wrongly taken for an insulating one can hide a short: a word alone never makes an insulating part of something
+with the reference of a connector, resistor, capacitor, diode or transistor, or with too few pins.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from functools import lru_cache
+
+from checker import limits
+from checker.identify import families, pin_kinds, word_kinds
+from checker.identify.references import CLASSES, Class
+from checker.identify.word_kinds import Hit
+from checker.model.candidate import CONNECTORS, INSULATING, KINDS, MECHANICAL, UNKNOWN
+from checker.model.circuit import Part
+from checker.model.fact import Fact
+from checker.neutral import neutral
+
+
+@dataclass(frozen=True, slots=True)
+class Judged:
+    """kind of `KINDS`. sure: False when it rests on a reference letter or one weak word. listed: declared or a known type family.
+
+    because: one sentence that names the words and where they stand. attributes: output (triac, thyristor, transistor, logic,
+    driver) of couplers and solid-state relays, offline, acdc and magnetics as `yes`.
+    """
+
+    kind: str
+    sure: bool
+    listed: bool
+    because: str
+    attributes: dict[str, str] = field(default_factory=dict)
+
+
+# where text is read, most telling first; links and distributors' numbers are never read
+_PLACES = ("symbol", "value", "type", "description", "library", "footprint")
+_TYPED = ("value", "type", "symbol")
+_WEIGHT = {"symbol": 3, "value": 2, "type": 2, "description": 3, "library": 1, "footprint": 1}
+_READ = frozenset({*_PLACES, "kind"})
+
+# fewest pins a part of the kind can have
+_LEAST_PINS = {"current-transformer": 2, "digital-isolator": 6, "isolated-driver": 6, "isolated-amplifier": 6, "hall-sensor": 4}
+# kinds that say little: pin names or a more telling word may say more
+_VAGUE = frozenset({"ic", "module", "sensor", "regulator", "controller", UNKNOWN})
+# references of parts that are never insulating by a word alone
+_PLAIN = frozenset(
+    "R C D Q J P X CN CON CONN F FB FU RV TH RT NTC PTC Y SW S BT H MH FID TP LED DZ ZD VD VT TVS CX CY CE BR DB JP L".split()
+)
+
+Texts = tuple[tuple[str, str], ...]  # (attribute, text)
+
+
+def judge(part: Part, facts: Sequence[Fact] | None = None) -> Judged:
+    """The kind that the facts of one choice of a part, its pins and its reference show. facts: default those of the part."""
+    stated = [
+        fact
+        for fact in (part.facts if facts is None else facts)
+        if fact.attribute in _READ and isinstance(fact.value, str) and fact.value
+    ]
+    if any(fact.trust != stated[0].trust for fact in stated):
+        stated.sort(key=lambda fact: -fact.trust)
+    texts = tuple((fact.attribute, str(fact.value)[: limits.CELL]) for fact in stated)
+    few = len(part.pins) <= pin_kinds.MOST_PINS
+    pins = tuple((pin.number, pin.name) for pin in part.pins) if few else ()
+    found = _judge(prefix(part.ref), texts, pins, len(part.pins))
+    return Judged(found.kind, found.sure, found.listed, found.because, dict(found.attributes))
+
+
+_LETTERS = re.compile(r"[^\W\d_]+")
+
+
+def prefix(ref: str) -> str:
+    """The letters a reference begins with, in upper case, or those in front of its number where only these are known."""
+    groups: list[str] = _LETTERS.findall(ref[:64].upper())
+    if not groups:
+        return ""
+    first, last = groups[0], groups[-1]
+    return last if first not in CLASSES and last in CLASSES and len(groups) > 1 else first
+
+
+@lru_cache(maxsize=4096)
+def _judge(letters: str, texts: Texts, pins: pin_kinds.Pins, count: int) -> Judged:
+    family = _family(letters, texts, count)
+    for attribute, text in texts:
+        kind = normal_kind(text) if attribute == "kind" else None
+        if kind is not None:
+            more = dict(family.attributes) if family is not None and family.kind == kind else {}
+            return Judged(kind, True, True, f"kind given as `{neutral(text, limit=60)}`", more)
+    signature = pin_kinds.of_pins(pins) if pins else None
+    if family is not None:
+        if family.kind == "mosfet" and signature is not None and signature.kind == "igbt":
+            return Judged("igbt", True, True, f"{family.because}; pin names: {signature.names}")  # 20N60 is either
+        return family
+    group = CLASSES.get(letters)
+    words = _words(letters, group, texts, count)
+    if signature is not None and _contradicted(signature.kind, letters, count, words):
+        signature = None
+    if words is not None and not (signature is not None and _says_more(signature.kind, words)):
+        sure = words.sure or (signature is not None and signature.kind == words.kind)
+        more = dict(words.attributes)
+        if signature is not None and signature.kind == words.kind:
+            more = {**signature.attributes, **more}
+        return Judged(words.kind, sure, False, words.because, more)
+    if signature is not None:
+        return Judged(signature.kind, signature.sure, False, f"pin names: {signature.names}", dict(signature.attributes))
+    return _by_reference(letters, group, texts, count)
+
+
+def _family(letters: str, texts: Texts, count: int) -> Judged | None:
+    """The first known type among value, part number and symbol that can stand under such a reference."""
+    for attribute, text in texts:
+        found = families.find(text) if attribute in _TYPED else None
+        if found is None:
+            continue
+        kind = found.family.kind
+        attributes = dict(found.family.attributes)
+        if kind == "transformer" and letters in _CONNECTING:
+            kind, attributes = "connector", {"magnetics": "yes"}
+        if not _possible(kind, letters, count):
+            continue
+        where = {"type": "part number"}.get(attribute, attribute)
+        return Judged(kind, True, True, f"type family {found.family.what} in {where} `{neutral(found.word, limit=60)}`", attributes)
+    return None
+
+
+_CONNECTING = frozenset(letters for letters, group in CLASSES.items() if group.kind == "connector")
+_PASSIVE = frozenset("R C L CX CY CE RN FB".split())
+
+
+def _possible(kind: str, letters: str, count: int) -> bool:
+    """Whether a part of that kind can have such a reference and so many pins (0: not known)."""
+    group = CLASSES.get(letters)
+    if letters in _PASSIVE and group is not None and kind not in group.kinds and 0 < count < 4:
+        return False
+    if kind in INSULATING and letters in _PLAIN and 0 < count < 4:
+        return False
+    return not (kind in INSULATING and letters in ("C", "CX", "CY", "CE", "R") and count < 4)
+
+
+@dataclass(frozen=True, slots=True)
+class _Word:
+    kind: str
+    sure: bool
+    because: str
+    attributes: Mapping[str, str]
+
+
+def _words(letters: str, group: Class | None, texts: Texts, count: int) -> _Word | None:
+    """The most telling phrase of all texts; one that agrees with the reference goes before another."""
+    best: tuple[int, str, Hit] | None = None
+    for place in _PLACES:
+        for attribute, text in texts:
+            if attribute != place:
+                continue
+            for hit in _hits(place, text):
+                hit = _fitting(hit, count)
+                agrees = group is not None and hit.kind in group.kinds
+                if not _allowed(hit, place, letters, count, agrees):
+                    continue
+                score = 2 * hit.rank + 3 * agrees + _WEIGHT[place]
+                if best is None or score > best[0]:
+                    best = score, place, hit
+    if best is None:
+        return None
+    _, place, hit = best
+    agrees = group is not None and hit.kind in group.kinds
+    kind = hit.kind
+    if agrees and group is not None and hit.rank == 1 and place in ("footprint", "library"):
+        kind = group.kind  # `L_0603` below a ferrite bead FB1: the reference knows better
+    where = {"type": "part number"}.get(place, place)
+    return _Word(kind, hit.rank > 1 or agrees, f"word `{hit.words}` in the {where}", hit.attributes)
+
+
+def _hits(place: str, text: str) -> tuple[Hit, ...]:
+    found = word_kinds.hits(text)
+    if place in ("description", "value", "footprint") and word_kinds.mains_module(text):
+        found = (*found, Hit("isolated-module", 2, "ac dc converter", 0, {"acdc": "yes"}))
+    # single letters are symbols (`C`, `R_Small`) or chip footprints, never words of a text
+    return tuple(hit for hit in found if len(hit.words) > 2 or (hit.at == 0 and place in ("symbol", "footprint")) or hit.rank > 1)
+
+
+def _fitting(hit: Hit, count: int) -> Hit:
+    """`isolator` alone may be a coupler: the pins tell."""
+    if hit.words == "isolator" and 0 < count <= 6:
+        return Hit("optocoupler", hit.rank, hit.words, hit.at, hit.attributes)
+    return hit
+
+
+def _allowed(hit: Hit, place: str, letters: str, count: int, agrees: bool) -> bool:
+    if hit.kind in INSULATING and (0 < count < _LEAST_PINS.get(hit.kind, 4) or letters in _PLAIN - _LARGE_COILS):
+        return False
+    if letters in ("C", "CX", "CY", "CE") and 0 < count <= 2 and hit.kind != "capacitor":
+        return False
+    if hit.kind == "capacitor" and count > 3:
+        return False
+    if hit.kind in _OPEN and letters in CLASSES and not agrees and place in ("description", "value", "type"):
+        return False
+    # the value of a connector says what is plugged in there
+    return not (letters in _CONNECTING and place in ("value", "type") and hit.kind not in CONNECTORS and not agrees)
+
+
+# kinds that carry no current between their pins: a wrong one would hide a short, so a sentence alone does not make them
+_OPEN = CONNECTORS | MECHANICAL | {"capacitor", "varistor", "gas-tube", "spark-gap"}
+_LARGE_COILS = frozenset({"L"})  # a transformer may be drawn as L1; with four pins the word is believed
+
+
+def _says_more(kind: str, words: _Word) -> bool:
+    """Whether a pin signature goes before the words: an insulating kind before a vague one, a named part before `transistor`."""
+    if kind == words.kind:
+        return False
+    if kind in INSULATING:
+        return words.kind in _VAGUE or (words.kind in INSULATING and not words.sure)
+    return not words.sure and words.kind in ("ic", "module", "bipolar", "diode", UNKNOWN)
+
+
+def _contradicted(kind: str, letters: str, count: int, words: _Word | None) -> bool:
+    if kind == "bridge" and letters in ("K", "RL", "RLY", "RE", "SSR"):
+        return True  # + - ~ ~ are the pins of a solid-state relay too
+    if kind in INSULATING and letters in _CONNECTING:
+        return words is None or words.kind in CONNECTORS
+    return kind in INSULATING and letters in ("R", "C") and count < 4
+
+
+def _by_reference(letters: str, group: Class | None, texts: Texts, count: int) -> Judged:
+    values = " ".join(text for attribute, text in texts if attribute in ("value", "type"))
+    quoted = neutral(letters, limit=20)
+    if group is not None:
+        kind = group.kind_for(count, values)
+        if kind in INSULATING and 0 < count < _LEAST_PINS.get(kind, 4):
+            kind = UNKNOWN
+        if kind != UNKNOWN:
+            return Judged(kind, False, False, f"reference letters {quoted} alone")
+    if values:
+        for pattern, kind in _VALUES:
+            if pattern.match(values.strip()) and 0 <= count <= 2:
+                return Judged(kind, False, False, f"value `{neutral(values.strip(), limit=60)}` alone")
+    return Judged(UNKNOWN, False, False, "nothing says what it is")
+
+
+_VALUES = (
+    (re.compile(r"\d{1,5}(?:[.,]\d{1,3})?\s?[pnuµμm]F?\d{0,2}(?![A-Za-z])"), "capacitor"),
+    (re.compile(r"\d{1,5}(?:[.,]\d{1,3})?\s?[pnuµμm]?H(?![A-Za-z])"), "inductor"),
+    (re.compile(r"\d{1,5}(?:[.,]\d{1,3})?\s?(?:[kKMR]\d{0,3}|[kM]?(?:ohm|Ω|Ω))(?![A-Za-z])"), "resistor"),
+    (re.compile(r"\d{1,5}(?:[.,]\d{1,6})?\s?[kM]Hz", re.IGNORECASE), "crystal"),
+)
+
+
+@lru_cache(maxsize=1024)
+def normal_kind(text: str) -> str | None:
+    """The kind of `KINDS` a declared word means; blanks, dashes, underscores and case do not matter; None when it is none."""
+    said = "-".join(re.findall(r"[^\W_]+", text[: limits.NAME].casefold()))
+    for word in (said, said.removesuffix("s"), said.removesuffix("es")):
+        found = _SYNONYMS.get(word, word)
+        if found in KINDS:
+            return found
+    return None
+
+
+# Only words with one meaning: `transistor` and `dc-dc converter` leave open what matters here.
+_SYNONYMS = {
+    word: kind
+    for kind, listed in {
+        "transformer": "xfmr trafo flyback-transformer mains-transformer power-transformer pulse-transformer",
+        "gate-drive-transformer": "gate-driver-transformer gate-transformer",
+        "current-transformer": "current-sense-transformer ct",
+        "optocoupler": "opto opto-coupler optoisolator opto-isolator photocoupler photo-coupler opto-triac optotriac phototriac",
+        "digital-isolator": "isolator isolated-transceiver",
+        "isolated-module": "isolated-dc-dc isolated-dcdc isolated-dc-dc-converter isolated-dc-dc-module isolated-converter "
+        "ac-dc-module acdc-module ac-dc-converter ac-dc ac-dc-power-module isolated-dcdc-converter isolated-power-module",
+        "relay": "reed-relay electromechanical-relay",
+        "solid-state-relay": "ssr photorelay photo-relay photomos",
+        "isolated-amplifier": "isolation-amplifier",
+        "isolated-driver": "isolated-gate-driver",
+        "hall-sensor": "hall hall-effect-sensor hall-current-sensor",
+        "resistor": "res",
+        "capacitor": "cap y-capacitor x-capacitor electrolytic-capacitor ceramic-capacitor film-capacitor elko safety-capacitor",
+        "inductor": "ind choke coil",
+        "ferrite": "ferrite-bead bead",
+        "common-mode-choke": "cmc emi-choke common-mode-inductor common-mode-filter",
+        "filter": "emi-filter line-filter mains-filter",
+        "diode": "schottky schottky-diode rectifier rectifier-diode",
+        "zener": "zener-diode",
+        "tvs": "tvs-diode transient-suppressor suppressor esd-protection",
+        "bridge": "bridge-rectifier rectifier-bridge diode-bridge",
+        "bipolar": "bjt bipolar-transistor npn pnp",
+        "mosfet": "nfet pfet fet nmos pmos nmosfet pmosfet n-mosfet p-mosfet",
+        "thyristor": "scr",
+        "varistor": "mov vdr",
+        "gas-tube": "gdt gas-discharge-tube",
+        "thermistor": "ntc ptc-thermistor ntc-thermistor inrush-limiter",
+        "fuse": "fuse-holder fuseholder",
+        "resettable-fuse": "polyfuse ptc-fuse poly-fuse pptc",
+        "switch": "button push-button pushbutton",
+        "jumper": "solder-jumper",
+        "net-tie": "nettie",
+        "crystal": "xtal resonator oscillator quartz",
+        "network": "resistor-network resistor-array",
+        "battery": "battery-holder cell coin-cell",
+        "potentiometer": "pot trimmer trimpot",
+        "regulator": "ldo voltage-regulator linear-regulator switching-regulator",
+        "controller": "pwm-controller smps-controller",
+        "shunt-reference": "shunt-regulator shunt-voltage-reference",
+        "ic": "integrated-circuit mcu microcontroller",
+        "connector": "conn terminal-block terminal header socket plug jack",
+        "inlet": "mains-inlet ac-inlet power-inlet appliance-inlet",
+        "test-point": "testpoint test-pad",
+        "hole": "mounting-hole",
+        "heatsink": "heat-sink",
+        "buzzer": "speaker",
+        "display": "lcd oled",
+    }.items()
+    for word in listed.split()
+}
