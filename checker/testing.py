@@ -7,7 +7,7 @@ lists every verdict the rule must give. The whole pipeline runs, so a case also 
     cases:
       - name: a resistor joins both sides
         outcome: fail                       # what the case is there to show: pass, fail, open, not-applicable
-        base: mains-flyback                 # optional: a circuit of `circuits:` that this one extends
+        base: [mains-flyback, class-i]      # optional: circuits of `circuits:` that this one extends, later parts replace
         declaration: {supply: {mains: 230 V}}
         parts:
           R9: {value: 1M, pins: {1: PGND, 2: SGND}}
@@ -17,7 +17,9 @@ lists every verdict the rule must give. The whole pipeline runs, so a case also 
 
 A part takes `value`, `symbol`, `library`, `footprint`, `description`, `type`, `maker`, `mark`, any `rating:...`, `turns`,
 `windings`, `fitted`, `kind`; `pins` maps pin numbers to nets, `names` pin numbers to pin names. `bom: true` puts its facts
-into a bill of materials instead of the netlist.
+into a bill of materials instead of the netlist, `bom: {description: ...}` adds a row of its own to them, `bom: false` keeps the
+part out of the bill that the other parts are then in. `rows: {R7: {value: 1k}}` of a case are rows for parts that the netlist
+lacks. `circuits:` is a map of named circuits, or the name of a file beside this one that holds them.
 """
 
 from __future__ import annotations
@@ -27,11 +29,13 @@ from pathlib import Path
 
 from checker import declaration as declarations
 from checker import files, limits, pipeline, rulesets
+from checker.model.clause import LEVELS
 from checker.model.declaration import Declaration
-from checker.model.fact import Fact, Source, Trust
+from checker.model.fact import ATTRIBUTES, Fact, Source, Trust
 from checker.model.reading import NetRecord, Node, PartRecord, Reading, Row, SymbolPin
 from checker.model.report import Report
-from checker.strict_yaml import Map, load
+from checker.model.verdict import OUTCOMES
+from checker.strict_yaml import Map, load, suggestion
 from checker.strict_yaml import Node as YamlNode
 
 Expected = tuple[str, str, tuple[str, ...]]
@@ -39,19 +43,26 @@ Expected = tuple[str, str, tuple[str, ...]]
 
 @dataclass(frozen=True, slots=True)
 class Described:
-    """One part of a case: its facts, pins (number -> net) and pin names (number -> name)."""
+    """One part of a case: its facts, pins (number -> net) and pin names (number -> name).
+
+    row: the facts of its row in the bill of materials, None for none of its own; listed: whether a bill lists it at all.
+    """
 
     ref: str
     facts: tuple[Fact, ...]
     pins: tuple[tuple[str, str], ...]
     names: tuple[tuple[str, str], ...]
-    bom: bool
+    row: tuple[Fact, ...] | None
+    listed: bool
     source: Source
 
 
 @dataclass(frozen=True, slots=True)
 class Case:
-    """outcome: what it shows. parts: the circuit. expect: every verdict of the rule as (outcome, level, parts)."""
+    """outcome: what it shows. parts: the circuit. rows: BOM rows of parts it lacks. line: where the case stands.
+
+    expect: every verdict of the rule as (outcome, level, parts).
+    """
 
     rule: str
     name: str
@@ -60,45 +71,65 @@ class Case:
     declaration: Declaration
     rulesets: tuple[str, ...]
     expect: tuple[Expected, ...]
+    rows: tuple[Row, ...] = ()
+    line: int = 0
 
 
 def load_cases(path: Path) -> tuple[Case, ...]:
     """The cases of a file. Raises InputError with the line for a case that cannot be read."""
     keys = load(files.read(path, limit=limits.YAML_BYTES, shown=path.name))
     rule = keys.need("rule").text()
-    circuits = keys.take("circuits")
-    bases = {key.text(): _parts(node.map()) for key, node in circuits.entries()} if circuits is not None else {}
+    bases = _circuits(keys.take("circuits"), path)
     found = tuple(_case(rule, node.map(), bases, path.name) for node in keys.need("cases").items())
     keys.done()
     return found
 
 
+def _circuits(node: YamlNode | None, path: Path) -> dict[str, dict[str, Described]]:
+    """Named circuits: written here, or in a file beside this one."""
+    if node is None:
+        return {}
+    if node.kind == "scalar":
+        if Path(node.text()).name != node.text():
+            raise node.error("is not the name of a file beside this one", expected="a file name such as circuits.yaml")
+        beside = load(files.read(path.parent / node.text(), limit=limits.YAML_BYTES, shown=node.text()))
+        return {key.text(): _parts(circuit.map()) for key, circuit in beside.rest()}
+    return {key.text(): _parts(circuit.map()) for key, circuit in node.entries()}
+
+
 def _case(rule: str, keys: Map, bases: dict[str, dict[str, Described]], path: str) -> Case:
     base = keys.take("base")
-    parts = dict(bases[base.one_of(bases)]) if base is not None else {}
+    parts: dict[str, Described] = {}
+    for node in base.each() if base is not None else ():
+        parts.update(bases[node.one_of(bases)])
     without = keys.take("without")
     for node in without.each() if without is not None else ():
         parts.pop(node.one_of(parts))
     own = keys.take("parts")
     parts.update(_parts(own.map()) if own is not None else {})
-    declared = keys.take("declaration")
+    declared, extra = keys.take("declaration"), keys.take("rows")
     chosen = keys.take("rulesets")
     case = Case(
         rule,
         keys.need("name").text(),
-        keys.need("outcome").one_of(("pass", "fail", "open", "not-applicable")),
+        keys.need("outcome").one_of(OUTCOMES),
         tuple(parts.values()),
         declarations.from_map(declared.map(), path) if declared is not None else Declaration(),
         chosen.texts() if chosen is not None else rulesets.DEFAULT,
         tuple(_expected(node) for node in keys.need("expect").items()),
+        tuple(_row(key, node.map()) for key, node in extra.entries()) if extra is not None else (),
+        keys.node.line,
     )
     keys.done()
     return case
 
 
 def _expected(node: YamlNode) -> Expected:
-    outcome, level, parts = node.items()
-    return outcome.text(), level.text(), parts.texts()
+    items = node.items()
+    if len(items) != 3:
+        raise node.error("is not a verdict", found=f"{len(items)} items", expected="[outcome, level, [parts]]")
+    outcome, level, parts = items
+    return outcome.one_of(OUTCOMES), level.one_of(LEVELS), tuple(part.text() for part in parts.items())
 
 
 def _parts(keys: Map) -> dict[str, Described]:
@@ -108,42 +139,56 @@ def _parts(keys: Map) -> dict[str, Described]:
 def _part(key: YamlNode, keys: Map) -> Described:
     source = Source(key.path, key.line, key.column)
     pins, names, bom = keys.take("pins"), keys.take("names"), keys.take("bom")
-    in_bom = bom is not None and bom.flag()
-    facts = []
+    row = _facts(bom.map(), Trust.BOM) if bom is not None and bom.kind == "map" else None
+    whole = bom is not None and row is None and bom.flag()
+    facts = _facts(keys, Trust.BOM if whole else Trust.NETLIST)
+    listed = bom is None or whole or row is not None
+    if whole:
+        facts, row = (), facts
+    return Described(key.text(), facts, _pairs(pins), _pairs(names), row, listed, source)
+
+
+def _facts(keys: Map, trust: Trust) -> tuple[Fact, ...]:
+    found = []
     for name, node in keys.rest():
         attribute = name.text()
+        if attribute not in ATTRIBUTES:
+            raise node.error("is no attribute of a part" + suggestion(attribute, ATTRIBUTES), found=attribute)
         value: str | bool = node.flag() if attribute in ("fitted", "in_bom") else node.text()
-        facts.append(Fact(attribute, value, Source(node.path, node.line, node.column), Trust.BOM if in_bom else Trust.NETLIST))
-    return Described(key.text(), tuple(facts), _pairs(pins), _pairs(names), in_bom, source)
+        found.append(Fact(attribute, value, Source(node.path, node.line, node.column), trust))
+    return tuple(found)
+
+
+def _row(key: YamlNode, keys: Map) -> Row:
+    return Row((key.text(),), _facts(keys, Trust.BOM), Source(key.path, key.line, key.column))
 
 
 def _pairs(node: YamlNode | None) -> tuple[tuple[str, str], ...]:
     return tuple((key.text(), value.text()) for key, value in node.entries()) if node is not None else ()
 
 
-def readings(parts: tuple[Described, ...]) -> list[Reading]:
-    """A netlist reading of the described parts, and a BOM reading when some have their facts there."""
+def readings(parts: tuple[Described, ...], rows: tuple[Row, ...] = ()) -> list[Reading]:
+    """A netlist reading of the described parts, and a BOM reading when some have their facts there or `rows` are given."""
     nets: dict[str, list[Node]] = {}
-    records, rows = [], []
+    records = []
     for part in parts:
         names = dict(part.names)
         for pin, net in part.pins:
             nets.setdefault(net, []).append(Node(part.ref, pin, names.get(pin, ""), "", part.source))
         symbol = tuple(SymbolPin(pin, names.get(pin, "")) for pin in dict.fromkeys([*dict(part.pins), *names]))
-        records.append(PartRecord(part.ref, () if part.bom else part.facts, part.source, symbol))
-        if part.bom:
-            rows.append(Row((part.ref,), part.facts, part.source))
+        records.append(PartRecord(part.ref, part.facts, part.source, symbol))
     listed = tuple(NetRecord(name, name, tuple(nodes), nodes[0].source) for name, nodes in nets.items())
-    found = [Reading("netlist", "case", parts[0].source.path if parts else "", "", tuple(records), listed)]
-    if rows:
-        others = [Row((part.ref,), (), part.source) for part in parts if not part.bom]
-        found.append(Reading("bom", "case", parts[0].source.path, "", rows=(*rows, *others)))
+    path = parts[0].source.path if parts else ""
+    found = [Reading("netlist", "case", path, "", tuple(records), listed)]
+    if rows or any(part.row is not None or not part.listed for part in parts):
+        bill = tuple(Row((part.ref,), part.row or (), part.source) for part in parts if part.listed)
+        found.append(Reading("bom", "case", path, "", rows=(*bill, *rows)))
     return found
 
 
 def report_of(case: Case) -> Report:
     """The report of a case, judged by its rulesets. A rule that raises fails the case."""
-    judged = pipeline.judge(case.name, readings(case.parts), case.declaration, rulesets.load_all(case.rulesets), ())
+    judged = pipeline.judge(case.name, readings(case.parts, case.rows), case.declaration, rulesets.load_all(case.rulesets), ())
     if judged.raised:
         raise AssertionError("\n".join(judged.raised))
     return judged.report

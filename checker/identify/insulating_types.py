@@ -133,14 +133,14 @@ CONVERTERS: tuple[Row, ...] = (
         {"acdc": "yes"},
         r"HLK-?(?:PM\d\d|\d{1,3}[MCD]\d\d) IRM-?\d{2}[MS]?-\d TMLM?-?\d{5} TMLM-?\d{2} TMPS-?\d\d"
         r" L(?:DE?|S|HE?|O|N|B|I|M|F)\d{2}-\d{2}[A-Z]\d RAC\d{2}[A-Z]?-\w"
-        r" EC[EFLMP]\d{2}U[ST]\d EML\d{2}US\d M[FP]M-\d{2} PSK-\w+ PBO-\d VSK-S\d VTX-\d{3} PM0[139]$ AP\d\dN\d\d-ZERO"
+        r" EC[EFLMP]\d{2}U[ST]\d EML\d{2}US\d M[FP]M-\d{2} PSK-\w\d PBO-\d VSK-S\d VTX-\d{3} PM0[139]$ AP\d\dN\d\d-ZERO"
         r" AMEO?F?L?\d{1,2}-\d CFM\d\d[SD]\d HAW?\d{1,2}-220[SD]",
     ),
     (
         "isolated-module",
         "isolated converter module",
         {},
-        rf"[A-H]{_V}{_V}(?:L|X|R|N|M|U)?[SDTMN] [A-H]{_V}{_V}[A-Z]*-\d{{1,2}}W I[A-Z]{{1,2}}{_V}{_V}[A-Z]{{0,2}}"
+        rf"[A-H]{_V}{_V}(?:L|X|R|N|M|U)?[SDTMN] [A-H]{_V}{_V}[A-Z]{{0,3}}-\d{{1,2}}W I[A-Z]{{1,2}}{_V}{_V}[A-Z]{{0,2}}"
         rf" {_V}{_V}[SD]?-?\d?W [UVW][RW][ABEF]\d{{4}} PW[AB]\d{{4}}"
         rf" NM[A-Z]\d{{4}} NK[AE]\d{{4}} NT[AEV]{_V}{_V} ND[FLSTY]\d{{4}} NPH\d\d[SD]\d{{4}}"
         rf" (?:ME[AEFJRUV]|CR[ELRV]|NX[EJ]|NCS|MT[CEU]|MGJ)\d[SDQT]\d{{4,6}}"
@@ -177,7 +177,7 @@ MAGNETICS: tuple[Row, ...] = (
         {"magnetics": "yes"},
         r"H[RY]9\d{5} J00\d\d[A-Z] JK[0M]\w{4} J1B1\d{3} RJP-\d{3}TC\d LPJ[A-Z]{0,2}\d{3,4} RB1-\d{3} ARJM?\d{2} SI-[4-6]\d{4}"
         r" L8\d\d-1[A-Z]1T 08\d\d-?1[A-Z]1T HFJT?1\w?-\d"
-        r" TRJG?\d{4} KRJ-\w JFM\d{5} RJL(?:BC|UG|D)-\d RJMG\d MAGJACK\w*",
+        r" TRJG?\d{4} KRJ-\w JFM\d{5} RJL(?:BC|UG|D)-\d RJMG\d MAGJACK",
     ),
     (
         "current-transformer",

@@ -46,6 +46,8 @@ _READ = frozenset({*_PLACES, "kind"})
 
 # fewest pins a part of the kind can have
 _LEAST_PINS = {"current-transformer": 2, "digital-isolator": 6, "isolated-driver": 6, "isolated-amplifier": 6, "hall-sensor": 4}
+# kinds whose words stand for more special ones too: a chip footprint `L_0603`, `transceiver` of an isolated one
+_GENERIC = frozenset({"resistor", "capacitor", "inductor", "diode", "ic", "module", "sensor", "bipolar"})
 # kinds that say little: pin names or a more telling word may say more
 _VAGUE = frozenset({"ic", "module", "sensor", "regulator", "controller", UNKNOWN})
 # references of parts that are never insulating by a word alone
@@ -98,12 +100,15 @@ def _judge(letters: str, texts: Texts, pins: pin_kinds.Pins, count: int) -> Judg
             return Judged("igbt", True, True, f"{family.because}; pin names: {signature.names}")  # 20N60 is either
         return family
     group = CLASSES.get(letters)
+    wound = next((place for place, text in texts if place == "description" and count >= 4 and _insulated_winding(text)), "")
+    if wound and letters == "L":
+        return Judged("transformer", False, False, f"an auxiliary winding with a test voltage in the {wound}")
     words = _words(letters, group, texts, count)
     if signature is not None and _contradicted(signature.kind, letters, count, words):
         signature = None
     if words is not None and not (signature is not None and _says_more(signature.kind, words)):
         sure = words.sure or (signature is not None and signature.kind == words.kind)
-        more = dict(words.attributes)
+        more = {**words.attributes, **_said_of(words.kind, texts)}
         if signature is not None and signature.kind == words.kind:
             more = {**signature.attributes, **more}
         return Judged(words.kind, sure, False, words.because, more)
@@ -143,6 +148,16 @@ def _possible(kind: str, letters: str, count: int) -> bool:
     return not (kind in INSULATING and letters in ("C", "CX", "CY", "CE", "R") and count < 4)
 
 
+_VOLTS = re.compile(r"(?<![\w.])(\d{3,5})\s?V(?:DC|AC|RMS)?\b|(?<![\w.])\d(?:\.\d{1,2})?\s?KV", re.IGNORECASE)
+
+
+def _insulated_winding(text: str) -> bool:
+    """Whether an inductor has a second winding that is insulated for some hundred volts: it crosses like a transformer."""
+    words = set(word_kinds.tokens(text))
+    volts = _VOLTS.search(text)
+    return bool(words & {"aux", "auxiliary"} and "winding" in words and volts and int(volts[1] or 1000) >= 500)
+
+
 @dataclass(frozen=True, slots=True)
 class _Word:
     kind: str
@@ -163,7 +178,7 @@ def _words(letters: str, group: Class | None, texts: Texts, count: int) -> _Word
                 agrees = group is not None and hit.kind in group.kinds
                 if not _allowed(hit, place, letters, count, agrees):
                     continue
-                score = 2 * hit.rank + 3 * agrees + _WEIGHT[place]
+                score = 2 * hit.rank + 3 * agrees + _WEIGHT[place] + (hit.kind not in _GENERIC)
                 if best is None or score > best[0]:
                     best = score, place, hit
     if best is None:
@@ -171,18 +186,36 @@ def _words(letters: str, group: Class | None, texts: Texts, count: int) -> _Word
     _, place, hit = best
     agrees = group is not None and hit.kind in group.kinds
     kind = hit.kind
-    if agrees and group is not None and hit.rank == 1 and place in ("footprint", "library"):
-        kind = group.kind  # `L_0603` below a ferrite bead FB1: the reference knows better
+    if group is not None and agrees and group.choose is None and place in ("footprint", "library") and kind in _GENERIC:
+        kind = group.kind  # an inductor's footprint below FB1: the reference knows better
     where = {"type": "part number"}.get(place, place)
     return _Word(kind, hit.rank > 1 or agrees, f"word `{hit.words}` in the {where}", hit.attributes)
 
 
+@lru_cache(maxsize=8192)
 def _hits(place: str, text: str) -> tuple[Hit, ...]:
     found = word_kinds.hits(text)
+    if place == "value" and word_kinds.tokens(text)[:2] == ("ac", "dc"):
+        found = (*found, Hit("isolated-module", 1, "ac dc", 0, {"acdc": "yes"}))
     if place in ("description", "value", "footprint") and word_kinds.mains_module(text):
         found = (*found, Hit("isolated-module", 2, "ac dc converter", 0, {"acdc": "yes"}))
     # single letters are symbols (`C`, `R_Small`) or chip footprints, never words of a text
     return tuple(hit for hit in found if len(hit.words) > 2 or (hit.at == 0 and place in ("symbol", "footprint")) or hit.rank > 1)
+
+
+def _said_of(kind: str, texts: Texts) -> dict[str, str]:
+    """Attributes that a word anywhere tells of a part whose kind is known: a triac output, transformers inside a jack."""
+    words = [word_kinds.tokens(text) for attribute, text in texts if attribute in _PLACES]
+    if kind in ("optocoupler", "solid-state-relay") and any("triac" in line for line in words):
+        return {"output": "triac"}
+    if kind == "connector" and any(_with_magnetics(line) for line in words):
+        return {"magnetics": "yes"}
+    return {}
+
+
+def _with_magnetics(words: Sequence[str]) -> bool:
+    at = next((at for at, word in enumerate(words) if word in ("magnetic", "magjack")), None)
+    return at is not None and not {"without", "no", "non", "less"} & set(words[max(0, at - 2) : at + 2])
 
 
 def _fitting(hit: Hit, count: int) -> Hit:
@@ -199,7 +232,11 @@ def _allowed(hit: Hit, place: str, letters: str, count: int, agrees: bool) -> bo
         return False
     if hit.kind == "capacitor" and count > 3:
         return False
+    if hit.rank == 1 and letters in CLASSES and not agrees and place != "symbol":
+        return False
     if hit.kind in _OPEN and letters in CLASSES and not agrees and place in ("description", "value", "type"):
+        return hit.kind == "capacitor" and hit.rank > 1 and count == 2
+    if hit.kind == "inductor" and hit.rank == 1 and letters in ("T", "TR") and count >= 4:
         return False
     # the value of a connector says what is plugged in there
     return not (letters in _CONNECTING and place in ("value", "type") and hit.kind not in CONNECTORS and not agrees)
@@ -216,7 +253,7 @@ def _says_more(kind: str, words: _Word) -> bool:
         return False
     if kind in INSULATING:
         return words.kind in _VAGUE or (words.kind in INSULATING and not words.sure)
-    return not words.sure and words.kind in ("ic", "module", "bipolar", "diode", UNKNOWN)
+    return words.kind in ("ic", "module") or (not words.sure and words.kind in ("bipolar", "diode"))
 
 
 def _contradicted(kind: str, letters: str, count: int, words: _Word | None) -> bool:

@@ -93,13 +93,12 @@ def _standard(match: re.Match[str], text: str) -> str:
 
 
 _PIECES = re.compile(r"[\s,;/+|()\[\]]+")
-_NAMES = {
-    "ul": "UL", "ur": "UR", "cul": "cUL", "culus": "cULus", "curus": "cURus", "vde": "VDE", "enec": "ENEC", "csa": "CSA", "cqc": "CQC",
-    "t\u00fcv": "T\u00dcV", "tuv": "T\u00dcV", "ce": "CE", "ccc": "CCC", "bsi": "BSI", "kc": "KC", "pse": "PSE",
-}  # fmt: skip
+_NAMES = {name.lower(): name for name in "UL UR cUL cULus cURus VDE ENEC CSA CQC CE CCC BSI KC PSE T\u00dcV".split()} | {
+    "tuv": "T\u00dcV"
+}
 _FILLERS = frozenset(
-    "and or to per the class classes safety approved approval approvals approval: certified recognized recognised listed insulation isolation "
-    "file iec en din ed edition with rated capacitor cap n/a na none no not nil null nan any tbd yes pending".split()
+    "and or to per the class classes safety approved approval approvals certified recognized recognised listed insulation "
+    "isolation file iec en din ed edition with rated capacitor cap n/a na none no not nil null nan any tbd yes pending".split()
 )
 _REFUSING = frozenset("no not non without pending".split())
 _MARKS_PER_CELL = 16
@@ -107,7 +106,7 @@ _MARK_LENGTH = 24
 
 
 def column(text: str) -> tuple[tuple[str, str], ...]:
-    """Marks of a Class or Approval cell: those of `read`, then each other word of it as it is usually written. `none` gives none."""
+    """Marks of a Class or Approval cell: those of `read`, then each other word as it is usually written. `none` gives ()."""
     cell = plain(text)
     found = _found(cell)
     kept = [(name, words) for name, words, _, _ in found]
@@ -148,7 +147,7 @@ _CLASS_OR_VOLTS = re.compile(
 
 
 def class_voltages(text: str) -> dict[str, float]:
-    """Rated voltage [V] of each class, where the text gives one voltage a class (`X1 440V / Y2 300V`, `X1/Y2 440/300V`); else {}."""
+    """Rated voltage [V] of each class where there is one voltage a class (`X1 440V / Y2 300V`, `X1/Y2 440/300V`), else {}."""
     names: list[str] = []
     volts: list[float] = []
     order = ""

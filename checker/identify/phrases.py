@@ -17,7 +17,7 @@ PHRASES: dict[str, tuple[str, str]] = {
         "isolator",
     ),
     "isolated-amplifier": (
-        "isolated amplifier,isolation amplifier,isolation amp,isolated amp,isolated modulator,isolated adc",
+        "isolated amplifier,isolation amplifier,isolation amp,isolated amp,iso amp,isolated modulator,isolated adc",
         "",
     ),
     "isolated-driver": (
@@ -46,10 +46,10 @@ PHRASES: dict[str, tuple[str, str]] = {
         "",
     ),
     "transformer": (
-        "transformer,xfmr,xformer,trafo,transformator,transfo,transformateur,übertrager,uebertrager,ubertrager,"
+        "transformer,xfmr,xformer,trafo,netztrafo,printtrafo,ringkerntrafo,netztransformator,transformator,transfo,transformateur,übertrager,uebertrager,ubertrager,"
         "transformador,lan magnetic,"
         "ethernet magnetic",
-        "coupled inductor,l coupled",
+        "",
     ),
     "hall-sensor": (
         "hall effect current sensor,hall current sensor,current sensor hall,sensor current hall,"
@@ -93,7 +93,7 @@ PHRASES: dict[str, tuple[str, str]] = {
     "filter": ("line filter,emi filter,mains filter,netzfilter,power line filter,emifilter", ""),
     "inductor": (
         "inductor,fixed ind,ind fixed,choke,pfc choke,drossel,speicherdrossel,induktivität,power inductor,bobine",
-        "ind,l,coil",
+        "ind,l,coil,coupled inductor,l coupled,l core ferrite,l core iron,l ferrite core",
     ),
     "bridge": (
         "bridge rect,bridge rectifier,diode bridge,rectifier bridge,d bridge,brückengleichrichter,brueckengleichrichter,"
@@ -169,7 +169,7 @@ PHRASES: dict[str, tuple[str, str]] = {
         "controller",
     ),
     "module": (
-        "rf module,wifi module,bluetooth module,radio module,dc dc converter,dcdc converter,dc to dc converter,dcdc,dc converter",
+        "rf module,wifi module,bluetooth module,radio module,dc dc converter,dcdc converter,dc to dc converter,dcdc",
         "module",
     ),
     "ic": (

@@ -13,6 +13,7 @@ from functools import lru_cache
 
 MOST_PINS = 40  # parts with more are processors and connectors; no signature has that many
 
+
 @dataclass(frozen=True, slots=True)
 class Signature:
     """kind with the names that show it. sure: False when ordinary parts with such names exist."""
@@ -48,8 +49,9 @@ class _Names:
         named = [(number, _plain(name)) for number, name in pins]
         self.pins = [(number, name) for number, name in named if name and name not in _UNUSED]
         self.all = [name for number, name in self.pins if name != number]
-        self.labels = [name if name not in ("", "~") else number.upper() for number, name in named if name not in _UNUSED]
+        self.labels = [name if name not in ("", "~") else _plain(number) for number, name in named if name not in _UNUSED]
         self.some = set(self.all)
+        self.one_a_line = "\n".join(self.all)
         self.count = len({number for number, _ in pins})
         numbers = [int(number) for number, _ in pins if number.isascii() and number.isdecimal() and len(number) < 4]
         self.numbered = len(numbers) == len(pins)
@@ -58,30 +60,37 @@ class _Names:
 
     def has(self, pattern: str) -> bool:
         """Whether a whole name matches."""
-        return any(re.fullmatch(pattern, name) for name in self.some)
+        return _whole(pattern).search(self.one_a_line) is not None
 
     def every(self, pattern: str) -> int:
         """How many pins bear a name that matches."""
-        return sum(1 for name in self.all if re.fullmatch(pattern, name))
+        return sum(1 for _ in _whole(pattern).finditer(self.one_a_line))
 
     def only(self, pattern: str) -> bool:
         """Whether every used pin's label matches."""
-        return bool(self.labels) and all(re.fullmatch(pattern, label) for label in self.labels)
+        return bool(self.labels) and sum(1 for _ in _whole(pattern).finditer("\n".join(self.labels))) == len(self.labels)
 
     def apart(self, one: str, other: str) -> bool:
         """Whether the names of `one` lie on one long side of the package and those of `other` on the other side."""
         if not self.numbered:
             return False
-        places = [[int(number) for number, name in self.pins if re.fullmatch(pattern, name)] for pattern in (one, other)]
+        places = [[int(number) for number, name in self.pins if _whole(pattern).fullmatch(name)] for pattern in (one, other)]
         if not all(places):
             return False
         (low, high) = sorted(places)
         return any(max(low) <= middle < min(high) for middle in self.middles)
 
 
+@lru_cache(maxsize=256)
+def _whole(pattern: str) -> re.Pattern[str]:
+    """Matches a whole line; names hold no blank, so a line is a name."""
+    return re.compile(f"^(?:{pattern})$", re.MULTILINE)
+
+
 _UNUSED = frozenset({"NC", "N/C", "N.C.", "N.C", "DNC", "NC1", "NC2", "EP", "NIL"})
 
 
+@lru_cache(maxsize=8192)
 def _plain(name: str) -> str:
     """Upper case, without bars and blanks; `AC(L)` and `AC/L` are one name."""
     text = re.sub(r"[~{}\s]", "", name[:64].upper())
@@ -158,14 +167,14 @@ _COIL = r"A1|A2|COIL\w{0,2}[+-]?|COIL[+-]|\+|-|L[+-]|C[+-]"
 def _relay(seen: _Names) -> Signature | None:
     if not 4 <= seen.count <= 16:
         return None
-    coil = [label for label in seen.labels if re.fullmatch(r"A1|A2|COIL\w{0,2}[+-]?", label)]
+    coil = [label for label in seen.labels if _whole(r"A1|A2|COIL\w{0,2}[+-]?").fullmatch(label)]
     if len(coil) == 2 and len(seen.labels) >= 4 and seen.only(rf"{_COIL}|{_CONTACT}"):
-        if sum(1 for label in seen.labels if re.fullmatch(r"[1-4][1234]|COM\w*|NO\w*|NC\w*", label)) >= 2 or "COIL" in coil[0]:
+        if sum(1 for label in seen.labels if _whole(r"[1-4][1234]|COM\w*|NO\w*|NC\w*").fullmatch(label)) >= 2 or "COIL" in coil[0]:
             return Signature("relay", "coil and contacts")
     changeover = seen.has(r"COM\d?|C|POLE") and seen.has(r"NO\d?")
     supplied = seen.some & {"V+", "VCC", "VDD", "GND", "IN", "VSS", "EN", "SEL", "S", "V-", "VEE"}
-    rest = [label for label in seen.labels if not re.fullmatch(r"(?:COM|NO|NC|C|POLE|COMMON)\d?", label)]
-    if changeover and not supplied and len(rest) == 2 and all(re.fullmatch(rf"{_COIL}|\d{{1,2}}|~", label) for label in rest):
+    rest = [label for label in seen.labels if not _whole(r"(?:COM|NO|NC|C|POLE|COMMON)\d?").fullmatch(label)]
+    if changeover and not supplied and len(rest) == 2 and all(_whole(rf"{_COIL}|\d{{1,2}}|~").fullmatch(label) for label in rest):
         return Signature("relay", "two coil pins beside COM, NO or NC")
     return None
 
@@ -237,7 +246,7 @@ def _bridge(seen: _Names) -> Signature | None:
         len(seen.labels) == 4
         and {"+", "-"} <= seen.some
         and len(rest) == 2
-        and all(re.fullmatch(r"~\d?|AC\d?|\d", one) for one in rest)
+        and all(_whole(r"~\d?|AC\d?|\d").fullmatch(one) for one in rest)
     ):
         return Signature("bridge", "+, - and two a.c. pins")
     return None

@@ -12,7 +12,7 @@ wrong choice asks for too much, not too little. Styles of text: common practice,
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from dataclasses import dataclass, field
 from decimal import Decimal
 
@@ -58,7 +58,7 @@ _NUMBER = r"[0-9]{1,7}(?:[.,][0-9]{1,4})?|\.[0-9]{1,4}"
 _END = r"(?![^\W_])(?!\.[0-9])"
 _START = r"(?<![^\W_])(?<!\.)(?<![0-9],)"
 # the value before a rating may touch it: 470u25V, T2AH250V
-_TOUCHING = rf"(?:{_START}|(?<=[0-9][npuA])|(?<=[0-9][npu]F)|(?<=[0-9]A[HLTF]))"
+_TOUCHING = rf"(?:{_START}|(?<=[0-9][npuA])|(?<=[0-9]{{3}}[JKM])|(?<=[0-9][npu]F)|(?<=[0-9]A[HLTF]))"
 _FORM = r"rms|r\.m\.s\.|ac[\s-]?rms|ac|a\.c\.|~|dc|d\.c\.|=|\u2393|peak|pk|p"
 _VOLTAGE = re.compile(
     rf"{_TOUCHING}(?P<number>{_NUMBER})(?:(?P<gap>\s{{1,2}})|)(?P<prefix>[kKm]?)W?(?P<volt>[Vv])(?:[\s(-]?(?P<form>(?i:{_FORM}))\)?)?"
@@ -76,7 +76,9 @@ _PERCENT = re.compile(
     rf"{_START}(?P<number>[0-9]{{1,3}}(?:[.,][0-9]{{1,3}})?|\.[0-9]{{1,3}})\s?%(?!\s?(?:RH|hum|duty|eff|load|derat))", re.IGNORECASE
 )
 _TWO_SIDED = re.compile(r"[+-]\s?(?P<one>[0-9]{1,3})\s?%?\s?[/,]?\s?[+-]\s?(?P<two>[0-9]{1,3})\s?%")
-_NO_TOLERANCE_BEFORE = re.compile(r"(?:humidity|RH|eff\.?|efficiency|derat\w{0,5}|load|duty)[\s=:<>]{0,2}\Z", re.IGNORECASE)
+_NO_TOLERANCE_BEFORE = re.compile(
+    r"(?:humidity|(?<!%)(?<!%\s)RH|eff\.?|efficiency|derat\w{0,5}|load|duty)[\s=:<>]{0,2}\Z", re.IGNORECASE
+)
 _DEGREES = r"(?:\s?(?:\u00b0|deg)\s?C|[oC]?C)"
 _TEMPERATURE_RANGE = re.compile(
     rf"-\s?[0-9]{{1,3}}{_DEGREES}?\s?(?:~|\.{{2,3}}|to|/|-|\u2013)\s?\+?(?P<high>[0-9]{{2,3}}){_DEGREES}{_END}", re.IGNORECASE
@@ -94,10 +96,10 @@ _PRICE = re.compile(
 
 # what a word beside a voltage makes of it
 _LABEL = re.compile(
-    r"(?P<none>(?<![^\W_])(?:V(?:F|GS|GE|TH|BE|EB|C|CL|CC|DD|IN|OUT|IOTM)|ESD|HBM|CDM|CMTI|surge|pulse|sat|ripple|clamp\w{0,4})(?![^\W_]))"
+    r"(?P<none>(?<![^\W_])(?:V(?:F|GS|GE|TH|BE|EB|C|CL|CC|DD|IN|OUT|IOTM)|ESD|HBM|CDM|CMTI|surge|pulse|sat|clamp\w{0,4})(?![^\W_]))"
     r"|(?P<impulse>(?<![^\W_])(?:impulse|VIOSM)(?![^\W_]))"
-    r"|(?P<viorm>(?<![^\W_])VIORM(?![^\W_]))|(?P<viowm>(?<![^\W_])VIOWM(?![^\W_]))|(?P<working>(?<![^\W_])working(?![^\W_]))"
-    r"|(?P<test>(?<![^\W_])(?:iso|viso|isol|isolation|insulation(?!\sres)|withstand\w{0,3}|hi-?pot|dwv|dielectric\sstrength|test(?:ed)?)(?![^\W_]))"
+    r"|(?P<viorm>(?<![^\W_])VIORM(?![^\W_]))|(?P<viowm>(?<![^\W_])VIOWM(?![^\W_]))|(?P<working>(?<![^\W_])working(?:\svoltage)?(?![^\W_]))"
+    r"|(?P<test>(?<![^\W_])(?:iso|viso|isol|isolation|insulation(?!\sres)|withstand\w{0,3}|hi-?pot|dwv|dielectric\sstrength|test(?:ed)?)(?:\svoltage)?(?![^\W_]))"
     r"|(?P<coil>(?<![^\W_])coil(?![^\W_]))",
     re.IGNORECASE,
 )
@@ -375,11 +377,15 @@ def _distances(text: str) -> dict[str, Rating]:
     """Creepage and clearance, only where the word stands before or behind the length."""
     found: dict[str, Rating] = {}
     lengths = list(_MILLIMETRES.finditer(text))
+    # `creepage 8 mm, clearance 7 mm` or `8 mm creepage, 7 mm clearance`: one order through the whole text
+    leads = bool(lengths) and _DISTANCE.search(text, 0, lengths[0].start()) is not None
     for at, match in enumerate(lengths):
-        left = lengths[at - 1].end() if at else 0
-        right = lengths[at + 1].start() if at + 1 < len(lengths) else len(text)
-        names = _DISTANCE.findall(text, max(left, match.start() - 30), match.start())
-        names = names or _DISTANCE.findall(text, match.end(), min(right, match.end() + 24))
+        if leads:
+            left = lengths[at - 1].end() if at else 0
+            names = _DISTANCE.findall(text, max(left, match.start() - 30), match.start())
+        else:
+            right = lengths[at + 1].start() if at + 1 < len(lengths) else len(text)
+            names = _DISTANCE.findall(text, match.end(), min(right, match.end() + 24))
         value = _float(match["number"])
         for name in names:
             kept = found.get(name.lower())
@@ -476,7 +482,7 @@ _UP_TO = frozenset({"temperature", "voltage"})
 
 
 def column(name: str, text: str) -> Rating | None:
-    """The rating in a cell of the column `name` (with or without `rating:`), a bare number in the natural unit; None if unreadable."""
+    """The rating in a cell of the column `name` (or `rating:<name>`), a bare number in the natural unit; None if unreadable."""
     name = name.removeprefix("rating:")
     unit = _NATURAL.get(name)
     words = text[: limits.CELL].strip()
@@ -492,11 +498,10 @@ def column(name: str, text: str) -> Rating | None:
     ends = _RANGE.split(cell)
     if len(ends) > 2 or (len(ends) == 2 and name not in _UP_TO):
         return None
-    one: Callable[[str], Rating | None] = lambda piece: _cell(piece.strip(), unit, words)  # noqa: E731
-    if len(ends) == 2:
-        low, high = one(ends[0].strip().removeprefix("-")), one(ends[1])
-        return high if low is not None else None
-    return one(cell)
+    rating = _cell(ends[-1].strip(), unit, words)
+    if len(ends) == 2 and _cell(ends[0].strip().removeprefix("-"), unit, words) is None:
+        return None
+    return rating
 
 
 def _cell(cell: str, unit: str, words: str) -> Rating | None:

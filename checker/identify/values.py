@@ -57,6 +57,7 @@ _LEADS = {
     "thermistor": frozenset({"NTC", "PTC"}),
 }
 _E24 = frozenset("10 11 12 13 15 16 18 20 22 24 27 30 33 36 39 43 47 51 56 62 68 75 82 91".split())
+_E96 = frozenset(round(100 * 10 ** (step / 96)) for step in range(96))
 _SIZES = frozenset("0201 0402 0603 0805 1206 1210 1218 1808 1812 1825 2010 2220 2225 2512".split())
 
 # U+00B5 and U+03BC micro, U+2126 and U+03A9 ohm, Cyrillic letters that look like Latin ones
@@ -82,7 +83,7 @@ def _spellings() -> dict[str, dict[str, tuple[int, bool, bool]]]:
     """unit -> letters after the number -> (power of ten, sure, explicit)."""
     ohm = {"R": (0, True, False), "r": (0, True, False), "E": (0, True, False)}
     ohm |= {"k": (3, True, False), "K": (3, True, False), "M": (6, True, False), "G": (9, True, False), "m": (-3, False, False)}
-    ohm |= {mega: (6, True, False) for mega in ("Meg", "meg", "MEG", "Mega", "mega", "MEGA")}
+    ohm |= dict.fromkeys(("Meg", "meg", "MEG", "Mega", "mega", "MEGA"), (6, True, False))
     ohm |= {prefix + "R": (power, True, False) for prefix, power in (("u", -6), ("m", -3), ("k", 3), ("K", 3), ("M", 6))}
     for word in ("\u03a9", "ohm", "ohms", "Ohm", "Ohms", "OHM", "OHMS"):
         ohm |= {prefix + word: (power, True, True) for prefix, power in (("", 0), ("u", -6), ("m", -3), ("k", 3), ("K", 3))}
@@ -93,7 +94,7 @@ def _spellings() -> dict[str, dict[str, tuple[int, bool, bool]]]:
         ohm |= {prefix + letter: (ohm[prefix][0], True, False) for letter in "FGJ"}
 
     farad = {"F": (0, True, True), "mF": (-3, False, True), "m": (-3, False, False)}  # mF was long written for microfarad
-    farad |= {word: (-6, True, True) for word in ("MFD", "mfd", "Mfd", "uFD", "ufd", "uFd", "UFD")}
+    farad |= dict.fromkeys(("MFD", "mfd", "Mfd", "uFD", "ufd", "uFd", "UFD"), (-6, True, True))
     henry = {"H": (0, True, True), "mH": (-3, True, True), "mh": (-3, True, True), "MH": (-3, True, True), "m": (-3, True, False)}
     for prefix, power in (("p", -12), ("n", -9), ("u", -6)):
         for letter in (prefix, prefix.upper()):
@@ -107,7 +108,7 @@ def _spellings() -> dict[str, dict[str, tuple[int, bool, bool]]]:
             prefix + word: (power, True, True) for prefix, power in (("", 0), ("k", 3), ("K", 3), ("M", 6), ("m", 6), ("G", 9))
         }
 
-    ampere = {}
+    ampere: dict[str, tuple[int, bool, bool]] = {}
     for prefix, power in (("", 0), ("m", -3), ("M", -3), ("k", 3)):
         ampere |= {prefix + word: (power, True, True) for word in ("A", "Amp", "AMP", "Amps", "AMPS", "amp", "amps", "Ampere")}
         ampere |= {f"{prefix}A{letter}": (power, True, True) for letter in ("T", "F", "H", "L", "TH", "TL", "FH", "FL", "DC", "AC")}
@@ -136,8 +137,8 @@ _VOLTS = frozenset({"V", "v", "VAC", "VDC", "Vac", "Vdc"})
 _TOKEN = re.compile(
     r"(?<![^\W_])(?<!\.)(?<![0-9],)"
     r"(?:(?P<times>[0-9]{1,2})\s?[xX*\u00d7]\s?|(?P<lead>[A-Z]{1,3}))?"
-    r"(?P<number>[0-9]{1,7}(?:[.,][0-9]{1,6})?|\.[0-9]{1,6})(?P<gap>\s{0,2})(?P<letters>[A-Za-z\u03a9]{1,8})"
-    r"(?:(?P<digits>[0-9]{1,4})(?P<more>[A-Za-z\u03a9]{0,4})|[ -](?P<ohm>(?i:ohms?)|\u03a9))?(?![^\W_])(?!\.[0-9])"
+    r"(?P<number>[0-9]{1,7}(?:[.,][0-9]{1,6})?|\.[0-9]{1,6})(?P<gap>\s{1,2})?(?P<letters>[A-Za-z\u03a9]{1,8})"
+    r"(?:(?P<digits>(?(gap)(?!)|[0-9]{1,4}))(?P<more>[A-Za-z\u03a9]{0,4})|[ -](?P<ohm>(?i:ohms?)|\u03a9))?(?![^\W_])(?!\.[0-9])"
 )
 _DASHED = re.compile(r"-(?:[0-9]{1,4}(?:\.[0-9]{1,2})?(?:[kK]?V|W|%)|X[1-9]|Y[1-5]|C0G|COG|NP0)")
 _TOLERANCE_BEFORE = re.compile(r"(?:\u00b1|\+/?-)\s{0,2}\Z")
@@ -188,7 +189,7 @@ def _tokens(text: str, unit: str, kind: str) -> Iterator[_Found]:
     spellings = _SPELLINGS[unit]
     leads = _LEADS.get(kind)
     for match in _TOKEN.finditer(text):
-        times, lead, digits_before, gap, letters, digits, more, ohm = match.groups()
+        times, lead, digits_before, _, letters, digits, more, ohm = match.groups()
         meaning = spellings.get(letters)
         if meaning is None or (lead and (leads is None or lead not in leads)):
             continue
@@ -201,7 +202,7 @@ def _tokens(text: str, unit: str, kind: str) -> Iterator[_Found]:
         if unit == "A" and lead:
             start = match.start("number")  # the time characteristic stays for the ratings
         if digits is not None:
-            joined = _joined(digits_before, letters, digits, more, unit, explicit, bool(gap))
+            joined = _joined(digits_before, letters, digits, more, unit)
             if joined is None:
                 continue
             number, keeps = joined
@@ -222,12 +223,12 @@ def _tokens(text: str, unit: str, kind: str) -> Iterator[_Found]:
         yield _Found(number.scaleb(power), sure, explicit, start, end)
 
 
-def _joined(before: str, letters: str, digits: str, more: str, unit: str, explicit: bool, gap: bool) -> tuple[Decimal, bool] | None:
+def _joined(before: str, letters: str, digits: str, more: str, unit: str) -> tuple[Decimal, bool] | None:
     """The number of `4n7`, or of `470u25V` where the digits are a voltage; True when the digits are part of it."""
     if more in _VOLTS and (unit in ("F", "A")):
         number = _number(before, comma_decimal=False)
         return None if number is None else (number, False)
-    if gap or letters not in _INFIX[unit] or more not in _AFTER_INFIX[unit] or not before.isdigit() or len(digits) > 3:
+    if letters not in _INFIX[unit] or more not in _AFTER_INFIX[unit] or not before.isdigit() or len(digits) > 3:
         return None
     if (before[0] == "0" and len(before) > 1) or (unit == "A" and len(digits) > 2) or len(before) > 4:
         return None
@@ -278,7 +279,7 @@ _LEADING_LETTER = re.compile(
 )
 _BARE = re.compile(_WORDS_BEFORE + r"(?P<number>[0-9]{1,7}(?:[.,][0-9]{1,6})?|\.[0-9]{1,6})" + _NO_UNIT_AFTER)
 _CODE = re.compile(
-    _WORDS_BEFORE + r"(?P<code>[1-9][0-9][0-689])(?P<tolerance>[GJKMZ]?)(?![^\W_])(?!\.[0-9])(?!,[0-9])"
+    _WORDS_BEFORE + r"(?P<code>[1-9][0-9][0-689])(?P<tolerance>[GJKMZ](?=[0-9]{2,4}V)|[GJKMZ]?(?![^\W_]))(?!\.[0-9])(?!,[0-9])"
     r"(?!\s*(?:V|\u00b0|C(?![^\W_])|mm|%|[WA](?![^\W_])|[kM]?Hz|pcs|x\s?[0-9]|-))"
 )
 _DECIMAL_R = re.compile(_WORDS_BEFORE + r"(?P<code>[0-9]R[0-9]{1,2}|R[0-9]{2})[BCDJKMN]?(?![^\W_])(?!-)")
@@ -357,9 +358,13 @@ def _bare_resistor(text: str) -> _Found | None:
     number = _number(match["number"], comma_decimal=False)
     if number is None:
         return None
-    digits = match["number"]
-    coded = digits.isdigit() and digits[-1] != "0" and (len(digits) >= 4 or (len(digits) == 3 and digits[:2] in _E24))
-    return None if coded else _Found(number, True, False, match.start("number"), match.end())
+    digits, sure = match["number"], True
+    if digits.isdigit() and digits[-1] != "0" and (len(digits) >= 4 or (len(digits) == 3 and digits[:2] in _E24)):
+        # 165 is a value of E96, and as a code an unlikely one
+        if len(digits) > 3 or int(digits) not in _E96 or digits[-1] < "5" or digits[:2] == "10":
+            return None
+        sure = False
+    return _Found(number, sure, False, match.start("number"), match.end())
 
 
 # --- kinds with their own habits ----------------------------------------------------------------------------------------------
@@ -447,7 +452,7 @@ _PACKED_OHMS = (
     re.compile(r"[A-Z]{2}[0-9]{4}[A-Z]{2,3}-(?:07|13)([0-9]{1,3}(?:\.[0-9]{1,2})?[RKM][0-9]{0,2})L\Z"),
     re.compile(r"[A-Z]{3,5}(?:0201|0402|0603|0805|1206|1210|1812|2010|2512)([0-9]{1,3}[RKM][0-9]{0,3})(?:[BDFGJ][A-Z]{2,5})?\Z"),
 )
-_OHM_CODE = re.compile(r"(?<=F)([1-9][0-9]{2}[0-6])(?![0-9])|(?<![0-9])([1-9][0-9]{2}[0-6])(?=F(?![0-9]))")
+_OHM_CODE = re.compile(r"(?<=[FD])([1-9][0-9]{2}[0-6])(?![0-9])|(?<![0-9])([1-9][0-9]{2}[0-6])(?=F(?![0-9]))")
 _OHM_CODE_SHORT = re.compile(r"(?<=[A-Z]J)([1-9][0-9][0-6])(?=V\Z)")
 
 

@@ -1,8 +1,9 @@
 """What the words of a description, symbol, library or footprint say a part is.
 
-Words are whole: text is split at everything that is no letter or digit, and where a lower-case word runs into a capitalised one
-(`ScrewTerminal`). `IEC` is not found in `OnePiece`, nor `C14` in `STDC14`. A noun behind a preposition (`MOSFET with zener`,
-`driver for relays`) or before a driving word (`transformer driver`) names something else than the part.
+Words are whole: text is split at everything that is no letter or digit, and where a lower-case word runs into a capitalised
+one (`ScrewTerminal`) or into a number (`Pack04`). `IEC` is not found in `OnePiece`, nor `C14` in `STDC14`. A noun behind a
+preposition (`MOSFET with zener`, `driver for relays`) or before a driving word (`relay driver`) names something else than
+the part.
 """
 
 from __future__ import annotations
@@ -29,13 +30,13 @@ class Hit:
 
 
 _WITHOUT_S = frozenset(
-    {"trans", "sensors", "res", "process", "less", "loss", "nos", "gas", "mos", "nmos", "pmos", "photomos", "optomos"}
+    {"trans", "sensors", "res", "process", "relais", "less", "loss", "nos", "gas", "mos", "nmos", "pmos", "photomos", "optomos"}
 )
 
 # nouns that make of the word before them a part that only serves such a thing
 _HEADS = frozenset(
     (
-        "driver drvr drv controller ctrlr charger monitor interface protector supervisor gauge manager tester simulator "
+        "isolated coupled driver drvr drv controller ctrlr charger monitor interface protector supervisor gauge manager tester simulator "
         "socket base board connector header terminal plug contact detector input screw label array management "
         "protection"
     ).split()
@@ -48,13 +49,13 @@ _HEADED = frozenset(
 )
 _KEPT_BEFORE = {"array": frozenset({"diode"}), "protection": frozenset({"diode"}), "input": frozenset({"transformer", "fuse"})}
 _ARTICLES = frozenset({"a", "an", "the", "integrated"})
-_BEFORE = frozenset("for to with of by via without no non plus from drives driving für mit pour and".split())
+_BEFORE = frozenset("for to with of by via without no non plus from drives driving on into für mit pour and".split())
 
 
 @lru_cache(maxsize=8192)
 def tokens(text: str) -> tuple[str, ...]:
     """The words of a text in lower case, without a plural s."""
-    split = re.sub(r"(?<=[a-z]{3})(?=[A-Z][a-z])", " ", text[: limits.CELL])
+    split = re.sub(r"(?<=[a-z]{3})(?=[A-Z][a-z]|[0-9])", " ", text[: limits.CELL])
     return tuple(_singular(word) for word in re.findall(r"[^\W_]+", split.lower()))
 
 
@@ -113,12 +114,19 @@ def hits(text: str) -> tuple[Hit, ...]:
 
 def _served(words: Sequence[str], at: int, end: int, entry: _Phrase) -> bool:
     """Whether the phrase names what the part serves and not what it is."""
-    if at and (words[at - 1] in _BEFORE or (words[at - 1] in _ARTICLES and at > 1 and words[at - 2] in _BEFORE)):
+    if _behind_preposition(words, at):
         return True
     after = words[end] if end < len(words) else ""
     if after not in _HEADS or entry.kind not in _HEADED:
         return False
     return entry.kind not in _KEPT_BEFORE.get(after, frozenset())
+
+
+def _behind_preposition(words: Sequence[str], at: int) -> bool:
+    """Whether `for`, `with` and the like stand before a word, with or without an article between."""
+    if at > 1 and words[at - 1] in _ARTICLES:
+        at -= 1
+    return at > 0 and words[at - 1] in _BEFORE
 
 
 _NOUNS = {
@@ -153,13 +161,13 @@ _WINDOW = 8
 def _isolated(words: Sequence[str]) -> Iterator[Hit]:
     """`isolated ... gate driver` with some words between, and `DC DC CONVERTER ... ISOLATED` the other way round."""
     for at, word in enumerate(words):
-        if word not in ("isolated", "iso") or (at and words[at - 1] in _BEFORE):
+        if word != "isolated" or _behind_preposition(words, at):
             continue
         for noun in words[at + 1 : at + 1 + _WINDOW]:
             if noun in _OTHER:
                 return
             if noun in _NOUNS:
-                yield Hit(_NOUNS[noun], 2, f"{word} {noun}", at)
+                yield Hit(_NOUNS[noun], 2, f"isolated {noun}", at)
                 return
         before = " ".join(words[:at])
         if (

@@ -10,7 +10,7 @@ from checker.isolation.islands import Islands, build, settle_capacitors, settle_
 from checker.isolation.naming import named
 from checker.isolation.shorts import Culprit
 from checker.isolation.sides import assign
-from checker.model.candidate import Candidate
+from checker.model.candidate import CONNECTORS, Candidate
 from checker.model.circuit import Design
 from checker.model.condition import NORMAL, Condition
 from checker.model.declaration import Declaration
@@ -18,6 +18,8 @@ from checker.model.domain import Isolation, Question, Short
 from checker.model.step import Step
 
 ROUNDS = 8  # independent shorts looked for in one design
+CHAIN_WEIGHED = 6  # links of a series chain that are tried one by one
+NETS_WEIGHED = 5_000  # nets of a design beyond which they are not
 WEIGHED = 24  # insulating parts that share one island for which the sides' evidence is compared
 
 
@@ -27,7 +29,9 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     A short that defeats insulating parts is taken out and reported, and the domains are those without it: so one planted
     resistor does not hide what else is wrong with the barrier.
     """
-    suspects = unlisted.find(design, choice, condition.removed)
+    doubtful = unlisted.suspects(design, choice, condition.removed)
+    suspects = unlisted.find(doubtful)
+    hidden = () if suspects else unlisted.find_shorted(doubtful)
     halved = {suspect.ref: suspect.halves for suspect in suspects}
     opened = condition.removed
     found: list[Short] = []
@@ -56,7 +60,11 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     crossed, idle = crossings(isle, domain_of, domains, suspects, ordinary)
     barriers = separations(domains, crossed)
     inactive = tuple(ref for ref in _inactive(isle) if not any(ref in short.parts for short in found))
-    questions = tuple(_isolator(design, suspect) for suspect in suspects) + tuple(sides.questions)
+    questions = (
+        *(_isolator(design, suspect) for suspect in suspects),
+        *(_hidden(design, culprit) for culprit in hidden),
+        *sides.questions,
+    )
     return Isolation(domains, domain_of, crossed, barriers, tuple(found), questions, tuple(isle.links), inactive, idle)
 
 
@@ -83,12 +91,38 @@ def _next_short(isle: Islands, declaration: Declaration, known: Sequence[Short])
     inactive = _inactive(isle)
     if not inactive:
         return None, ()
-    for culprit in shorts.find(isle, members, inactive)[:WEIGHED]:
+    for culprit in shorts.find(isle, members, inactive, _active(isle))[:WEIGHED]:
         if culprit.chain and (len(culprit.parts) > 1 or _sides_differ(isle, culprit)):
-            cut = culprit.chain if culprit.cut else shorts.easiest(isle, culprit.chain)
-            if cut:
-                return _short(isle, members, culprit, cut), cut
+            if culprit.cut:
+                return _short(isle, members, culprit, culprit.chain), culprit.chain
+            likely = _to_open(isle, culprit.chain)
+            return _short(isle, members, culprit, likely), likely[:1]
     return None, ()
+
+
+def _active(isle: Islands) -> list[str]:
+    """Insulating parts between islands that still have four live nets or more: some of their sides may be shorted."""
+    return [
+        ref
+        for ref, candidate in isle.choice.items()
+        if candidate.insulating and isle.design.parts[ref].fitted and len(isle.sides[ref]) > 3 and len(isle.part_islands(ref)) > 1
+    ]
+
+
+def _to_open(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
+    """The likely links of a series chain, first the one to take out: it leaves fewest connectors that carry both sides."""
+    likely = shorts.likeliest(isle, chain)
+    if not 1 < len(likely) <= CHAIN_WEIGHED or len(isle.live) > NETS_WEIGHED:
+        return likely
+    split: dict[str, int] = {}
+    for ref in likely:
+        trial = build(isle.design, isle.choice, isle.opened | {ref}, isle.halved)
+        split[ref] = sum(
+            len({trial.island(pin.net) for pin in part.pins if pin.net in trial.live and pin.net not in isle.links}) > 1
+            for part in isle.design.parts.values()
+            if part.fitted and isle.kind(part.ref) in CONNECTORS and len(isle.part_islands(part.ref)) == 1
+        )
+    return tuple(sorted(likely, key=lambda ref: split[ref]))
 
 
 def _opposed(isle: Islands, members: Mapping[str, list[str]], declaration: Declaration) -> list[tuple[str, list[str], list[str]]]:
@@ -138,12 +172,12 @@ def _joined(
     nets = members[isle.island(one[0])]
     chain, cut = shorts.between(isle, nets, one, two)
     way = shorts.path(isle, one, two, nets)
-    opened = chain if cut else shorts.easiest(isle, chain) if chain else ()
-    facts = tuple(isle.design.parts[ref].fact for ref in opened) + tuple(isle.design.nets[net].fact for net in (one[0], two[0]))
+    likely = chain if cut or not chain else _to_open(isle, chain)
+    facts = tuple(isle.design.parts[ref].fact for ref in likely) + tuple(isle.design.nets[net].fact for net in (one[0], two[0]))
     step = Step(
         f"{reason}, yet direct current flows from {one[0]} to {two[0]} through {_through(way)}", facts, result=" - ".join(way)
     )
-    return Short(tuple(opened), (), (one[0], two[0]), way, True, step), tuple(opened)
+    return Short(likely, (), (one[0], two[0]), way, True, step), likely if cut else likely[:1]
 
 
 def _through(way: Sequence[str]) -> str:
@@ -164,21 +198,24 @@ def _sides_differ(isle: Islands, culprit: Culprit) -> bool:
     return False
 
 
-def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, cut: tuple[str, ...]) -> Short:
+def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, likely: tuple[str, ...]) -> Short:
     part = culprit.parts[0]
     first, second = culprit.split[part]
     way = shorts.path(isle, first, second, members[isle.island(first[0])])
-    any_of = " - ".join(culprit.chain)
-    facts = tuple(isle.design.parts[ref].fact for ref in (*cut, *culprit.parts[:6]))
+    facts = tuple(isle.design.parts[ref].fact for ref in (*likely, *culprit.parts[:6]))
     count = len(culprit.parts)
+    if culprit.cut:
+        taken = f"{' and '.join(culprit.chain)} all"
+    else:
+        taken = " - ".join(culprit.chain) if len(culprit.chain) == 1 else "any one of " + " - ".join(culprit.chain)
     step = Step(
-        f"with {'any one of ' * (len(culprit.chain) > 1)}{any_of} taken out, {count} insulating part{'s' * (count > 1)} "
+        f"with {taken} taken out, {count} insulating part{'s' * (count > 1)} "
         f"({', '.join(culprit.parts[:6])}{' ...' * (count > 6)}) separate two circuits; with it they do not",
         facts,
         result=" - ".join(way),
     )
     nets = way[:1] + way[-1:] if way else (first[0], second[0])
-    return Short(culprit.chain if not culprit.cut else cut, culprit.parts, nets, way, True, step)
+    return Short(likely, culprit.parts, nets, way, True, step)
 
 
 def _harmless(isle: Islands, known: Sequence[Short]) -> list[Short]:
@@ -192,13 +229,34 @@ def _harmless(isle: Islands, known: Sequence[Short]) -> list[Short]:
         if culprit.chain:
             first, second = culprit.split[part]
             way = shorts.path(isle, first, second, members[isle.island(first[0])])
-            text = f"{' - '.join(culprit.chain)} joins the two sides of {', '.join(culprit.parts)}"
+            joined = f"{' and '.join(culprit.chain)} join" if culprit.cut else f"{' - '.join(culprit.chain)} joins"
+            text = f"{joined} the two sides of {', '.join(culprit.parts)}"
             found.append(Short(culprit.chain, culprit.parts, way[:1] + way[-1:], way, False, Step(text, facts)))
         else:
-            faulty = len(culprit.parts) > 1
+            faulty = _net_opposes(isle, culprit)
             text = f"net {', '.join(culprit.nets)} is on both sides of {', '.join(culprit.parts)}"
             found.append(Short((), culprit.parts, culprit.nets, culprit.nets[:1], faulty, Step(text, facts)))
     return found
+
+
+def _net_opposes(isle: Islands, culprit: Culprit) -> bool:
+    """Whether a net on both sides of insulating parts defeats them.
+
+    Without that net one side hangs on the mains and the other does not; or two parts and more share it where nothing is
+    hazardous on either side (inside a hazardous circuit several couplers may well share a return on purpose).
+    """
+    hazardous = set(evidence.on_mains(evidence.gather(isle, isle.members())))
+    if isle.island(culprit.nets[0]) not in hazardous:
+        return len(culprit.parts) > 1
+    trial = build(isle.design, isle.choice, isle.opened, isle.halved, frozenset(culprit.nets))
+    settle_windings(trial)
+    settle_capacitors(trial)
+    still = set(evidence.on_mains(evidence.gather(trial, trial.members())))
+    for ref in culprit.parts:
+        sides = [{trial.island(net) in still for net in side} for side in trial.sides[ref]]
+        if {True} in sides and {False} in sides:
+            return True
+    return False
 
 
 def _join_alike(isle: Islands, declaration: Declaration) -> None:
@@ -235,4 +293,26 @@ def _isolator(design: Design, suspect: unlisted.Unlisted) -> Question:
         f"parts: {{{suspect.ref}: {{kind: ...}}}} in the declaration, or kind in a parts file",
         (("an insulating kind such as digital-isolator", "pass"), ("an ordinary kind such as ic", "fail")),
         Step(text, (part.fact, *part.facts[:4])),
+    )
+
+
+def _hidden(design: Design, culprit: Culprit) -> Question:
+    """Parts of unknown type that would separate two circuits if one simple part were not there."""
+    text = (
+        f"without {' - '.join(culprit.chain)}, {', '.join(culprit.parts[:6])} would lie between two circuits that nothing else joins: "
+        "are they isolators?"
+    )
+    facts = tuple(design.parts[ref].fact for ref in (*culprit.chain[:3], *culprit.parts[:6]))
+    return Question(
+        "hidden-isolators",
+        text,
+        (*culprit.chain, *culprit.parts),
+        (),
+        "kind",
+        f"parts: {{{culprit.parts[0]}: {{kind: ...}}}} in the declaration, or kind in a parts file",
+        (
+            ("an insulating kind such as digital-isolator", "fail: the two circuits are joined"),
+            ("an ordinary kind such as ic", "pass"),
+        ),
+        Step(text, facts),
     )

@@ -96,11 +96,14 @@ def build(
     choice: Mapping[str, Candidate],
     opened: frozenset[str] = frozenset(),
     halved: Mapping[str, Groups] | None = None,
+    without: frozenset[str] = frozenset(),
 ) -> Islands:
-    """Islands of the fitted circuit. opened: parts that join nothing. halved: parts to be taken as insulating, with their
-    pin groups."""
+    """Islands of the fitted circuit.
+
+    opened: parts that join nothing. halved: parts taken as insulating, with their pin groups. without: nets left out.
+    """
     isle = Islands(design, choice, opened, halved=dict(halved or {}))
-    isle.live = live_nets(design, choice)
+    isle.live = {net: refs for net, refs in live_nets(design, choice).items() if net not in without}
     diodes = {
         frozenset(nets)
         for ref, part in design.parts.items()

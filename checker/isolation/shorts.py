@@ -17,7 +17,6 @@ import networkx as nx
 
 from checker.isolation.groups import TRANSFORMERS
 from checker.isolation.islands import Islands
-from checker.model.candidate import MECHANICAL
 
 MOST_CUTS = 8  # insulating parts for which a minimum cut is tried when no single part explains the short
 DEAREST_CUT = 12  # beyond this many parts' worth the two sides are simply one circuit
@@ -122,20 +121,29 @@ def _ref(node: str) -> str:
     return node.split(":", 2)[2]
 
 
-def find(isle: Islands, members: Mapping[str, Sequence[str]], inactive: Sequence[str]) -> tuple[Culprit, ...]:
-    """For insulating parts with all sides on one island: what joins them, best explanation first. Parts nothing explains are
-    absent."""
+def find(
+    isle: Islands, members: Mapping[str, Sequence[str]], inactive: Sequence[str], support: Sequence[str] = ()
+) -> tuple[Culprit, ...]:
+    """For insulating parts with all sides on one island: what joins them, best explanation first; unexplained parts are absent.
+
+    support: insulating parts that insulate elsewhere and have two sides or more on such an island; they add weight to a part
+    that explains others, never explain one alone.
+    """
     by_island: dict[str, list[str]] = {}
     for ref in inactive:
         for island in isle.part_islands(ref)[:1]:
             by_island.setdefault(island, []).append(ref)
+    beside: dict[str, list[str]] = {}
+    for ref in support:
+        for island in isle.part_islands(ref):
+            beside.setdefault(island, []).append(ref)
     found: list[Culprit] = []
     for island, refs in by_island.items():
-        found += _on_island(isle, members[island], refs)
+        found += _on_island(isle, members[island], refs, beside.get(island, []))
     return tuple(sorted(found, key=lambda culprit: -len(culprit.parts)))
 
 
-def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str]) -> list[Culprit]:
+def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str], support: Sequence[str]) -> list[Culprit]:
     graph = _graph(isle, nets)
     walk = _walk(graph, f"n:{nets[0]}")
     separates: dict[str, dict[str, tuple[tuple[str, ...], tuple[str, ...]]]] = {}
@@ -149,7 +157,11 @@ def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str]) -> list[
             split = _split(isle, walk, node, ref)
             if split is not None:
                 separates.setdefault(_ref(node), {})[ref] = split
-    culprits = _grouped(separates, walk)
+    for ref in support:
+        for node in _candidates(isle, walk, ref):
+            if _ref(node) in separates and (split := _split(isle, walk, node, ref)) is not None:
+                separates[_ref(node)][ref] = split
+    culprits = _grouped(separates)
     explained = {ref for culprit in culprits for ref in culprit.parts} | {ref for culprit in shared for ref in culprit.parts}
     rest = [ref for ref in refs if ref not in explained]
     if rest and not culprits and len(graph) <= CUT_NODES:
@@ -187,7 +199,9 @@ def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> tuple[tuple[str, 
     net_pins = Counter(pin.net for pin in isle.design.parts[ref].pins)
     for side in isle.sides[ref]:
         homes = {walk.without(node, f"n:{net}") for net in side if f"n:{net}" in walk.enter}
-        if len(homes) != 1:
+        if not homes:
+            continue  # this side lies on another island, which the part does insulate
+        if len(homes) > 1:
             return None
         home = homes.pop()
         parts.setdefault(home, []).extend(side)
@@ -203,7 +217,7 @@ def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> tuple[tuple[str, 
     return tuple(dict.fromkeys(first)), tuple(dict.fromkeys(net for nets in others for net in nets))
 
 
-def _grouped(separates: Mapping[str, Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]], walk: _Walk) -> list[Culprit]:
+def _grouped(separates: Mapping[str, Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]]) -> list[Culprit]:
     """The part that separates most insulating parts wins; ties that separate the same ones are one chain. Repeated for what
     is left."""
     left = {ref: dict(parts) for ref, parts in separates.items()}
@@ -282,12 +296,15 @@ def path(isle: Islands, one: Sequence[str], two: Sequence[str], nets: Iterable[s
     return ()
 
 
-def easiest(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
-    """Which links of a series chain to open: the run around the part that most likely does not belong there."""
-    order = ("net-tie", "jumper", "resistor", "ferrite", "potentiometer", "network", "inductor", "capacitor", "diode", "led")
-    rank = {kind: at for at, kind in enumerate(order)}
-    best = min(chain, key=lambda ref: (rank.get(isle.kind(ref), len(order)), len(isle.design.parts[ref].pins)))
-    return tuple(ref for ref in chain if ref == best) if isle.kind(best) not in MECHANICAL else ()
+_SUSPICION = ("net-tie", "jumper", "resistor", "ferrite", "potentiometer", "network", "inductor", "capacitor", "diode", "led")
+
+
+def likeliest(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
+    """The links of a series chain that most likely do not belong there: the simplest kind in it, fewest pins first."""
+    rank = {kind: at for at, kind in enumerate(_SUSPICION)}
+    ranks = {ref: rank.get(isle.kind(ref), len(_SUSPICION)) for ref in chain}
+    best = min(ranks.values())
+    return tuple(sorted((ref for ref in chain if ranks[ref] == best), key=lambda ref: len(isle.design.parts[ref].pins)))
 
 
 def between(isle: Islands, nets: Sequence[str], one: Sequence[str], two: Sequence[str]) -> tuple[tuple[str, ...], bool]:

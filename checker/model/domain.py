@@ -70,7 +70,7 @@ class Short:
 
 @dataclass(frozen=True, slots=True)
 class Question:
-    """One thing the netlist does not say. about: "source", "isolator", "side", "contacts", "windings".
+    """One thing the netlist does not say. about: "isolator", "hidden-isolators", "side".
 
     fact and supply_as fill `missing` of the open verdict; then: (answer, outcome) pairs.
     """

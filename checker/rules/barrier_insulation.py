@@ -50,7 +50,12 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
                 spoiled.add(frozenset(domain.name for domain in pair))
                 yield _of_connector(analysis, clause, ref, *pair)
     for question in analysis.isolation.questions:
-        if question.about == "isolator":
+        if question.about == "hidden-isolators":
+            yield clause.opens(
+                Subject(question.parts, key=question.parts), "Parts of unknown type may be isolators that one part defeats.", question.text,
+                question.step, Missing(question.fact, question.supply_as, question.then, question.parts[-1]), level="note",
+            )  # fmt: skip
+        elif question.about == "isolator":
             subject = Subject(question.parts, question.nets, key=question.parts)
             yield clause.opens(
                 subject, "A part of unknown type lies between two circuits.", question.text, question.step,

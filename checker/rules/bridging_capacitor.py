@@ -83,7 +83,11 @@ def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict
     if any(_satisfies(classes, arrangement) for arrangement in wanted):
         return clause.passes(subject, what, f"{grade.grade} insulation accepts {shown}", step, **words)
     if not _from_mains(analysis, crossing):
-        answers = (("Y1 or Y2", "pass"), ("none, but made and tested for this insulation", "pass with a concession"), ("none", "fail"))
+        answers = (
+            ("Y1 or Y2", "pass"),
+            ("none, but made and tested for this insulation", "pass with a concession"),
+            ("none", "fail"),
+        )
         missing = Missing("class", "BOM column Class, or marks in a parts file", answers, crossing.chain[0])
         because = f"{grade.grade} insulation from a d.c. source, the chain is {shown}; whether a class is needed there is not settled here"
         return clause.opens(subject, what, because, step, missing, **words)
