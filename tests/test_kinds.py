@@ -8,11 +8,12 @@ import pytest
 import yaml
 
 from checker.files import read
-from checker.identify import families, kinds
+from checker.identify import families
 from checker.identify.insulating_types import INSULATING_FAMILIES
 from checker.identify.kinds import judge, normal_kind, prefix
 from checker.identify.ordinary_types import ORDINARY_FAMILIES
 from checker.identify.references import CLASSES
+from checker.identify.synonyms import SYNONYMS
 from checker.identify.word_kinds import hits
 from checker.model.candidate import INSULATING, KINDS
 from checker.model.circuit import Part, Pin
@@ -151,7 +152,7 @@ def test_tables_use_known_kinds() -> None:
     assert not {row[0] for row in ORDINARY_FAMILIES} & INSULATING
     assert {row[0] for row in ORDINARY_FAMILIES} <= KINDS
     assert all(group.kind in KINDS and group.kinds <= KINDS for group in CLASSES.values())
-    assert set(kinds._SYNONYMS.values()) <= KINDS
+    assert set(SYNONYMS.values()) <= KINDS
 
 
 def test_patterns_are_found_by_their_first_character() -> None:

@@ -36,8 +36,8 @@ _WITHOUT_S = frozenset(
 # nouns that make of the word before them a part that only serves such a thing
 _HEADS = frozenset(
     (
-        "isolated coupled driver drvr drv controller ctrlr charger monitor interface protector supervisor gauge manager tester simulator "
-        "socket base board connector header terminal plug contact detector input screw label array management "
+        "isolated coupled driver drvr drv controller ctrlr charger monitor interface protector supervisor gauge manager tester "
+        "simulator socket base board connector header terminal plug contact detector input screw label array management "
         "protection"
     ).split()
 )
@@ -170,11 +170,7 @@ def _isolated(words: Sequence[str]) -> Iterator[Hit]:
                 yield Hit(_NOUNS[noun], 2, f"isolated {noun}", at)
                 return
         before = " ".join(words[:at])
-        if (
-            word == "isolated"
-            and re.search(r"\b(?:dc dc|dcdc|dc to dc)\b", before)
-            and not re.search(r"\b(?:reg|ctrlr|pwm)\b", before)
-        ):
+        if re.search(r"\b(?:dc dc|dcdc|dc to dc)\b", before) and not re.search(r"\b(?:reg|ctrlr|pwm)\b", before):
             yield Hit("isolated-module", 2, "dc dc isolated", at)
         return
 

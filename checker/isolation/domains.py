@@ -31,7 +31,7 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     """
     doubtful = unlisted.suspects(design, choice, condition.removed)
     suspects = unlisted.find(doubtful)
-    hidden = () if suspects else unlisted.find_shorted(doubtful)
+    hidden = unlisted.find_shorted(doubtful)
     halved = {suspect.ref: suspect.halves for suspect in suspects}
     opened = condition.removed
     found: list[Short] = []
@@ -299,8 +299,8 @@ def _isolator(design: Design, suspect: unlisted.Unlisted) -> Question:
 def _hidden(design: Design, culprit: Culprit) -> Question:
     """Parts of unknown type that would separate two circuits if one simple part were not there."""
     text = (
-        f"without {' - '.join(culprit.chain)}, {', '.join(culprit.parts[:6])} would lie between two circuits that nothing else joins: "
-        "are they isolators?"
+        f"without {' - '.join(culprit.chain)}, {', '.join(culprit.parts[:6])} would lie between two circuits that nothing else "
+        "joins: are they isolators?"
     )
     facts = tuple(design.parts[ref].fact for ref in (*culprit.chain[:3], *culprit.parts[:6]))
     return Question(
@@ -311,7 +311,7 @@ def _hidden(design: Design, culprit: Culprit) -> Question:
         "kind",
         f"parts: {{{culprit.parts[0]}: {{kind: ...}}}} in the declaration, or kind in a parts file",
         (
-            ("an insulating kind such as digital-isolator", "fail: the two circuits are joined"),
+            ("an insulating kind such as digital-isolator", "fail"),
             ("an ordinary kind such as ic", "pass"),
         ),
         Step(text, facts),
