@@ -9,7 +9,7 @@ from pathlib import Path
 
 from checker import declaration as declarations
 from checker import files, limits, pipeline, plugins, project, rulesets
-from checker.errors import InputError
+from checker.errors import WithstandError
 from checker.files import Blob
 from checker.model.declaration import Declaration
 from checker.model.report import Report, Reports, Unreadable
@@ -81,7 +81,7 @@ def verify_project(path: PathLike, *, ruleset: Iterable[str] = ()) -> tuple[Repo
             chosen = _rulesets(tuple(ruleset), design.declaration, None)
             extra = [(paper.role, paper.path, paper.sha256) for paper in design.inputs]
             result = _judge(design.name, blobs, design.declaration, chosen, extra, design.variant)
-        except InputError as error:
+        except WithstandError as error:
             lost.append(Unreadable(design=design.name, message=str(error)))
         else:
             found.append(result.report)

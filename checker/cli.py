@@ -6,6 +6,7 @@ standard output, everything else to standard error.
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 from collections.abc import Callable, Sequence
@@ -27,8 +28,17 @@ class _Group(click.Group):
         return list(self.commands)
 
 
+def _version(context: click.Context, _: click.Parameter, wanted: bool) -> None:
+    """Prints the version, "0" in a checkout that was never installed."""
+    if wanted:
+        from checker.reporting import tool_version
+
+        click.echo(f"withstand {tool_version()}")
+        context.exit()
+
+
 @click.group(cls=_Group, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
-@click.version_option(package_name="withstand", message="withstand %(version)s")
+@click.option("--version", is_flag=True, is_eager=True, expose_value=False, callback=_version, help="Print the version.")
 def command() -> None:
     """Prove, from a netlist and a bill of materials, whether an isolated power supply keeps people safe from its hazardous side.
 
@@ -112,11 +122,19 @@ def _target(text: str, form: str) -> tuple[str, str]:
 
 def _write(shown: bytes, targets: Sequence[tuple[str, bytes]]) -> None:
     from checker import files
+    from checker.errors import ArgumentError
 
     for path, data in targets:
         files.write(path, data)
-    sys.stdout.buffer.write(shown)
-    sys.stdout.buffer.flush()
+    try:
+        if sys.stdout is None:
+            raise OSError("it is closed")
+        sys.stdout.buffer.write(shown)
+        sys.stdout.buffer.flush()
+    except BrokenPipeError:
+        raise
+    except OSError as error:
+        raise ArgumentError(f"standard output cannot be written ({error.strerror or error})") from None
 
 
 def _status(report: Report | Reports, raised: Sequence[str], stop_at: str) -> int:
@@ -191,14 +209,57 @@ def _report(
 
 
 @command.command()
-@click.argument("rule")
-def explain(rule: str) -> int:
-    """Print the manual page of a RULE: what it asks, when it passes, fails or stays open, and what settles it."""
-    from checker import plugins
+@click.argument("subject", metavar="RULE|FINGERPRINT")
+@click.argument("design", metavar="[NETLIST|REPORT]", required=False)
+@_inputs
+def explain(
+    subject: str,
+    design: str | None,
+    bom: tuple[str, ...],
+    parts: tuple[str, ...],
+    declaration: str | None,
+    ruleset: tuple[str, ...],
+    variant: str | None,
+) -> int:
+    """Print the manual page of a RULE, or the whole derivation of one verdict.
 
-    found = plugins.rule(rule)
-    click.echo(f"{found.id} ({found.hazard})\n\n{found.manual.strip()}")
+    A verdict is named by the start of its FINGERPRINT, as `verify` prints it, and looked up in a netlist's report or a saved one.
+    """
+    from checker import plugins
+    from checker.errors import ArgumentError
+
+    if design is None:
+        if bom or parts or declaration or ruleset or variant:
+            raise ArgumentError("these options belong to a NETLIST; to explain a rule give its name alone")
+        found = plugins.rule(subject)
+        click.echo(f"{found.id} ({found.hazard})\n\n{found.manual.strip()}\n\n{_caution()}")
+        return 0
+    report = _report(design, bom, parts, declaration, ruleset, variant)
+    _write(_derivation(report, subject).encode(), [])
     return 0
+
+
+def _caution() -> str:
+    from checker.model.report import CAUTION
+
+    return f"Caution: {CAUTION}"
+
+
+def _derivation(report: Report | Reports, prefix: str) -> str:
+    """The derivation of the one verdict whose fingerprint starts with `prefix`."""
+    from checker.errors import ArgumentError
+    from checker.model.report import Reports
+    from checker.neutral import neutral
+    from checker.writers import derivation
+
+    reports = report.reports if isinstance(report, Reports) else [report]
+    found = [(one, verdict) for one in reports for verdict in one.verdicts if verdict.fingerprint.startswith(prefix)]
+    if len(found) != 1:
+        what = "no verdict" if not found else f"{len(found)} verdicts"
+        raise ArgumentError(
+            f"{what} of this report begin{'s' * (not found)} with {neutral(prefix, 80)}; give more of a fingerprint it prints"
+        )
+    return derivation.write(*found[0])
 
 
 @command.group(cls=_Group)
@@ -215,11 +276,15 @@ def ruleset_list() -> int:
         name = f"{found.name}:{found.edition}" if found.edition else found.name
         clauses = f"{found.clauses} clause{'s' * (found.clauses != 1)}"
         click.echo(f"{name:<24} revision {found.revision:<4} {clauses:<11} {found.unverified} unverified   {found.title}")
+    click.echo(f"\n{_caution()}")
     return 0
 
 
 def main(arguments: Sequence[str] | None = None) -> None:
     """Entry point of the console script."""
+    # The program makes many small records and hardly a cycle: collecting while they grow costs a third of the time on a
+    # large board and frees nothing. The process ends right after.
+    gc.disable()
     sys.exit(run(arguments))
 
 

@@ -46,17 +46,18 @@ def read(path: str | os.PathLike[str], *, limit: int = limits.FILE_BYTES, inside
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
         raise InputError(shown, f"the file cannot be opened ({reason})") from None
-    with os.fdopen(handle, "rb") as stream:
-        facts = os.fstat(stream.fileno())
-        if stat.S_ISDIR(facts.st_mode):
+    mode = os.fstat(handle).st_mode
+    if not stat.S_ISREG(mode):  # os.fdopen would refuse a folder with an error of its own
+        os.close(handle)
+        if stat.S_ISDIR(mode):
             raise InputError(shown, "this is a folder", expected="a file")
-        if not stat.S_ISREG(facts.st_mode):
-            raise InputError(
-                shown,
-                "this is not a regular file",
-                expected="a file, not a pipe, socket or device",
-                remedy="To read standard input give - as the path.",
-            )
+        raise InputError(
+            shown,
+            "this is not a regular file",
+            expected="a file, not a pipe, socket or device",
+            remedy="To read standard input give - as the path.",
+        )
+    with os.fdopen(handle, "rb") as stream:
         return Blob(shown, _bounded(stream.read(limit + 1), limit, shown))
 
 

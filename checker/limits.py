@@ -23,5 +23,6 @@ ALTERNATES = 32  # candidates of one part
 YAML_DEPTH = 16
 YAML_NODES = 200_000
 DOMAINS = 10_000  # named domains of one design
+BARRIERS = 20_000  # pairs of circuits that something lies across
 VERDICTS = 2_000_000
 DESIGNS = 1_000  # designs of one project file

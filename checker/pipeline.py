@@ -6,6 +6,7 @@ from __future__ import annotations
 import traceback
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
+from itertools import permutations
 
 from checker import plugins
 from checker.assemble.join import assemble
@@ -131,12 +132,9 @@ def _concerns(clause: Clause, verdict: Verdict, analysis: Analysis) -> bool:
             names = {domain.name for domain in domains} | {
                 name for ref in verdict.parts for crossing in analysis.isolation.crossing(ref) for name in crossing.between
             }
-            grades = [
-                analysis.grades[(clause.ruleset, separation.id)].grade
-                for separation in analysis.isolation.separations
-                if names >= set(separation.between)
-            ]
-            if not any(grade in wanted for grade in grades):
+            barriers = [f"{one}|{two}" for one, two in permutations(names, 2)]
+            grades = [analysis.grades.get((clause.ruleset, barrier)) for barrier in barriers]
+            if not any(grade is not None and grade.grade in wanted for grade in grades):
                 return False
     return True
 

@@ -134,7 +134,11 @@ def report(
         )
         for domain in isolation.domains.values()
     ]
-    barriers = [_barrier(analysis, separation, steps) for separation in isolation.separations]
+    across = isolation.across()
+    barriers = [
+        _barrier(analysis, separation, across[separation.between], [ruleset.id for ruleset in rulesets], steps)
+        for separation in isolation.separations
+    ]
     ordered = sorted(verdicts, key=_order)
     shown = [_verdict(verdict, steps) for verdict in ordered]
     return Report(
@@ -280,11 +284,12 @@ def _ratings(candidate: Candidate) -> dict[str, Figure]:
     }
 
 
-def _barrier(analysis: Analysis, separation: Separation, steps: _Steps) -> BarrierShown:
-    grades = [grade for (_, barrier), grade in analysis.grades.items() if barrier == separation.id and grade.grade]
+def _barrier(
+    analysis: Analysis, separation: Separation, crossings: Sequence[Crossing], rulesets: Sequence[str], steps: _Steps
+) -> BarrierShown:
+    grades = [grade for ruleset in rulesets if (grade := analysis.grades[(ruleset, separation.id)]).grade]
     highest = max((grade.grade for grade in grades), key=_grade_rank, default="")
     declared = next((b for b in analysis.declaration.barriers if set(b.between) == set(separation.between)), None)
-    crossings = [c for c in analysis.isolation.crossings if c.between == separation.between]
     return BarrierShown(
         id=separation.id,
         between=list(separation.between),

@@ -19,11 +19,13 @@ A part takes `value`, `symbol`, `library`, `footprint`, `description`, `type`, `
 `windings`, `fitted`, `kind`; `pins` maps pin numbers to nets, `names` pin numbers to pin names. `bom: true` puts its facts
 into a bill of materials instead of the netlist, `bom: {description: ...}` adds a row of its own to them, `bom: false` keeps the
 part out of the bill that the other parts are then in. `rows: {R7: {value: 1k}}` of a case are rows for parts that the netlist
-lacks. `circuits:` is a map of named circuits, or the name of a file beside this one that holds them.
+lacks. `circuits:` is a map of named circuits, or the name of a file beside this one that holds them. `never: {fail: why}` says which
+outcomes the rule cannot have.
 """
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -75,14 +77,25 @@ class Case:
     line: int = 0
 
 
-def load_cases(path: Path) -> tuple[Case, ...]:
+@dataclass(frozen=True, slots=True)
+class Cases:
+    """A case file. never: outcomes that the rule cannot have, each with the reason, so that a missing case is no oversight."""
+
+    rule: str
+    cases: tuple[Case, ...]
+    never: Mapping[str, str]
+
+
+def load_cases(path: Path) -> Cases:
     """The cases of a file. Raises InputError with the line for a case that cannot be read."""
     keys = load(files.read(path, limit=limits.YAML_BYTES, shown=path.name))
     rule = keys.need("rule").text()
     bases = _circuits(keys.take("circuits"), path)
+    never = keys.take("never")
+    reasons = {key.one_of(OUTCOMES): node.text() for key, node in never.entries()} if never is not None else {}
     found = tuple(_case(rule, node.map(), bases, path.name) for node in keys.need("cases").items())
     keys.done()
-    return found
+    return Cases(rule, found, reasons)
 
 
 def _circuits(node: YamlNode | None, path: Path) -> dict[str, dict[str, Described]]:

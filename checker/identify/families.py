@@ -11,11 +11,11 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache, lru_cache
 from types import MappingProxyType
 
 from checker import limits
-from checker.identify.insulating_types import INSULATING_FAMILIES, Row
+from checker.identify.insulating_types import INSULATING_FAMILIES
 from checker.identify.ordinary_types import ORDINARY_FAMILIES
 
 _WORD_ENDS = re.compile(r"[\s/,;:()\[\]<>|=\"'_+*&]+")
@@ -69,7 +69,7 @@ def _words(text: str) -> Iterator[str]:
 
 @lru_cache(maxsize=8192)
 def _family_of(word: str) -> Family | None:
-    bucket = _BUCKETS.get(word[0])
+    bucket = _bucket(word[0])
     if bucket is None:
         return None
     match = bucket.pattern.match(word)
@@ -135,17 +135,22 @@ def _closed(pattern: str) -> str:
     return f"({pattern})(?![0-9])" if _ENDS_IN_NUMBER.search(pattern) else f"({pattern})"
 
 
-def _buckets(rows: tuple[Row, ...]) -> dict[str, _Bucket]:
+@cache
+def _patterns() -> dict[str, list[tuple[str, Family]]]:
+    """First character -> the patterns that may begin with it, in the order of the tables."""
     parts: dict[str, list[tuple[str, Family]]] = {}
-    for kind, what, attributes, patterns in rows:
+    for kind, what, attributes, patterns in INSULATING_FAMILIES + ORDINARY_FAMILIES:
         family = Family(kind, what, MappingProxyType(attributes))
         for pattern in patterns.split():
             for start in sorted(starts(pattern)):
                 parts.setdefault(start, []).append((pattern, family))
-    return {
-        start: _Bucket(re.compile("|".join(_closed(one) for one, _ in found)), tuple(family for _, family in found))
-        for start, found in parts.items()
-    }
+    return parts
 
 
-_BUCKETS = _buckets(INSULATING_FAMILIES + ORDINARY_FAMILIES)
+@cache
+def _bucket(start: str) -> _Bucket | None:
+    """Compiled when a word with that first character is first met: a small board needs few of them."""
+    found = _patterns().get(start)
+    if found is None:
+        return None
+    return _Bucket(re.compile("|".join(_closed(one) for one, _ in found)), tuple(family for _, family in found))

@@ -147,7 +147,8 @@ SEMICONDUCTORS: tuple[Row, ...] = (
         "resettable-fuse",
         "resettable fuse",
         {},
-        r"MF-[LMNPRSU]\w{0,4}\d{2,3} (?:MINI|NANO|MICRO)SMD[A-Z]?\d{3} NSMD\d{3} RXEF?\d{3} RUEF?\d{3} \d{4}L\d{3}$ 0ZC[A-Z]\d{4}",
+        r"MF-[LMNPRSU]\w{0,4}\d{2,3} (?:MINI|NANO|MICRO)SMD[A-Z]?\d{3} NSMD\d{3} RXEF?\d{3} RUEF?\d{3} \d{4}L\d{3}$"
+        r" 0ZC[A-Z]\d{4}",
     ),
     (
         "triac",

@@ -336,6 +336,9 @@ def _fuse(found: Found, text: str, kind: str) -> None:
         found.attributes["breaking_class"] = (name, breaks[0])
 
 
+HOTTEST = 300  # degC; a larger figure before a C is a type number, such as 817C
+
+
 def _thermal(found: Found, text: str, kind: str) -> None:
     """Power and highest temperature. The power of a suppressor is that of a pulse, not a rating to run at."""
     if kind != "tvs":
@@ -349,7 +352,8 @@ def _thermal(found: Found, text: str, kind: str) -> None:
         spans = [
             match
             for match in _TEMPERATURE.finditer(text)
-            if int(match["high"]) >= 60 and not _NO_TEMPERATURE_BEFORE.search(text[max(0, match.start() - 14) : match.start()])
+            if 60 <= int(match["high"]) <= HOTTEST
+            and not _NO_TEMPERATURE_BEFORE.search(text[max(0, match.start() - 14) : match.start()])
         ]
     if spans:
         lowest = min(spans, key=lambda match: int(match["high"]))

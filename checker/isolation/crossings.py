@@ -5,9 +5,11 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from itertools import combinations
 
+from checker.errors import InputError
 from checker.isolation.groups import LIMITERS
 from checker.isolation.islands import Islands
 from checker.isolation.unlisted import Unlisted
+from checker.limits import BARRIERS
 from checker.model.candidate import CONNECTORS, MECHANICAL
 from checker.model.domain import Crossing, Domain, Short
 from checker.model.order import natural
@@ -31,7 +33,9 @@ def crossings(
     found: list[Crossing] = []
     idle: list[Crossing] = []
     unlisted = {suspect.ref for suspect in suspects}
-    chains = _chains(isle, domain_of, domains)
+    # primary first, then earth, secondary, floating; equals in the order of the domains
+    rank = {name: (_SIDE_ORDER.get(domain.side, 4), at) for at, (name, domain) in enumerate(domains.items())}
+    chains = _chains(isle, domain_of, rank)
     for ref, part in isle.design.parts.items():
         candidate = isle.choice[ref]
         kind = candidate.kind
@@ -60,19 +64,13 @@ def crossings(
         else:
             how, step = "ordinary", Step(f"{kind} {ref} has pins in {' and '.join(by_domain)}", (part.fact,))
         target = found if part.fitted else idle
-        for pair in combinations(_ordered(by_domain, domains), 2):
+        for pair in combinations(sorted(by_domain, key=rank.__getitem__), 2):
             sides = (tuple(by_domain[pair[0]]), tuple(by_domain[pair[1]]))
             target.append(Crossing(ref, how, pair, sides, (ref,), ref not in unlisted, step))
     return tuple(found), tuple(idle)
 
 
-def _ordered(names: Mapping[str, object], domains: Mapping[str, Domain]) -> list[str]:
-    """Primary first, then earth, secondary, floating; equals in the order of the domains."""
-    position = {name: at for at, name in enumerate(domains)}
-    return sorted(names, key=lambda name: (_SIDE_ORDER.get(domains[name].side, 4), position[name]))
-
-
-def _chains(isle: Islands, domain_of: Mapping[str, str], domains: Mapping[str, Domain]) -> dict[str, list[Crossing]]:
+def _chains(isle: Islands, domain_of: Mapping[str, str], rank: Mapping[str, tuple[int, int]]) -> dict[str, list[Crossing]]:
     """reference -> its crossings as a member of chains through links."""
     found: dict[str, list[Crossing]] = {}
     starts: dict[str, list[tuple[str, str]]] = {}
@@ -88,7 +86,7 @@ def _chains(isle: Islands, domain_of: Mapping[str, str], domains: Mapping[str, D
                 if frozenset(chain) in seen:
                     continue
                 seen.add(frozenset(chain))
-                pair = _ordered(dict.fromkeys((domain_of[net], end)), domains)
+                pair = sorted((domain_of[net], end), key=rank.__getitem__)
                 ordered = chain if pair[0] == domain_of[net] else chain[::-1]
                 facts = tuple(isle.design.parts[member].fact for member in ordered)
                 step = Step(f"{' - '.join(ordered)} in series between {pair[0]} and {pair[1]}", facts)
@@ -119,11 +117,13 @@ def _paths(isle: Islands, domain_of: Mapping[str, str], first: str, link: str, h
     return found
 
 
-def separations(domains: Mapping[str, Domain], crossed: Sequence[Crossing]) -> tuple[Separation, ...]:
+def separations(design: str, domains: Mapping[str, Domain], crossed: Sequence[Crossing]) -> tuple[Separation, ...]:
     """A barrier for every pair of domains that something crosses, in the order of the domains."""
     pairs: dict[tuple[str, str], list[Crossing]] = {}
     for crossing in crossed:
         pairs.setdefault(crossing.between, []).append(crossing)
+    if len(pairs) > BARRIERS:
+        raise InputError(design, "too many pairs of circuits", found=f"{len(pairs):,} barriers", expected=f"at most {BARRIERS:,}")
     position = {name: at for at, name in enumerate(domains)}
     found = []
     for pair in sorted(pairs, key=lambda pair: (position[pair[0]], position[pair[1]])):

@@ -58,7 +58,7 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     sides = assign(isle, members, gathered, declaration)
     domains, domain_of = named(isle, members, sides, declaration)
     crossed, idle = crossings(isle, domain_of, domains, suspects, ordinary)
-    barriers = separations(domains, crossed)
+    barriers = separations(design.name, domains, crossed)
     inactive = tuple(ref for ref in _inactive(isle) if not any(ref in short.parts for short in found))
     questions = (
         *(_isolator(design, suspect) for suspect in suspects),

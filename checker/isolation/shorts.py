@@ -12,8 +12,7 @@ from bisect import bisect_right
 from collections import Counter
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-
-import networkx as nx
+from typing import Any
 
 from checker.isolation.groups import TRANSFORMERS
 from checker.isolation.islands import Islands
@@ -232,8 +231,11 @@ def _grouped(separates: Mapping[str, Mapping[str, tuple[tuple[str, ...], tuple[s
     return found
 
 
-def _flow(isle: Islands, graph: Mapping[str, Sequence[str]]) -> nx.DiGraph:
+# networkx takes a tenth of a second to import and is needed only where several parts bridge
+def _flow(isle: Islands, graph: Mapping[str, Sequence[str]]) -> Any:
     """The flow network whose minimum cut is the cheapest set of ordinary parts; a part costs more the more nets it joins."""
+    import networkx as nx
+
     flow = nx.DiGraph()
     for node, neighbours in graph.items():
         capacity = float("inf")
@@ -246,8 +248,10 @@ def _flow(isle: Islands, graph: Mapping[str, Sequence[str]]) -> nx.DiGraph:
     return flow
 
 
-def _minimum_cut(isle: Islands, flow: nx.DiGraph, one: str, two: str) -> tuple[str, ...]:
+def _minimum_cut(isle: Islands, flow: Any, one: str, two: str) -> tuple[str, ...]:
     """References of the cheapest cut between two nets, in file order; () when only insulating parts or nets could be cut."""
+    import networkx as nx
+
     try:
         value, (near, _) = nx.minimum_cut(flow, ("out", f"n:{one}"), ("in", f"n:{two}"))
     except nx.NetworkXUnbounded:

@@ -104,6 +104,13 @@ class Isolation:
     inactive: tuple[str, ...] = ()
     idle: tuple[Crossing, ...] = ()
 
+    def across(self) -> dict[tuple[str, str], list[Crossing]]:
+        """Pair of domain names -> what crosses between them."""
+        found: dict[tuple[str, str], list[Crossing]] = {}
+        for crossing in self.crossings:
+            found.setdefault(crossing.between, []).append(crossing)
+        return found
+
     def crossing(self, part: str) -> tuple[Crossing, ...]:
         """Every crossing of that part."""
         return tuple(crossing for crossing in self.crossings if crossing.part == part)

@@ -52,21 +52,26 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     for question in analysis.isolation.questions:
         if question.about == "hidden-isolators":
             yield clause.opens(
-                Subject(question.parts, key=question.parts), "Parts of unknown type may be isolators that one part defeats.", question.text,
-                question.step, Missing(question.fact, question.supply_as, question.then, question.parts[-1]), level="note",
-            )  # fmt: skip
+                Subject(question.parts, key=question.parts),
+                "Parts of unknown type may be isolators that one part defeats.",
+                question.text,
+                question.step,
+                Missing(question.fact, question.supply_as, question.then, question.parts[-1]),
+                level="note",
+            )
         elif question.about == "isolator":
             subject = Subject(question.parts, question.nets, key=question.parts)
             yield clause.opens(
                 subject, "A part of unknown type lies between two circuits.", question.text, question.step,
                 Missing(question.fact, question.supply_as, question.then, question.parts[0]),
             )  # fmt: skip
+    across = analysis.isolation.across()
     for barrier in analysis.isolation.separations:
-        crossings = [c for c in analysis.isolation.crossings if c.between == barrier.between]
+        crossings = across[barrier.between]
         if frozenset(barrier.between) not in spoiled and any(c.listed for c in crossings) and all(c.listed for c in crossings):
             key = (barrier.id,) if barrier.named else barrier.bridged_by
-            across = f"{_listed(barrier.bridged_by)} lie across {barrier.between[0]} and {barrier.between[1]}"
-            because = f"{across}, and direct current finds no way"
+            place = f"{_listed(barrier.bridged_by)} lie across {barrier.between[0]} and {barrier.between[1]}"
+            because = f"{place}, and direct current finds no way"
             yield clause.passes(
                 Subject(barrier.bridged_by, key=key),
                 "Only insulating parts and capacitors cross this barrier.",

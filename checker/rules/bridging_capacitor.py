@@ -22,6 +22,7 @@ from typing import Annotated
 from checker.model.candidate import Candidate
 from checker.model.clause import Clause, Subject
 from checker.model.domain import Crossing
+from checker.model.fact import Fact
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Verdict, Words
@@ -58,11 +59,11 @@ def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict
     classes = [_class_of(analysis.choice[ref]) for ref in crossing.chain]
     shown = " + ".join(name or "no class" for name in classes)
     facts = tuple(mark.fact for ref in crossing.chain for mark in analysis.choice[ref].marks) or tuple(
-        fact for ref in crossing.chain for fact in analysis.design.parts[ref].facts[:4]
+        fact for ref in crossing.chain for fact in _telling(analysis, ref)
     )
     step = Step(
         f"{' - '.join(crossing.chain)}: {shown}; needed across {barrier}: {grade.grade or 'not known'}",
-        (crossing.step, grade.step, *facts),
+        (*facts, crossing.step, grade.step),
     )
     what = "Class of the capacitors across this barrier."
     if grade.grade in ("none", "functional"):
@@ -89,7 +90,9 @@ def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict
             ("none", "fail"),
         )
         missing = Missing("class", "BOM column Class, or marks in a parts file", answers, crossing.chain[0])
-        because = f"{grade.grade} insulation from a d.c. source, the chain is {shown}; whether a class is needed there is not settled here"
+        because = (
+            f"{grade.grade} insulation from a d.c. source, the chain is {shown}; whether a class is needed is not settled here"
+        )
         return clause.opens(subject, what, because, step, missing, **words)
     unknown = [
         ref for ref, name in zip(crossing.chain, classes, strict=True) if name is None and not _described(analysis.choice[ref])
@@ -112,6 +115,16 @@ def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict
         step,
         **words,
     )
+
+
+def _telling(analysis: Analysis, ref: str) -> list[Fact]:
+    """What the papers say a capacitor is, the most trusted first."""
+    said = [
+        fact
+        for fact in analysis.design.parts[ref].facts
+        if fact.attribute in ("value", "description", "type", "mark", "rating:voltage")
+    ]
+    return sorted(said, key=lambda fact: -fact.trust)[:5]
 
 
 def _from_mains(analysis: Analysis, crossing: Crossing) -> bool:

@@ -17,6 +17,7 @@ from dataclasses import dataclass
 
 from checker.model.clause import Clause, Subject
 from checker.model.fact import Fact
+from checker.model.order import natural
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Verdict, Words
@@ -34,7 +35,8 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict for the board."""
     declaration, isolation = analysis.declaration, analysis.isolation
     hazardous = [domain for domain in isolation.domains.values() if domain.hazard]
-    subject = Subject(key=("source",), nets=tuple(net for domain in hazardous for net in domain.nets[:4])[:8])
+    named = dict.fromkeys(str(fact.value) for domain in hazardous for fact in domain.evidence if fact.attribute == "net")
+    subject = Subject(key=("source",), nets=tuple(named)[:8])
     if declaration.no_supply is not None:
         step = Step(
             "the declaration says that nothing hazardous feeds this board", (Fact("supply", "none", declaration.no_supply),)
@@ -71,7 +73,8 @@ def _silent(analysis: Analysis, clause: Clause) -> Verdict:
         step = Step(
             "parts that are made to insulate or to sit across the line", tuple(analysis.design.parts[ref].fact for ref in parts)
         )
-        because = f"{', '.join(parts)} {'is' if len(parts) == 1 else 'are'} there for a reason: {next(iter(hints.values()))}"
+        more = f" and {len(hints) - len(parts)} more" if len(hints) > len(parts) else ""
+        because = f"{', '.join(parts)}{more} insulate{'s' * (len(hints) == 1)} from something: {next(iter(hints.values()))}"
         return clause.opens(
             Subject(parts, key=("source",)), "No hazardous source is recognised, though the board has parts that "
             "insulate from one.",
@@ -88,7 +91,7 @@ def _silent(analysis: Analysis, clause: Clause) -> Verdict:
 def _hints(analysis: Analysis) -> dict[str, str]:
     """Reference -> why it hints at a hazardous source."""
     found: dict[str, str] = {}
-    for crossing in analysis.isolation.crossings:
+    for crossing in sorted(analysis.isolation.crossings, key=lambda crossing: natural(crossing.part)):
         if crossing.how == "insulating" or analysis.choice[crossing.part].marks:
             found.setdefault(crossing.part, crossing.step.text)
     for ref, candidate in analysis.choice.items():

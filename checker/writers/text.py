@@ -101,7 +101,7 @@ def _block(page: Page, verdict: VerdictShown, steps: Mapping[str, StepShown]) ->
             page.put(text, label, 2, COLUMN)
 
     line(verdict.level, verdict.what)
-    line("where", _where(verdict))
+    line("where", where(verdict))
     line("when", verdict.condition)
     line("choice", verdict.candidate)
     line("found", _numbers(verdict))
@@ -169,7 +169,7 @@ def _sort(verdict: VerdictShown) -> str:
     return "About" if not names else one if len(names) == 1 else f"{one}s"
 
 
-def _where(verdict: VerdictShown) -> str:
+def where(verdict: VerdictShown) -> str:
     nets = f"{'net' if len(verdict.nets) == 1 else 'nets'} {some(verdict.nets, NAMES)}" if verdict.nets and verdict.parts else ""
     places = []
     for seen in verdict.evidence:
