@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import networkx as nx
 import pytest
 from hypothesis import given, settings
@@ -10,7 +12,7 @@ from hypothesis import strategies as st
 from checker.isolation import shorts
 from checker.isolation.domains import isolate
 from checker.isolation.islands import build, settle_capacitors
-from checker.isolation.names import earth_like, role
+from checker.model.names import earth_like, role
 from checker.model.declaration import Declaration, DeclaredDomain
 from tests.circuits import choice, design
 
@@ -31,7 +33,7 @@ def circuits(draw, insulating=True):
 
 
 def components(parts, without=frozenset()):
-    """Brute force: nets joined by every ordinary part and by each half of a coupler (own graph with networkx, no code of the program)."""
+    """Brute force: nets joined by every ordinary part and each half of a coupler (networkx, no code of the program)."""
     graph = nx.Graph()
     live = {net for net in NETS if sum(net in pins.values() for _, pins in parts.values()) > 1}
     graph.add_nodes_from(live)
@@ -45,7 +47,7 @@ def components(parts, without=frozenset()):
             continue
         for group in groups:
             nets = [net for net in group if net in live]
-            graph.add_edges_from(zip(nets, nets[1:], strict=False))
+            graph.add_edges_from(pairwise(nets))
     return {net: frozenset(group) for group in nx.connected_components(graph) for net in group}
 
 

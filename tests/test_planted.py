@@ -37,7 +37,9 @@ def declared(folder: Path) -> Declaration:
 def with_resistor(reading, one: str, two: str):
     """The netlist reading with a 1 Mohm resistor R999 between two nets."""
     facts = (Fact("value", "1M", PLACE, Trust.NETLIST), Fact("footprint", "Resistor_SMD:R_1206", PLACE, Trust.NETLIST))
-    nets = tuple(NetRecord(net, f"{net}:{pin}", (Node("R999", pin, "", "", PLACE),), PLACE) for pin, net in (("1", one), ("2", two)))
+    nets = tuple(
+        NetRecord(net, f"{net}:{pin}", (Node("R999", pin, "", "", PLACE),), PLACE) for pin, net in (("1", one), ("2", two))
+    )
     return replace(reading, parts=(*reading.parts, PartRecord("R999", facts, PLACE)), nets=(*reading.nets, *nets))
 
 

@@ -11,9 +11,9 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from checker.isolation.islands import Islands, is_stub
-from checker.isolation.names import earth_like, high_voltage, role
 from checker.model.candidate import CONNECTORS
 from checker.model.fact import Fact
+from checker.model.names import earth_like, high_voltage, role
 
 STRONG, MIDDLING, WEAK = 3, 2, 1
 _LINE_CLASSES = ("X1", "X2", "X3")

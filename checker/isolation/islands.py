@@ -10,9 +10,9 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
 from checker.isolation.groups import LIMITERS, TRANSFORMERS, Groups, groups
-from checker.isolation.names import earth_like, role
 from checker.model.candidate import CONNECTORS, INSULATING, MECHANICAL, Candidate
 from checker.model.circuit import Design, Part, Pin
+from checker.model.names import earth_like, role
 
 # what a stub may hold: an island of these carries a conductor somewhere, it does not process anything
 _PASSIVE = CONNECTORS | MECHANICAL | INSULATING | LIMITERS | {

@@ -5,11 +5,11 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from checker.isolation.islands import Islands, is_stub
-from checker.isolation.names import ground_like, supply_volts, tokens
 from checker.isolation.sides import Side, Sides
 from checker.model.candidate import CONNECTORS, MECHANICAL
 from checker.model.declaration import Declaration
 from checker.model.domain import Domain
+from checker.model.names import ground_like, supply_volts, tokens
 from checker.model.order import natural
 
 

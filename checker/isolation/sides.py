@@ -11,14 +11,12 @@ from dataclasses import dataclass, field
 from checker.isolation.evidence import Evidence, on_mains
 from checker.isolation.groups import TRANSFORMERS
 from checker.isolation.islands import Islands, is_stub
-from checker.isolation.names import supply_volts, tokens
 from checker.model.candidate import CONNECTORS
 from checker.model.declaration import Declaration, DeclaredDomain, Supply
 from checker.model.domain import Question
 from checker.model.fact import Fact
+from checker.model.names import entry_like, supply_volts
 from checker.model.step import Step
-
-_ENTRY_WORDS = frozenset({"VIN", "VIN+", "DCIN", "IN", "INPUT", "VBAT", "PWR", "POWER", "SUPPLY", "BATT", "VS", "VPWR"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -176,7 +174,7 @@ def _locate_direct(
                 volts = supply_volts(pin.net or "")
                 if volts is not None and supply.voltage.low <= volts <= supply.voltage.high:
                     add(pin.net, 3, f"connector {ref} carries {pin.net}")
-                elif _ENTRY_WORDS & {*tokens(pin.net or ""), *tokens(pin.name)}:
+                elif entry_like(pin.net or "") or entry_like(pin.name):
                     add(pin.net, 2, f"connector {ref} carries an input ({pin.net})")
         elif candidate.kind == "isolated-module" and len(isle.sides[ref]) >= 2:
             add(isle.sides[ref][0][0], 2, f"input of module {ref}")

@@ -33,6 +33,14 @@ def needed(
             found[separation.id] = Grade(
                 barrier.grade, Step(f"declared as {barrier.grade} insulation", (fact,), result=barrier.grade)
             )
+        elif declaration.no_supply is not None:
+            fact = Fact("supply", "none", declaration.no_supply)
+            step = Step(
+                "nothing hazardous feeds the board, so insulation is functional at most",
+                (fact, separation.step),
+                result="functional",
+            )
+            found[separation.id] = Grade("functional", step)
         else:
             one, two = (domains[name] for name in separation.between)
             found[separation.id] = _by_sides(one, two, setting, table)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
+from checker.model.names import entry_like, role, supply_volts
 from checker.model.rule import Analysis
 
 # parts that carry a line conductor on: what lies behind them is still the line, switched or fused or filtered
@@ -13,9 +14,6 @@ _CARRY_ON = frozenset(
     "current-transformer hall-sensor".split()
 )
 _BARE = frozenset({"connector", "inlet", "test-point"})
-_LINES = frozenset({"L", "LINE", "LIVE", "PHASE", "ACL", "L1"})
-_NEUTRALS = frozenset({"N", "NEUTRAL", "NEUT", "ACN"})
-_FILLERS = frozenset({"AC", "IN", "MAINS", "INPUT", "PWR"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,14 +38,24 @@ def entries(analysis: Analysis, hazard: str = "mains") -> Mapping[str, Entry]:
         if candidate.kind in ("connector", "inlet") and analysis.design.parts[ref].fitted:
             entry = _entry(analysis, ref, hazard)
             if entry is not None:
-                scored.append((_score(analysis, candidate.kind, entry), ref, entry))
+                scored.append((_score(analysis, candidate.kind, entry, hazard), ref, entry))
     best = max((score for score, _, _ in scored), default=0)
     if best == 0 and len(scored) > 1:
         return {}
     return {ref: entry for score, ref, entry in scored if score == best}
 
 
-def _score(analysis: Analysis, kind: str, entry: Entry) -> int:
+def _names_supply(analysis: Analysis, entry: Entry) -> bool:
+    """Whether a pole or its contact is named as an input, or after the voltage of a declared d.c. supply."""
+    volts = [supply.voltage for supply in analysis.setting.supplies if supply.kind == "dc"]
+    contacts = [pin.name for pin in analysis.design.parts[entry.ref].pins if pin.net in entry.poles]
+    return any(
+        entry_like(name) or ((said := supply_volts(name)) is not None and any(v.low <= said <= v.high for v in volts))
+        for name in (*entry.poles, *contacts)
+    )
+
+
+def _score(analysis: Analysis, kind: str, entry: Entry, hazard: str) -> int:
     kinds = {
         analysis.kind(other)
         for net in entry.poles
@@ -60,7 +68,7 @@ def _score(analysis: Analysis, kind: str, entry: Entry) -> int:
         for other, _ in analysis.design.nets[net].pins
         if other in analysis.choice
     )
-    named = entry.line is not None and entry.neutral is not None
+    named = (entry.line is not None and entry.neutral is not None) or (hazard == "dc" and _names_supply(analysis, entry))
     score = 4 * (kind == "inlet") + 2 * named + 3 * ("fuse" in kinds or left_out)
     return score + ("varistor" in kinds) + bool(kinds & {"filter", "common-mode-choke"}) + ("bridge" in kinds)
 
@@ -76,18 +84,12 @@ def _entry(analysis: Analysis, ref: str, hazard: str) -> Entry | None:
         domain = isolation.domains[isolation.domain_of[pin.net]]
         if domain.hazard == hazard:
             poles[pin.net] = None
-            words = {_word(pin.net), _word(pin.name)}
-            line = pin.net if words & _LINES else line
-            neutral = pin.net if words & _NEUTRALS else neutral
+            roles = {role(pin.net), role(pin.name)}
+            line = pin.net if "line" in roles else line
+            neutral = pin.net if "neutral" in roles else neutral
         elif domain.earthed:
             earth[pin.net] = None
     return Entry(ref, tuple(poles), tuple(earth), line, neutral) if poles else None
-
-
-def _word(name: str) -> str:
-    """The word of a name that tells the pole: `AC_L` and `L_IN` give L."""
-    words = [word for word in name.rsplit("/", 1)[-1].upper().replace("-", "_").split("_") if word not in _FILLERS]
-    return words[0] if len(words) == 1 else ""
 
 
 def line_nets(analysis: Analysis) -> frozenset[str]:

@@ -19,6 +19,7 @@ _BESIDE = frozenset(
     "AC MAINS MAIN IN INPUT VAC FUSED FUSE F F1 SW SWITCHED OUT FILT FILTERED LINE NET PROT PWR POWER LOAD RECT AFTER NTC "
     "X RAW HV".split()
 )
+_ENTRY = frozenset({"VIN", "DCIN", "IN", "INPUT", "VBAT", "PWR", "POWER", "SUPPLY", "BATT", "VS", "VPWR"})
 _MAINS_VOLTS = re.compile(r"(?:1[0-3]\d|2[0-6]\d|400)V?(?:AC)|(?:110|115|120|220|230|240)V")
 
 
@@ -72,6 +73,11 @@ def supply_volts(name: str) -> float | None:
         if match:
             return float(f"{match[1]}.{match[2] or 0}")
     return None
+
+
+def entry_like(name: str) -> bool:
+    """Whether a net or pin sounds like the input of a supply (`VIN`, `DC_IN`, `VBAT`)."""
+    return not _ENTRY.isdisjoint(tokens(name))
 
 
 def ground_like(name: str) -> bool:
