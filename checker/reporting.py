@@ -14,6 +14,7 @@ from checker.model.declaration import DeclaredBarrier
 from checker.model.domain import Crossing
 from checker.model.fact import Fact, Source
 from checker.model.order import natural
+from checker.model.reading import Note
 from checker.model.report import (
     AssumptionMade,
     BarrierShown,
@@ -40,6 +41,12 @@ from checker.model.step import Step
 from checker.model.verdict import OUTCOMES, Limit, Number, Verdict, Words
 
 MOST_EVIDENCE = 12  # places shown with one verdict; its steps have them all
+MOST_ALIKE = 3  # notes of one kind that are listed one by one
+_TOGETHER = {
+    "not-in-bom": "are in the netlist and no BOM lists them",
+    "not-in-netlist": "are in the BOM and not in the netlist",
+    "case-differs": "are written in another case in netlist and BOM",
+}
 _DISTANCES = ("clearance", "creepage", "through_insulation", "isolation_working", "isolation_test", "impulse")
 
 
@@ -159,7 +166,7 @@ def report(
         verdicts=shown,
         steps=steps.shown,
         summary=summary(shown),
-        notes=_notes(analysis),
+        notes=_notes(analysis, frozenset(verdict.because for verdict in verdicts)),
     )
 
 
@@ -333,12 +340,26 @@ def _bridging(analysis: Analysis, crossing: Crossing, steps: _Steps) -> Bridging
     )
 
 
-def _notes(analysis: Analysis) -> list[str]:
-    """What was noticed on the way: notes of the readers, not-fitted parts that would cross, parts that insulate nothing."""
-    found = []
+def _notes(analysis: Analysis, told: frozenset[str]) -> list[str]:
+    """What was noticed on the way and no verdict tells: notes of the readers, not-fitted parts that would cross, idle insulators.
+
+    told: reasons that verdicts already give. Many notes of one kind about parts become one line.
+    """
+    by_kind: dict[str, list[Note]] = {}
     for note in analysis.design.notes:
-        places = ", ".join(str(source) for source in note.sources[:2])
-        found.append(f"{note.text} ({places})" if places and places not in note.text else note.text)
+        if note.text not in told:
+            by_kind.setdefault(note.kind, []).append(note)
+    found = []
+    for kind, notes in by_kind.items():
+        refs = [ref for note in notes for ref in note.parts]
+        if len(notes) > MOST_ALIKE and kind in _TOGETHER and refs:
+            found.append(f"{len(notes)} parts {_TOGETHER[kind]}: {', '.join(refs)}")
+            continue
+        for note in notes:
+            places = ", ".join(str(source) for source in note.sources[:2])
+            found.append(
+                f"{note.text} ({places})" if places and not all(str(s) in note.text for s in note.sources[:2]) else note.text
+            )
     for crossing in analysis.isolation.idle:
         found.append(f"{crossing.part} is not fitted; fitted, it would lie across {' and '.join(crossing.between)}")
     for ref in analysis.isolation.inactive:

@@ -93,8 +93,10 @@ def _of_note(analysis: Analysis, clause: Clause, note: Note, critical: frozenset
     if note.kind in ("not-in-bom", "duplicate-row", "fitted-differs"):
         joining = any(analysis.kind(ref) not in CONNECTORS | MECHANICAL for ref in note.parts if ref in analysis.choice)
         level = "error" if touched and joining else "warning" if note.kind == "fitted-differs" and joining else "note"
+    elif note.kind == "part-not-listed":
+        level = level if touched else "note"
     elif note.kind == "not-in-netlist" and not any(character.isdigit() for ref in note.parts for character in ref):
-        level = "note"
+        level = "note"  # a case, a board, a cable: bought with the rest, never drawn
     if level == "note":
         return None
     step = Step(note.text, facts)
