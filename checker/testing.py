@@ -19,8 +19,8 @@ A part takes `value`, `symbol`, `library`, `footprint`, `description`, `type`, `
 `windings`, `fitted`, `kind`; `pins` maps pin numbers to nets, `names` pin numbers to pin names. `bom: true` puts its facts
 into a bill of materials instead of the netlist, `bom: {description: ...}` adds a row of its own to them, `bom: false` keeps the
 part out of the bill that the other parts are then in. `rows: {R7: {value: 1k}}` of a case are rows for parts that the netlist
-lacks. `circuits:` is a map of named circuits, or the name of a file beside this one that holds them. `never: {fail: why}` says which
-outcomes the rule cannot have.
+lacks. `circuits:` is a map of named circuits, or the name of a file beside this one that holds them. `never: {fail: why}`
+says which outcomes the rule cannot have.
 """
 
 from __future__ import annotations

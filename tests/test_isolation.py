@@ -12,8 +12,8 @@ from hypothesis import strategies as st
 from checker.isolation import shorts
 from checker.isolation.domains import isolate
 from checker.isolation.islands import build, settle_capacitors
-from checker.model.names import earth_like, role
 from checker.model.declaration import Declaration, DeclaredDomain
+from checker.model.names import earth_like, role
 from tests.circuits import choice, design
 
 NETS = [f"n{at}" for at in range(9)]

@@ -128,9 +128,11 @@ def _telling(analysis: Analysis, ref: str) -> list[Fact]:
 
 
 def _from_mains(analysis: Analysis, crossing: Crossing) -> bool:
-    """Whether the mains is on one side; a d.c. source is another matter, nothing known is taken for the mains."""
+    """Whether the mains is on one side, directly or through a d.c. source made from it without isolation; any other d.c. source
+    is another matter, nothing known is taken for the mains."""
     hazards = {analysis.isolation.domains[name].hazard for name in crossing.between}
-    return "mains" in hazards or "dc" not in hazards
+    direct = any(supply.kind == "dc" and supply.origin == "mains" for supply in analysis.setting.supplies)
+    return "mains" in hazards or "dc" not in hazards or direct
 
 
 def _class_of(candidate: Candidate) -> str | None:

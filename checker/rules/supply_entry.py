@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
 from checker.model.names import entry_like, role, supply_volts
@@ -18,20 +18,25 @@ _BARE = frozenset({"connector", "inlet", "test-point"})
 
 @dataclass(frozen=True, slots=True)
 class Entry:
-    """A supply entry. poles: hazardous nets in pin order; line, neutral: where names tell them; earth: nets of earth contacts."""
+    """A supply entry. poles: hazardous nets in pin order; line, neutral: where names tell them; earth: nets of earth contacts.
+
+    lines: every pole named as a line, in pin order, of which `line` is the last; phases have several.
+    """
 
     ref: str
     poles: tuple[str, ...]
     earth: tuple[str, ...]
     line: str | None
     neutral: str | None
+    lines: tuple[str, ...] = ()
 
 
 def entries(analysis: Analysis, hazard: str = "mains") -> Mapping[str, Entry]:
     """Supply entries of the side with this hazard ("mains" or "dc"), by reference.
 
     A connector on that side is a candidate; an inlet, both poles named, a fuse, varistor or filter at a pole each speak for
-    it. The best win; a connector that nothing speaks for is the entry only when it is the only one.
+    it. The best win; a connector that nothing speaks for is the entry only when it is the only one. A further connector with
+    both poles named, or an inlet, whose poles no line conductor of these reaches must bring the supply in itself.
     """
     scored: list[tuple[int, str, Entry]] = []
     for ref, candidate in analysis.choice.items():
@@ -42,7 +47,15 @@ def entries(analysis: Analysis, hazard: str = "mains") -> Mapping[str, Entry]:
     best = max((score for score, _, _ in scored), default=0)
     if best == 0 and len(scored) > 1:
         return {}
-    return {ref: entry for score, ref, entry in scored if score == best}
+    found = {ref: entry for score, ref, entry in scored if score == best}
+    if hazard == "mains":
+        reached = set(_carried(analysis, found.values()))
+        for score, ref, entry in sorted(scored, key=lambda item: -item[0]):
+            alone = analysis.kind(ref) == "inlet" or (entry.line is not None and entry.neutral is not None)
+            if score < best and alone and reached.isdisjoint(entry.poles):
+                found[ref] = entry
+                reached |= _carried(analysis, (entry,))
+    return found
 
 
 def _names_supply(analysis: Analysis, entry: Entry) -> bool:
@@ -77,7 +90,8 @@ def _entry(analysis: Analysis, ref: str, hazard: str) -> Entry | None:
     isolation = analysis.isolation
     poles: dict[str, None] = {}
     earth: dict[str, None] = {}
-    line = neutral = None
+    lines: dict[str, None] = {}
+    neutral = None
     for pin in analysis.design.parts[ref].pins:
         if pin.net is None or pin.net not in isolation.domain_of:
             continue
@@ -85,11 +99,12 @@ def _entry(analysis: Analysis, ref: str, hazard: str) -> Entry | None:
         if domain.hazard == hazard:
             poles[pin.net] = None
             roles = {role(pin.net), role(pin.name)}
-            line = pin.net if "line" in roles else line
+            if "line" in roles:
+                lines[pin.net] = None
             neutral = pin.net if "neutral" in roles else neutral
         elif domain.earthed:
             earth[pin.net] = None
-    return Entry(ref, tuple(poles), tuple(earth), line, neutral) if poles else None
+    return Entry(ref, tuple(poles), tuple(earth), next(reversed(lines), None), neutral, tuple(lines)) if poles else None
 
 
 def line_nets(analysis: Analysis) -> frozenset[str]:
@@ -97,9 +112,14 @@ def line_nets(analysis: Analysis) -> frozenset[str]:
 
     Rectified nets are none: what hangs on them is a circuit, not wiring.
     """
+    return _carried(analysis, entries(analysis).values())
+
+
+def _carried(analysis: Analysis, found: Iterable[Entry]) -> frozenset[str]:
+    """The poles of these entries and every mains net that parts which carry a line on reach from them."""
     isolation = analysis.isolation
-    found = dict.fromkeys(net for entry in entries(analysis).values() for net in entry.poles)
-    queue = list(found)
+    reached = dict.fromkeys(net for entry in found for net in entry.poles)
+    queue = list(reached)
     for net in queue:
         for ref, _ in analysis.design.nets[net].pins:
             part = analysis.design.parts.get(ref)
@@ -107,10 +127,10 @@ def line_nets(analysis: Analysis) -> frozenset[str]:
                 continue
             for other in part.nets():
                 domain = isolation.domain_of.get(other)
-                if other not in found and domain is not None and isolation.domains[domain].hazard == "mains":
-                    found[other] = None
+                if other not in reached and domain is not None and isolation.domains[domain].hazard == "mains":
+                    reached[other] = None
                     queue.append(other)
-    return frozenset(found)
+    return frozenset(reached)
 
 
 def is_wiring(analysis: Analysis, ref: str, lines: frozenset[str]) -> bool:
