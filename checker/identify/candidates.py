@@ -95,7 +95,7 @@ def _candidate(part: Part, facts: Sequence[Fact], declared: DeclaredPart | None,
         windings=wound,
         maker=_best(facts, "maker"),
         type=_best(facts, "type"),
-        disagreements=(*_value_disagreements(value, stated), *said_ratings, *_mark_disagreements(facts, texts, once)),
+        disagreements=(*_value_disagreements(value, stated), *said_ratings, *_mark_disagreements(facts, texts, declared, once)),
     )
 
 
@@ -256,9 +256,14 @@ def _record(text: str) -> tuple[str, str]:
     return record, until
 
 
-def _mark_disagreements(facts: Sequence[Fact], texts: Sequence[Fact], once: Callable[..., Any]) -> list[Disagreement]:
+def _mark_disagreements(
+    facts: Sequence[Fact], texts: Sequence[Fact], declared: DeclaredPart | None, once: Callable[..., Any]
+) -> list[Disagreement]:
     """A class in one place and another class of the same letter, or of the other letter alone, in another."""
     stated: list[tuple[frozenset[str], Fact]] = []
+    for mark in declared.marks if declared is not None else ():
+        if mark.name in _CLASSES:
+            stated.append((frozenset({mark.name}), mark.fact))
     for fact in [*(fact for fact in facts if fact.attribute == "mark"), *(fact for fact in texts if fact.attribute != "type")]:
         read = marks.column if fact.attribute == "mark" else marks.read
         names = frozenset(name for name, _ in once(read, fact.value)) & _CLASSES

@@ -40,9 +40,10 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
         for group in condition.joined:
             first, *others = [net for net in group if net in isle.live] or [""]
             for net in others:
-                isle.union.join(first, net)
+                isle.bond(first, net)
         settle_windings(isle)
         settle_capacitors(isle)
+        _join_alike(isle, declaration)
         short, cut = _next_short(isle, declaration, found)
         if short is None or len(found) >= ROUNDS:
             break
@@ -52,7 +53,6 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
         opened |= frozenset(cut)
     ordinary = {ref: short for short in found for ref in short.chain if ref in opened}
     found += _harmless(isle, found)
-    _join_alike(isle, declaration)
     members = isle.members()
     gathered = evidence.gather(isle, members)
     sides = assign(isle, members, gathered, declaration)
@@ -91,13 +91,25 @@ def _next_short(isle: Islands, declaration: Declaration, known: Sequence[Short])
     inactive = _inactive(isle)
     if not inactive:
         return None, ()
+    hazardous = set(evidence.on_mains(evidence.gather(isle, members)))
     for culprit in shorts.find(isle, members, inactive, _active(isle))[:WEIGHED]:
-        if culprit.chain and (len(culprit.parts) > 1 or _sides_differ(isle, culprit)):
+        if culprit.chain and _is_fault(isle, culprit, hazardous):
             if culprit.cut:
                 return _short(isle, members, culprit, culprit.chain), culprit.chain
             likely = _to_open(isle, culprit.chain)
             return _short(isle, members, culprit, likely), likely[:1]
     return None, ()
+
+
+def _is_fault(isle: Islands, culprit: Culprit, hazardous: set[str]) -> bool:
+    """Whether a part that joins the sides of insulating parts is a fault, not the way the circuit is meant.
+
+    On the mains: when only one of the sides is mains once it is open. Elsewhere: when two insulating parts and more come apart.
+    """
+    first, _ = culprit.split[culprit.parts[0]]
+    if isle.island(first[0]) not in hazardous:
+        return len(culprit.parts) > 1
+    return (len(culprit.parts) > 1 or shorts.is_simple(isle, culprit.chain)) and _sides_differ(isle, culprit)
 
 
 def _active(isle: Islands) -> list[str]:
@@ -266,7 +278,7 @@ def _join_alike(isle: Islands, declaration: Declaration) -> None:
         nets = [net for net in domain.nets if net in isle.live and net not in isle.links]
         for net in nets:
             declared[net] = domain.name
-            isle.union.join(nets[0], net)
+            isle.bond(nets[0], net)
     members = isle.members()
     owner = {isle.island(net): name for net, name in declared.items()}
     gathered = evidence.gather(isle, members)
@@ -274,7 +286,7 @@ def _join_alike(isle: Islands, declaration: Declaration) -> None:
     for alike in (mains, [island for island, piece in gathered.items() if piece.is_earth]):
         names = {owner[island] for island in alike if island in owner}
         for island in alike[1:] if len(names) <= 1 else ():
-            isle.union.join(alike[0], island)
+            isle.bond(alike[0], island)
 
 
 def _isolator(design: Design, suspect: unlisted.Unlisted) -> Question:

@@ -57,7 +57,7 @@ class Islands:
 
     live: nets that count. sides: reference -> its pin groups as tuples of live nets, lone pins as groups of one.
     union: the islands. opened: parts taken out of conduction on purpose. joined: capacitors and limiters that joined a stub.
-    links: net -> the link it belongs to (nets with nothing but capacitors between two islands).
+    links: nets with nothing but capacitors, between two islands. bonds: pairs of nets joined by something that is no part.
     """
 
     design: Design
@@ -69,6 +69,13 @@ class Islands:
     joined: dict[str, tuple[str, str]] = field(default_factory=dict)
     links: set[str] = field(default_factory=set)
     halved: dict[str, Groups] = field(default_factory=dict)
+    bonds: list[tuple[str, str]] = field(default_factory=list)
+
+    def bond(self, one: str, two: str) -> None:
+        """Join two nets that no part joins (a winding, a wire outside the board, the declaration) and remember it."""
+        if self.union.find(one) != self.union.find(two):
+            self.bonds.append((one, two))
+            self.union.join(one, two)
 
     def kind(self, ref: str) -> str:
         """The kind of the candidate under judgement."""
@@ -164,7 +171,7 @@ def settle_windings(isle: Islands) -> None:
         for nets in by_connector.values():
             if len(nets) % 2 == 0:
                 for one, two in zip(nets[::2], nets[1::2], strict=True):
-                    isle.union.join(one, two)
+                    isle.bond(one, two)
         _settle_lone_ends(isle, ref, ends)
 
 
@@ -183,7 +190,7 @@ def _settle_lone_ends(isle: Islands, ref: str, ends: list[str]) -> None:
         if pin.net in ends and homes.count(homes[at]) == 1 and len(pins) > 2:
             beside = {homes[other] for other in (at - 1, at + 1) if 0 <= other < len(pins)}
             if len(beside) == 1:
-                isle.union.join(beside.pop(), pin.net)
+                isle.bond(beside.pop(), pin.net)
                 homes = [isle.island(pin.net) for pin in pins if pin.net is not None]
 
 
@@ -288,6 +295,6 @@ def _find_links(isle: Islands) -> None:
                         touched.setdefault(isle.island(other), other)
         if len(touched) == 1:
             for other in group:
-                isle.union.join(next(iter(touched.values())), other)
+                isle.bond(next(iter(touched.values())), other)
         elif touched:
             isle.links.update(group)

@@ -15,7 +15,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from checker.isolation.groups import TRANSFORMERS
-from checker.isolation.islands import Islands
+from checker.isolation.islands import Islands, build
 
 MOST_CUTS = 8  # insulating parts for which a minimum cut is tried when no single part explains the short
 DEAREST_CUT = 12  # beyond this many parts' worth the two sides are simply one circuit
@@ -38,7 +38,7 @@ class Culprit:
 
 @dataclass(slots=True)
 class _Walk:
-    """Depth-first numbers of one island's graph; nodes are `n:net` and `p:ref:side`."""
+    """Depth-first numbers of one island's graph; nodes are `n:net`, `p:side:ref` and `b:number:...` for a bond."""
 
     enter: dict[str, int] = field(default_factory=dict)
     leave: dict[str, int] = field(default_factory=dict)
@@ -83,6 +83,12 @@ def _graph(isle: Islands, nets: Iterable[str]) -> dict[str, list[str]]:
                     graph[node] = here
                     for other in here:
                         graph[other].append(node)
+    for at, (one, two) in enumerate(isle.bonds):
+        if f"n:{one}" in graph and f"n:{two}" in graph:
+            node = f"b:{at}:(outside the board)"
+            graph[node] = [f"n:{one}", f"n:{two}"]
+            graph[f"n:{one}"].append(node)
+            graph[f"n:{two}"].append(node)
     return graph
 
 
@@ -160,6 +166,7 @@ def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str], support:
         for node in _candidates(isle, walk, ref):
             if _ref(node) in separates and (split := _split(isle, walk, node, ref)) is not None:
                 separates[_ref(node)][ref] = split
+    shared += _by_net(isle, refs, separates, shared)
     culprits = _grouped(separates)
     explained = {ref for culprit in culprits for ref in culprit.parts} | {ref for culprit in shared for ref in culprit.parts}
     rest = [ref for ref in refs if ref not in explained]
@@ -169,6 +176,31 @@ def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str], support:
     for culprit in shared:
         merged.setdefault(culprit.nets, []).append(culprit.parts[0])
     return culprits + [Culprit((), tuple(parts), both) for both, parts in merged.items()]
+
+
+def _by_net(
+    isle: Islands, refs: Sequence[str], explained: Mapping[str, Mapping[str, object]], shared: Sequence[Culprit]
+) -> list[Culprit]:
+    """Insulating parts that come apart when one net is taken away: a net already found on both sides of another part, or one
+    that two ends of different windings share."""
+    rest = [
+        ref for ref in refs if not any(ref in parts for parts in explained.values()) and not any(ref in c.parts for c in shared)
+    ]
+    nets = {culprit.nets for culprit in shared}
+    for ref in rest:
+        if isle.kind(ref) in TRANSFORMERS:
+            pins = Counter(pin.net for pin in isle.design.parts[ref].pins if pin.net in isle.live)
+            nets |= {(net,) for net, count in pins.items() if count > 1 and net is not None}
+    found = []
+    for both in sorted(nets) if rest else ():
+        trial = build(isle.design, isle.choice, isle.opened, isle.halved, frozenset(both))
+        for ref in rest:
+            homes = Counter(trial.island(net) for side in trial.sides[ref] for net in side[:1])
+            ends = 1 if isle.kind(ref) not in TRANSFORMERS or isle.choice[ref].windings else 2
+            if len(homes) > 1 and (ends == 1 or max(homes.values()) >= ends):
+                found.append(Culprit((), (ref,), both))
+        rest = [ref for ref in rest if not any(ref in culprit.parts for culprit in found)]
+    return found
 
 
 def shared_nets(isle: Islands, ref: str) -> tuple[str, ...]:
@@ -301,6 +333,11 @@ def path(isle: Islands, one: Sequence[str], two: Sequence[str], nets: Iterable[s
 
 
 _SUSPICION = ("net-tie", "jumper", "resistor", "ferrite", "potentiometer", "network", "inductor", "capacitor", "diode", "led")
+
+
+def is_simple(isle: Islands, chain: Sequence[str]) -> bool:
+    """Whether a chain has a part that people put across by mistake; a fuse or a contactor of the line is none."""
+    return any(isle.kind(ref) in _SUSPICION for ref in chain)
 
 
 def likeliest(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
