@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 
 from checker.isolation import evidence, shorts, unlisted
 from checker.isolation.crossings import crossings, separations
+from checker.isolation.groups import halves
 from checker.isolation.islands import Islands, build, settle_capacitors, settle_windings
 from checker.isolation.naming import named
 from checker.isolation.shorts import Culprit
@@ -17,6 +18,7 @@ from checker.model.declaration import Declaration
 from checker.model.domain import Isolation, Question, Short
 from checker.model.step import Step
 
+DOUBTED = frozenset({"controller", "regulator", "ic", "module", "unknown", "sensor"})
 ROUNDS = 8  # independent shorts looked for in one design
 CHAIN_WEIGHED = 6  # links of a series chain that are tried one by one
 NETS_WEIGHED = 5_000  # nets of a design beyond which they are not
@@ -30,7 +32,7 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     resistor does not hide what else is wrong with the barrier.
     """
     doubtful = unlisted.suspects(design, choice, condition.removed)
-    suspects = unlisted.find(doubtful)
+    suspects = listed = unlisted.find(doubtful)
     hidden = unlisted.find_shorted(doubtful)
     halved = {suspect.ref: suspect.halves for suspect in suspects}
     opened = condition.removed
@@ -44,7 +46,11 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
         settle_windings(isle)
         settle_capacitors(isle)
         _join_alike(isle, declaration)
-        short, cut = _next_short(isle, declaration, found)
+        short, cut, doubted = _next_short(isle, declaration)
+        if doubted and len(suspects) < ROUNDS + len(listed):
+            suspects += tuple(unlisted.doubt(isle, ref) for ref in doubted)
+            halved |= {suspect.ref: suspect.halves for suspect in suspects}
+            continue
         if short is None or len(found) >= ROUNDS:
             break
         found.append(short)
@@ -81,24 +87,25 @@ def _inactive(isle: Islands) -> list[str]:
     ]
 
 
-def _next_short(isle: Islands, declaration: Declaration, known: Sequence[Short]) -> tuple[Short | None, tuple[str, ...]]:
-    """The next fault that joins what should be apart, and the parts to open so that the rest can be judged."""
+def _next_short(isle: Islands, declaration: Declaration) -> tuple[Short | None, tuple[str, ...], tuple[str, ...]]:
+    """The next fault that joins what should be apart, the parts to open so that the rest can be judged, and instead of both a
+    circuit in a package that would be the culprit: more likely it insulates and was taken for an ordinary one."""
     members = isle.members()
     for reason, one, two in _opposed(isle, members, declaration):
-        if any(set(short.nets) == {one[0], two[0]} for short in known):
-            continue
-        return _joined(isle, members, reason, one, two)
+        return (*_joined(isle, members, reason, one, two), ())
     inactive = _inactive(isle)
     if not inactive:
-        return None, ()
+        return None, (), ()
     hazardous = set(evidence.on_mains(evidence.gather(isle, members)))
     for culprit in shorts.find(isle, members, inactive, _active(isle))[:WEIGHED]:
         if culprit.chain and _is_fault(isle, culprit, hazardous):
             if culprit.cut:
-                return _short(isle, members, culprit, culprit.chain), culprit.chain
+                return _short(isle, members, culprit, culprit.chain), culprit.chain, ()
             likely = _to_open(isle, culprit.chain)
-            return _short(isle, members, culprit, likely), likely[:1]
-    return None, ()
+            if _doubtful(isle, likely[0]) and halves(isle.design.parts[likely[0]], isle.choice[likely[0]]):
+                return None, (), likely[:1]
+            return _short(isle, members, culprit, likely), likely[:1], ()
+    return None, (), ()
 
 
 def _is_fault(isle: Islands, culprit: Culprit, hazardous: set[str]) -> bool:
@@ -109,7 +116,14 @@ def _is_fault(isle: Islands, culprit: Culprit, hazardous: set[str]) -> bool:
     first, _ = culprit.split[culprit.parts[0]]
     if isle.island(first[0]) not in hazardous:
         return len(culprit.parts) > 1
-    return (len(culprit.parts) > 1 or shorts.is_simple(isle, culprit.chain)) and _sides_differ(isle, culprit)
+    telling = len(culprit.parts) > 1 or shorts.is_simple(isle, culprit.chain)
+    return (telling or any(_doubtful(isle, ref) for ref in culprit.chain)) and _sides_differ(isle, culprit)
+
+
+def _doubtful(isle: Islands, ref: str) -> bool:
+    """Whether a culprit may be an insulating part nobody knows: an unlisted circuit, or an off-line controller (some insulate)."""
+    candidate = isle.choice[ref]
+    return candidate.kind in DOUBTED and (not candidate.listed or "offline" in candidate.attributes)
 
 
 def _active(isle: Islands) -> list[str]:
@@ -198,8 +212,18 @@ def _through(way: Sequence[str]) -> str:
 
 
 def _sides_differ(isle: Islands, culprit: Culprit) -> bool:
-    """Whether one side of an insulating part hangs on the mains and the other does not, once the chain is open."""
-    trial = build(isle.design, isle.choice, isle.opened | set(culprit.chain), isle.halved)
+    """Whether one side of an insulating part hangs on the mains and the other does not, once a likely link of the chain is open.
+
+    One link at a time, as a planted part would be taken out: opening a whole chain would also take away what feeds a side.
+    """
+    likely = culprit.chain if culprit.cut else shorts.likeliest(isle, culprit.chain)
+    if culprit.cut or len(isle.live) > NETS_WEIGHED:
+        return _differ(isle, culprit, frozenset(likely))
+    return any(_differ(isle, culprit, frozenset((ref,))) for ref in likely[:CHAIN_WEIGHED])
+
+
+def _differ(isle: Islands, culprit: Culprit, opened: frozenset[str]) -> bool:
+    trial = build(isle.design, isle.choice, isle.opened | opened, isle.halved)
     settle_windings(trial)
     settle_capacitors(trial)
     hazardous = set(evidence.on_mains(evidence.gather(trial, trial.members())))

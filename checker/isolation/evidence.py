@@ -21,11 +21,12 @@ _LINE_CLASSES = ("X1", "X2", "X3")
 
 @dataclass(slots=True)
 class Evidence:
-    """For one island: sort of evidence -> (weight, sentence, fact)."""
+    """For one island: sort of evidence -> (weight, sentence, fact). stub: nothing on the island processes anything."""
 
     mains: dict[str, tuple[int, str, Fact]] = field(default_factory=dict)
     earth: dict[str, tuple[int, str, Fact]] = field(default_factory=dict)
     voltage: dict[str, tuple[int, str, Fact]] = field(default_factory=dict)
+    stub: bool = False
 
     @property
     def score(self) -> int:
@@ -59,6 +60,9 @@ def on_mains(gathered: Mapping[str, Evidence]) -> list[str]:
     Weak evidence never makes a second mains side: it would be merged with the first and hide the barrier between them.
     """
     strong = [island for island, piece in gathered.items() if piece.is_strong]
+    if any(len(gathered[island].mains) > 1 for island in strong):
+        # a name alone lies: a signal of a whole circuit called LIVE is no mains where another side shows more than a name
+        strong = [island for island in strong if gathered[island].stub or set(gathered[island].mains) != {"name"}]
     if strong:
         return strong
     likely = [island for island, piece in gathered.items() if piece.is_mains]
@@ -69,7 +73,7 @@ def on_mains(gathered: Mapping[str, Evidence]) -> list[str]:
 
 def gather(isle: Islands, members: Mapping[str, list[str]]) -> dict[str, Evidence]:
     """Evidence per island, for every island (without any: an empty Evidence)."""
-    found = {island: Evidence() for island in members}
+    found = {island: Evidence(stub=is_stub(isle, nets)) for island, nets in members.items()}
     roles = {net: role(net) for net in isle.live}
     paired = {"line", "neutral"} <= set(roles.values())
     for net, word in roles.items():
@@ -173,7 +177,9 @@ def _from_connector(found: Mapping[str, Evidence], isle: Islands, ref: str, kind
         earth = named[pin.number] == "earth" or ((earth_like(pin.name) or pin.name.upper() in ("E", "G", "GND")) and carries)
         if earth or (carries and role(pin.net or "") not in ("line", "neutral") and earth_like(pin.net or "")):
             evidence.earth.setdefault("inlet", (STRONG, f"earth contact {ref}.{pin.number}", part.fact))
-        elif mains_entry and named[pin.number] != "earth" and role(pin.net or "") != "earth":
+        elif role(pin.net or "") == "earth" or named[pin.number] == "earth":
+            continue
+        elif mains_entry or ({"line", "neutral"} <= poles and role(pin.net or "") in ("line", "neutral")):
             evidence.mains.setdefault("connector", (STRONG, f"mains connector {ref} ({candidate.because})", part.fact))
 
 

@@ -226,7 +226,9 @@ def settle_capacitors(isle: Islands) -> None:
         if len(islands) != 2 or not (stubs.get(islands[0], False) or stubs.get(islands[1], False)):
             continue
         stub = islands[0] if stubs.get(islands[0], False) else islands[1]
-        if _joins(isle, candidate, members[stub]) and not _defeats(isle, islands, members):
+        if (_joins(isle, candidate, members[stub]) or _in_series(isle, candidate, members[stub])) and not _defeats(
+            isle, islands, members
+        ):
             one, two = islands
             isle.joined[ref] = (one, two)
             isle.union.join(one, two)
@@ -246,6 +248,18 @@ def _joins(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
     if value is not None and isinstance(value.value, float) and value.value >= SMOOTHING:
         return True
     return not any(earth_like(net) or role(net) for net in stub)
+
+
+def _in_series(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
+    """Whether a capacitor is in series with a winding: one winding end and capacitors are all there is on the stub.
+
+    A winding that led nowhere else could carry no output, so this is a resonant or blocking capacitor, never one across a barrier.
+    """
+    if candidate.marks or candidate.kind != "capacitor" or len(stub) != 1:
+        return False
+    refs = isle.live[stub[0]]
+    ends = [ref for ref in refs if isle.kind(ref) in TRANSFORMERS]
+    return len(ends) == 1 and all(isle.kind(ref) in ("capacitor", "test-point") or ref in ends for ref in refs)
 
 
 def _defeats(isle: Islands, islands: tuple[str, str], members: Mapping[str, list[str]]) -> bool:

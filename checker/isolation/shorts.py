@@ -242,7 +242,7 @@ def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> tuple[tuple[str, 
     if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings:
         # a winding has two ends: a cut that leaves one pin alone opens a rectifier or a switch, not the barrier
         parts = {home: nets for home, nets in parts.items() if pins[home] >= 2}
-        if len(parts) < 2 or sum(pins[home] for home in parts) < sum(pins.values()):
+        if len(parts) < 2:
             return None
     first, *others = parts.values()
     return tuple(dict.fromkeys(first)), tuple(dict.fromkeys(net for nets in others for net in nets))

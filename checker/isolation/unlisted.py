@@ -91,6 +91,13 @@ def find_shorted(found: Suspects | None) -> tuple[Culprit, ...]:
     )
 
 
+def doubt(isle: Islands, ref: str) -> Unlisted:
+    """A part taken for an ordinary one that alone joins the mains to another side: taken apart along its halves and asked about."""
+    both = halves(isle.design.parts[ref], isle.choice[ref])
+    nets = [{pin.net for pin in isle.design.parts[ref].pins if pin.number in half and pin.net in isle.live} for half in both]
+    return Unlisted(ref, both, (len(nets[0]), len(nets[1])))
+
+
 def _halves_of(isle: Islands, ref: str) -> tuple[tuple[str, ...], tuple[str, ...]]:
     """The live nets of the two halves of a part, each once."""
     net_of = {pin.number: pin.net for pin in isle.design.parts[ref].pins if pin.net in isle.live}

@@ -5,28 +5,16 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from checker.model.rule import Analysis
+from checker.rules.supply_entry import is_link
 
 # carried past on the way to the fuse: still the same conductor
 _ON_THE_WAY = frozenset(
-    {
-        "switch",
-        "jumper",
-        "net-tie",
-        "test-point",
-        "connector",
-        "inlet",
-        "ferrite",
-        "inductor",
-        "common-mode-choke",
-        "filter",
-        "thermistor",
-    }
+    "switch jumper net-tie test-point connector inlet ferrite inductor common-mode-choke filter thermistor".split()
 )
 _LOADS = frozenset(
     "varistor gas-tube tvs bridge diode transformer isolated-module thyristor controller mosfet bipolar igbt regulator ic module "
     "lamp motor optocoupler led zener".split()
 )
-LINK = 1.0  # ohm; a resistor below this in the line is a link or a shunt, not a load (common practice, no source)
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,8 +33,8 @@ def toward_fuse(analysis: Analysis, pole: str) -> Before:
     """Walk a pole's conductor up to its fuses.
 
     Contacts, triacs and current transformers hand the line to a load outside the board, whose protection is not this board's:
-    they are neither loads nor a way to the fuse. A part with more nets than two, such as a choke for both poles, is not walked
-    through and counts as met.
+    they are neither loads nor a way to the fuse. A switch for both poles is walked through to where a fuse sits; another part
+    with more nets than two, such as a choke for both poles, is not walked through and counts as met.
     """
     nets, fuses, passed, loads, capacitors, resistors = (
         {pole: None},
@@ -69,23 +57,31 @@ def toward_fuse(analysis: Analysis, pole: str) -> Before:
                 capacitors[ref] = None
             elif kind in ("connector", "inlet", "test-point"):
                 continue
-            elif kind == "resistor" and not _is_link(analysis, ref):
+            elif kind == "resistor" and not is_link(analysis, ref):
                 resistors[ref] = None
             elif kind in _ON_THE_WAY or kind in ("resettable-fuse", "resistor"):
                 passed[ref] = None
-                if len(part.nets()) == 2:
-                    for other in part.nets():
-                        if other not in nets:
-                            nets[other] = None
-                            queue.append(other)
-                else:
+                ways = part.nets() if len(part.nets()) == 2 else _fused(analysis, part.nets()) if kind == "switch" else None
+                if ways is None:
                     loads[ref] = None
+                for other in ways or ():
+                    if other not in nets:
+                        nets[other] = None
+                        queue.append(other)
             elif kind in _LOADS:
                 loads[ref] = None
     loads_only = tuple(ref for ref in loads if ref not in fuses)
     return Before(tuple(fuses), tuple(passed), loads_only, tuple(capacitors), tuple(resistors), tuple(nets))
 
 
-def _is_link(analysis: Analysis, ref: str) -> bool:
-    value = analysis.choice[ref].value
-    return value is not None and isinstance(value.value, float) and value.value < LINK
+def _fused(analysis: Analysis, nets: tuple[str, ...]) -> tuple[str, ...]:
+    """Those of a switch's nets on which a fitted fuse sits: behind its contact of this pole, as far as the netlist can tell."""
+    return tuple(
+        net
+        for net in nets
+        if any(
+            analysis.kind(ref) == "fuse" and analysis.design.parts[ref].fitted
+            for ref, _ in analysis.design.nets[net].pins
+            if ref in analysis.choice
+        )
+    )

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
-from checker.model.names import entry_like, role, supply_volts
+from checker.model.names import entry_like, role, supply_volts, tokens
 from checker.model.rule import Analysis
 
 # parts that carry a line conductor on: what lies behind them is still the line, switched or fused or filtered
@@ -13,7 +13,8 @@ _CARRY_ON = frozenset(
     "switch jumper net-tie thermistor common-mode-choke filter inductor ferrite fuse resettable-fuse relay solid-state-relay triac "
     "current-transformer hall-sensor".split()
 )
-_BARE = frozenset({"connector", "inlet", "test-point"})
+_OUTLET = frozenset({"OUT", "OUT1", "OUT2", "OUTPUT", "LOAD"})
+LINK = 1.0  # ohm; a resistor below this in the line is a link or a shunt, not a load (common practice, no source)
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,7 +43,7 @@ def entries(analysis: Analysis, hazard: str = "mains") -> Mapping[str, Entry]:
     for ref, candidate in analysis.choice.items():
         if candidate.kind in ("connector", "inlet") and analysis.design.parts[ref].fitted:
             entry = _entry(analysis, ref, hazard)
-            if entry is not None:
+            if entry is not None and not all(_OUTLET & set(tokens(net)) for net in entry.poles):
                 scored.append((_score(analysis, candidate.kind, entry, hazard), ref, entry))
     best = max((score for score, _, _ in scored), default=0)
     if best == 0 and len(scored) > 1:
@@ -107,6 +108,12 @@ def _entry(analysis: Analysis, ref: str, hazard: str) -> Entry | None:
     return Entry(ref, tuple(poles), tuple(earth), next(reversed(lines), None), neutral, tuple(lines)) if poles else None
 
 
+def is_link(analysis: Analysis, ref: str) -> bool:
+    """Whether a part is a resistor so small that it carries the line on: a link or a current shunt."""
+    value = analysis.choice[ref].value
+    return analysis.kind(ref) == "resistor" and value is not None and isinstance(value.value, float) and value.value < LINK
+
+
 def line_nets(analysis: Analysis) -> frozenset[str]:
     """Nets that are line conductors: the poles of the supply entries and what switches, fuses and filters carry on from them.
 
@@ -123,7 +130,7 @@ def _carried(analysis: Analysis, found: Iterable[Entry]) -> frozenset[str]:
     for net in queue:
         for ref, _ in analysis.design.nets[net].pins:
             part = analysis.design.parts.get(ref)
-            if part is None or analysis.kind(ref) not in _CARRY_ON:
+            if part is None or not (analysis.kind(ref) in _CARRY_ON or is_link(analysis, ref)):
                 continue
             for other in part.nets():
                 domain = isolation.domain_of.get(other)
