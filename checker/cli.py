@@ -9,7 +9,7 @@ from __future__ import annotations
 import gc
 import os
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -77,17 +77,7 @@ def _inputs(function: Callable[..., Any]) -> Callable[..., Any]:
     show_default=True,
     help="What ends the run with status 1.",
 )
-def verify(
-    netlist: str | None,
-    bom: tuple[str, ...],
-    parts: tuple[str, ...],
-    declaration: str | None,
-    ruleset: tuple[str, ...],
-    variant: str | None,
-    form: str,
-    output: tuple[str, ...],
-    stop_at: str,
-) -> int:
+def verify(netlist: str | None, form: str, output: tuple[str, ...], stop_at: str, **given: Any) -> int:
     """Judge a design: what is proven, what fails, what is open and the one fact that settles it.
 
     NETLIST is a file, or - for standard input. Without it, every design of withstand.yaml in the current folder is judged.
@@ -99,16 +89,16 @@ def verify(
     writers = {name: plugins.writer(name) for name in (form, *(name for name, _ in targets))}
     report: Report | Reports
     if netlist is None:
-        if bom or parts or declaration or variant:
+        if any(value for option, value in given.items() if option != "ruleset"):
             raise ArgumentError("--bom, --parts, --declaration and --variant belong to a NETLIST; none was given")
         if not os.path.exists(PROJECT_FILE):
             raise ArgumentError(
                 f"no NETLIST was given and there is no {PROJECT_FILE} in the current folder. Name a netlist: "
                 f"withstand verify board.net"
             )
-        report, raised = api.verify_project(PROJECT_FILE, ruleset=ruleset)
+        report, raised = api.verify_project(PROJECT_FILE, ruleset=given["ruleset"])
     else:
-        judged = api.judged(netlist, bom=bom, parts=parts, declaration=declaration, ruleset=ruleset, variant=variant)
+        judged = api.judged(netlist, **given)
         report, raised = judged.report, judged.raised
     _write(writers[form].write(report), [(path, writers[name].write(report)) for name, path in targets])
     return _status(report, raised, stop_at)
@@ -145,13 +135,11 @@ def _status(report: Report | Reports, raised: Sequence[str], stop_at: str) -> in
         click.echo(text, err=True)
     if raised:
         return EXIT_FAULT
-    several = isinstance(report, Reports)
     if isinstance(report, Reports) and report.unreadable:
         for lost in report.unreadable:
             click.echo(f"withstand: {lost.design}: {lost.message}", err=True)
         return EXIT_UNUSABLE
     reports = report.reports if isinstance(report, Reports) else [report]
-    del several
     stops = any(_stops(verdict, stop_at) for one in reports for verdict in one.verdicts)
     return EXIT_STOP if stops else 0
 
@@ -167,60 +155,38 @@ def _stops(verdict: Any, stop_at: str) -> bool:
 @command.command()
 @click.argument("design", metavar="NETLIST|REPORT")
 @_inputs
-def barrier(
-    design: str,
-    bom: tuple[str, ...],
-    parts: tuple[str, ...],
-    declaration: str | None,
-    ruleset: tuple[str, ...],
-    variant: str | None,
-) -> int:
+def barrier(design: str, **given: Any) -> int:
     """Show the domains, the barriers between them, and what lies across each."""
     from checker.writers import barriers
 
-    report = _report(design, bom, parts, declaration, ruleset, variant)
+    report = _report(design, given)
     _write(barriers.write(report).encode(), [])
     return 0
 
 
-def _report(
-    design: str,
-    bom: tuple[str, ...],
-    parts: tuple[str, ...],
-    declaration: str | None,
-    ruleset: tuple[str, ...],
-    variant: str | None,
-) -> Report | Reports:
-    """A fresh report of a netlist, or a saved one read back."""
+def _report(design: str, given: Mapping[str, Any]) -> Report | Reports:
+    """A fresh report of a netlist under the options of `_inputs`, or a saved one read back."""
     from checker import api, files, limits
     from checker.writers import json as json_form
 
     if design != "-" and os.path.isfile(design):
         blob = files.read(design, limit=limits.REPORT_BYTES, shown=api.shown_path(design))
         if blob.data.lstrip()[:1] == b"{":
-            if bom or parts or declaration or ruleset or variant:
+            if any(given.values()):
                 from checker.errors import ArgumentError
 
                 raise ArgumentError(
                     "a saved report holds its inputs; --bom, --parts, --declaration, --ruleset and --variant do not apply to it"
                 )
             return json_form.read(blob)
-    return api.verify(design, bom=bom, parts=parts, declaration=declaration, ruleset=ruleset, variant=variant)
+    return api.verify(design, **given)
 
 
 @command.command()
 @click.argument("subject", metavar="RULE|FINGERPRINT")
 @click.argument("design", metavar="[NETLIST|REPORT]", required=False)
 @_inputs
-def explain(
-    subject: str,
-    design: str | None,
-    bom: tuple[str, ...],
-    parts: tuple[str, ...],
-    declaration: str | None,
-    ruleset: tuple[str, ...],
-    variant: str | None,
-) -> int:
+def explain(subject: str, design: str | None, **given: Any) -> int:
     """Print the manual page of a RULE, or the whole derivation of one verdict.
 
     A verdict is named by the start of its FINGERPRINT, as `verify` prints it, and looked up in a netlist's report or a saved one.
@@ -229,12 +195,12 @@ def explain(
     from checker.errors import ArgumentError
 
     if design is None:
-        if bom or parts or declaration or ruleset or variant:
+        if any(given.values()):
             raise ArgumentError("these options belong to a NETLIST; to explain a rule give its name alone")
         found = plugins.rule(subject)
         click.echo(f"{found.id} ({found.hazard})\n\n{found.manual.strip()}\n\n{_caution()}")
         return 0
-    report = _report(design, bom, parts, declaration, ruleset, variant)
+    report = _report(design, given)
     _write(_derivation(report, subject).encode(), [])
     return 0
 

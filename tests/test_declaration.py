@@ -20,6 +20,7 @@ from checker.model.declaration import (
     Variant,
 )
 from checker.model.fact import ATTRIBUTES, Fact, Source, Trust
+from checker.model.kind_words import SYNONYMS
 from checker.readers import parts_file
 
 FOLDER = Path(__file__).resolve().parents[1] / "fixtures" / "declarations"
@@ -348,8 +349,8 @@ def test_kinds_are_read_however_they_are_written():
 
 
 def test_synonyms_lead_to_kinds_and_no_synonym_hides_a_kind():
-    assert set(parts_file._SYNONYMS.values()) <= KINDS
-    assert not set(parts_file._SYNONYMS) & KINDS
+    assert set(SYNONYMS.values()) <= KINDS
+    assert not set(SYNONYMS) & KINDS
 
 
 def test_every_rating_of_the_model_can_be_declared():

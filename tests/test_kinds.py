@@ -13,11 +13,11 @@ from checker.identify.insulating_types import INSULATING_FAMILIES
 from checker.identify.kinds import judge, normal_kind, prefix
 from checker.identify.ordinary_types import ORDINARY_FAMILIES
 from checker.identify.references import CLASSES
-from checker.identify.synonyms import SYNONYMS
 from checker.identify.word_kinds import hits
 from checker.model.candidate import INSULATING, KINDS
 from checker.model.circuit import Part, Pin
 from checker.model.fact import Fact, Trust
+from checker.model.kind_words import SYNONYMS
 from checker.model.reading import Reading
 from checker.readers import sexpr_netlist, xml_netlist
 

@@ -16,11 +16,11 @@ from functools import lru_cache
 from checker import limits
 from checker.identify import families, pin_kinds, word_kinds
 from checker.identify.references import CLASSES, Class
-from checker.identify.synonyms import normal_kind
 from checker.identify.word_kinds import Hit
 from checker.model.candidate import CONNECTORS, INSULATING, MECHANICAL, UNKNOWN
 from checker.model.circuit import Part
 from checker.model.fact import Fact
+from checker.model.kind_words import normal_kind
 from checker.neutral import neutral
 
 __all__ = ["Judged", "judge", "normal_kind", "prefix"]

@@ -216,18 +216,18 @@ def _sides_differ(isle: Islands, culprit: Culprit) -> bool:
 
     One link at a time, as a planted part would be taken out: opening a whole chain would also take away what feeds a side.
     """
-    likely = culprit.chain if culprit.cut else shorts.likeliest(isle, culprit.chain)
-    if culprit.cut or len(isle.live) > NETS_WEIGHED:
-        return _differ(isle, culprit, frozenset(likely))
-    return any(_differ(isle, culprit, frozenset((ref,))) for ref in likely[:CHAIN_WEIGHED])
+    if culprit.cut:
+        return _differ(isle, culprit.split, frozenset(culprit.chain))
+    likely = shorts.likeliest(isle, culprit.chain)[: CHAIN_WEIGHED if len(isle.live) <= NETS_WEIGHED else 1]
+    return any(_differ(isle, culprit.splits[ref], frozenset((ref,))) for ref in likely)
 
 
-def _differ(isle: Islands, culprit: Culprit, opened: frozenset[str]) -> bool:
+def _differ(isle: Islands, split: Mapping[str, shorts.Split], opened: frozenset[str]) -> bool:
     trial = build(isle.design, isle.choice, isle.opened | opened, isle.halved)
     settle_windings(trial)
     settle_capacitors(trial)
     hazardous = set(evidence.on_mains(evidence.gather(trial, trial.members())))
-    for first, second in culprit.split.values():
+    for first, second in split.values():
         hazard = [any(trial.island(net) in hazardous for net in side if net not in trial.links) for side in (first, second)]
         if hazard[0] != hazard[1]:
             return True
@@ -236,7 +236,7 @@ def _differ(isle: Islands, culprit: Culprit, opened: frozenset[str]) -> bool:
 
 def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, likely: tuple[str, ...]) -> Short:
     part = culprit.parts[0]
-    first, second = culprit.split[part]
+    first, second = culprit.splits.get(likely[0], culprit.split)[part]
     way = shorts.path(isle, first, second, members[isle.island(first[0])])
     facts = tuple(isle.design.parts[ref].fact for ref in (*likely, *culprit.parts[:6]))
     count = len(culprit.parts)
@@ -246,7 +246,8 @@ def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, li
         taken = " - ".join(culprit.chain) if len(culprit.chain) == 1 else "any one of " + " - ".join(culprit.chain)
     step = Step(
         f"with {taken} taken out, {count} insulating part{'s' * (count > 1)} "
-        f"({', '.join(culprit.parts[:6])}{' ...' * (count > 6)}) separate two circuits; with it they do not",
+        f"({', '.join(culprit.parts[:6])}{' ...' * (count > 6)}) separate{'s' * (count == 1)} two circuits; "
+        f"otherwise {'it does' if count == 1 else 'they do'} not",
         facts,
         result=" - ".join(way),
     )

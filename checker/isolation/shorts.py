@@ -22,18 +22,27 @@ DEAREST_CUT = 12  # beyond this many parts' worth the two sides are simply one c
 CUT_NODES = 20_000  # nets and parts of an island beyond which no minimum cut is tried
 
 
+Split = tuple[tuple[str, ...], tuple[str, ...]]
+
+
 @dataclass(frozen=True, slots=True)
 class Culprit:
     """chain: ordinary parts in series, any of which, taken out, separates `parts`. nets: when a net itself is on both sides.
 
-    split: for each insulating part its live nets on the first and the second side once the chain is open.
+    splits: for each link of the chain, and each insulating part, its live nets on the two sides once that link is open; of a cut,
+    whose parts must all be opened, under the first of them.
     """
 
     chain: tuple[str, ...]
     parts: tuple[str, ...]
     nets: tuple[str, ...] = ()
-    split: Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]] = field(default_factory=dict)
+    splits: Mapping[str, Mapping[str, Split]] = field(default_factory=dict)
     cut: bool = False
+
+    @property
+    def split(self) -> Mapping[str, Split]:
+        """The sides of the insulating parts once the first link is open."""
+        return self.splits[self.chain[0]] if self.chain else {}
 
 
 @dataclass(slots=True)
@@ -151,7 +160,7 @@ def find(
 def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str], support: Sequence[str]) -> list[Culprit]:
     graph = _graph(isle, nets)
     walk = _walk(graph, f"n:{nets[0]}")
-    separates: dict[str, dict[str, tuple[tuple[str, ...], tuple[str, ...]]]] = {}
+    separates: dict[str, dict[str, Split]] = {}
     shared: list[Culprit] = []
     for ref in refs:
         both = shared_nets(isle, ref)
@@ -223,7 +232,7 @@ def _candidates(isle: Islands, walk: _Walk, ref: str) -> list[str]:
     return list(found)
 
 
-def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> tuple[tuple[str, ...], tuple[str, ...]] | None:
+def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> Split | None:
     """The nets of an insulating part on the two sides of `node` once it is open, None when that does not separate the part."""
     parts: dict[str, list[str]] = {}
     pins: Counter[str] = Counter()
@@ -248,7 +257,7 @@ def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> tuple[tuple[str, 
     return tuple(dict.fromkeys(first)), tuple(dict.fromkeys(net for nets in others for net in nets))
 
 
-def _grouped(separates: Mapping[str, Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]]) -> list[Culprit]:
+def _grouped(separates: Mapping[str, Mapping[str, Split]]) -> list[Culprit]:
     """The part that separates most insulating parts wins; ties that separate the same ones are one chain. Repeated for what
     is left."""
     left = {ref: dict(parts) for ref, parts in separates.items()}
@@ -258,7 +267,7 @@ def _grouped(separates: Mapping[str, Mapping[str, tuple[tuple[str, ...], tuple[s
         best = next(ref for ref, parts in left.items() if len(parts) == most)
         parts = tuple(left[best])
         chain = tuple(ref for ref, others in left.items() if tuple(others) == parts)
-        found.append(Culprit(chain, parts, (), left[best]))
+        found.append(Culprit(chain, parts, (), {ref: left[ref] for ref in chain}))
         left = {ref: rest for ref, others in left.items() if (rest := {p: s for p, s in others.items() if p not in parts})}
     return found
 
@@ -304,12 +313,14 @@ def _cuts(isle: Islands, graph: Mapping[str, Sequence[str]], refs: Sequence[str]
             continue
         parts = _minimum_cut(isle, flow, sides[0][0], sides[1][0])
         if parts:
-            found.append(Culprit(parts, (ref,), (), {ref: (sides[0], sides[1])}, cut=True))
+            found.append(Culprit(parts, (ref,), (), {parts[0]: {ref: (sides[0], sides[1])}}, cut=True))
     merged: dict[tuple[str, ...], Culprit] = {}
     for culprit in found:
         known = merged.get(culprit.chain)
         parts = (known.parts if known else ()) + culprit.parts
-        merged[culprit.chain] = Culprit(culprit.chain, parts, (), {**(known.split if known else {}), **culprit.split}, cut=True)
+        merged[culprit.chain] = Culprit(
+            culprit.chain, parts, (), {culprit.chain[0]: {**(known.split if known else {}), **culprit.split}}, cut=True
+        )
     return list(merged.values())
 
 
@@ -332,20 +343,26 @@ def path(isle: Islands, one: Sequence[str], two: Sequence[str], nets: Iterable[s
     return ()
 
 
-_SUSPICION = ("net-tie", "jumper", "resistor", "ferrite", "potentiometer", "network", "inductor", "capacitor", "diode", "led")
+_SUSPICION = (
+    "net-tie", "jumper", "resistor", "ferrite", "potentiometer", "network", "inductor", "capacitor", "diode", "led", "zener", "tvs",
+)  # fmt: skip
+_RANK = {kind: at for at, kind in enumerate(_SUSPICION)}
+
+
+def _suspicion(isle: Islands, ref: str) -> int:
+    return _RANK.get(isle.kind(ref), len(_SUSPICION))
 
 
 def is_simple(isle: Islands, chain: Sequence[str]) -> bool:
     """Whether a chain has a part that people put across by mistake; a fuse or a contactor of the line is none."""
-    return any(isle.kind(ref) in _SUSPICION for ref in chain)
+    return any(isle.kind(ref) in _RANK for ref in chain)
 
 
 def likeliest(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
     """The links of a series chain that most likely do not belong there: the simplest kind in it, fewest pins first."""
-    rank = {kind: at for at, kind in enumerate(_SUSPICION)}
-    ranks = {ref: rank.get(isle.kind(ref), len(_SUSPICION)) for ref in chain}
-    best = min(ranks.values())
-    return tuple(sorted((ref for ref in chain if ranks[ref] == best), key=lambda ref: len(isle.design.parts[ref].pins)))
+    best = min(_suspicion(isle, ref) for ref in chain)
+    simplest = (ref for ref in chain if _suspicion(isle, ref) == best)
+    return tuple(sorted(simplest, key=lambda ref: len(isle.design.parts[ref].pins)))
 
 
 def between(isle: Islands, nets: Sequence[str], one: Sequence[str], two: Sequence[str]) -> tuple[tuple[str, ...], bool]:

@@ -19,6 +19,7 @@ from dataclasses import dataclass
 from checker.files import Blob
 from checker.model.candidate import KINDS, Mark, Winding
 from checker.model.fact import Fact, Source, Trust
+from checker.model.kind_words import normal_kind
 from checker.model.reading import Note, Reader, Reading, Row
 from checker.strict_yaml import Map, Node, either, load, suggestion
 from checker.units import Quantity, UnitError, parse, quantity, span
@@ -41,44 +42,6 @@ RATINGS = {
 }
 MATERIAL_GROUPS = ("I", "II", "IIIa", "IIIb")
 
-# What people call the kinds. Only words with one meaning: `dc-dc` may or may not insulate, so it is no kind.
-_SYNONYMS = {
-    "opto": "optocoupler",
-    "opto-coupler": "optocoupler",
-    "optoisolator": "optocoupler",
-    "opto-isolator": "optocoupler",
-    "photocoupler": "optocoupler",
-    "isolated-dc-dc": "isolated-module",
-    "isolated-dcdc": "isolated-module",
-    "isolated-dc-dc-converter": "isolated-module",
-    "isolation-amplifier": "isolated-amplifier",
-    "isolated-gate-driver": "isolated-driver",
-    "ssr": "solid-state-relay",
-    "photorelay": "solid-state-relay",
-    "hall": "hall-sensor",
-    "hall-effect-sensor": "hall-sensor",
-    "ferrite-bead": "ferrite",
-    "bead": "ferrite",
-    "choke": "inductor",
-    "common-mode-inductor": "common-mode-choke",
-    "bridge-rectifier": "bridge",
-    "zener-diode": "zener",
-    "tvs-diode": "tvs",
-    "bjt": "bipolar",
-    "bipolar-transistor": "bipolar",
-    "scr": "thyristor",
-    "mov": "varistor",
-    "vdr": "varistor",
-    "gdt": "gas-tube",
-    "gas-discharge-tube": "gas-tube",
-    "ntc": "thermistor",
-    "polyfuse": "resettable-fuse",
-    "xtal": "crystal",
-    "pot": "potentiometer",
-    "testpoint": "test-point",
-    "mounting-hole": "hole",
-    "heat-sink": "heatsink",
-}
 _TEXTS = ("value", "type", "maker", "technology")
 _CAPACITOR_CLASS = re.compile(r"[XxYy][1-4]")
 _STANDARD = re.compile(r"\b(IEC|EN|UL|VDE|DIN|CQC|CSA|GB) ?(?=[0-9])", re.IGNORECASE)
@@ -133,10 +96,10 @@ def stated(entry: Map, trust: Trust) -> Stated:
 
 def kind_of(node: Node) -> str:
     """A kind of checker.model.candidate.KINDS; case, blanks and underscores do not matter, plain synonyms are known."""
-    said = "-".join(node.name_text().casefold().replace("_", " ").replace("-", " ").split())
-    found = _SYNONYMS.get(said, said)
-    if found in KINDS:
+    found = normal_kind(node.name_text())
+    if found is not None:
         return found
+    said = "-".join(node.name_text().casefold().replace("_", " ").replace("-", " ").split())
     if said in ("dc-dc", "dcdc", "dc-dc-converter", "converter"):
         raise node.error("may or may not insulate", expected="isolated-module when its output is insulated, else module")
     close = suggestion(said, sorted(KINDS))
