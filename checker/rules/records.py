@@ -25,6 +25,7 @@ from checker.model.reading import Note
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Verdict, Words
+from checker.units import shown
 
 # note kind -> (headline, level when it fails)
 _FAILING: Mapping[str, tuple[str, str]] = {
@@ -118,8 +119,8 @@ def _of_disagreement(clause: Clause, ref: str, found: Disagreement) -> Verdict:
 
 
 def _said(fact: Fact) -> str:
-    shown = f"{fact.value:g} {fact.unit}".strip() if isinstance(fact.value, float) else str(fact.value)
-    return f"{fact.text} = {shown}" if fact.text and fact.text != shown else shown
+    figure = shown(fact.value, fact.unit, fact.form) if isinstance(fact.value, float) else str(fact.value)
+    return f"{fact.text} = {figure}" if fact.text and fact.text != figure else figure
 
 
 RULE = Rule("records", "record", Params, ask, __doc__ or "")

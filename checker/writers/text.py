@@ -208,7 +208,7 @@ def _reasons(verdict: VerdictShown, steps: Mapping[str, StepShown]) -> Iterator[
         step = steps.get(at)
         if step is None:
             continue
-        if step.text and step.text != verdict.because:
+        if step.text and step.text not in verdict.because:
             yield _reason(step)
             shown += 1
         if shown == STEPS:
