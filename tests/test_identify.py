@@ -112,3 +112,21 @@ def test_a_test_voltage_is_never_a_working_voltage():
 def test_a_part_nobody_describes_still_has_a_candidate():
     (found,) = first((), ref="U9")
     assert (found.kind, found.sure, found.listed) == ("ic", False, False)
+
+
+def test_a_class_the_schematic_wants_does_not_survive_a_bill_that_describes_an_ordinary_part():
+    (found,) = first(
+        said(value="1n Y1", symbol="C") + said(Trust.BOM, BOM, description="CAP CER 1NF 1KV X7R", type="DISC-1KV-102K")
+    )
+    assert found.marks == ()
+    assert [d.attribute for d in found.disagreements] == ["mark"]
+
+
+def test_a_class_of_the_schematic_stands_while_the_bill_only_names_a_type():
+    (found,) = first(said(value="1n Y1", symbol="C") + said(Trust.BOM, BOM, value="1nF", type="ABC-102M"))
+    assert [mark.name for mark in found.marks] == ["Y1"]
+
+
+def test_what_the_schematic_wants_says_nothing_about_an_alternate():
+    _, alternate = first(said(value="1n Y1", symbol="C"), [said(Trust.BOM, BOM, type="ABC-102M")])
+    assert alternate.marks == ()

@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
-from checker import pipeline, plugins, rulesets
+from checker import files, pipeline, plugins, rulesets
+from checker.declaration import read as read_declaration
 from checker.isolation.domains import isolate
 from checker.model.condition import Condition
 from checker.model.declaration import Declaration
+from checker.model.fact import Fact, Source, Trust
 from checker.model.rule import Rule
 from checker.testing import load_cases, readings
 from checker.writers import json as json_form
@@ -69,3 +72,23 @@ def test_a_condition_is_an_overlay_on_the_circuit():
     assert not isolate(circuit, kinds, Declaration(), Condition("R99 open", frozenset({"R99"}))).shorts
     joined = Condition("coupler short", frozenset({"R99"}), (frozenset({"LED", "FB"}),))
     assert len(isolate(circuit, kinds, Declaration(), joined).domains) == 1
+
+
+def test_the_worst_alternate_of_the_bill_is_shown_and_named():
+    folder = ROOT / "fixtures" / "designs" / "greenhouse"
+    netlist, bom = (plugins.reader_for(blob, role).read(blob) for role, blob in blobs(folder))
+    other = (
+        Fact("type", "DISC-1KV-102K", Source("bom.csv", 30), Trust.BOM),
+        Fact("description", "CAP CER 1NF 1KV X7R", Source("bom.csv", 30), Trust.BOM),
+    )
+    rows = tuple(replace(row, alternates=(other,)) if row.refs == ("CY1",) else row for row in bom.rows)
+    declaration = read_declaration(files.read(folder / "declaration.yaml"))
+    report = pipeline.judge("d", [netlist, replace(bom, rows=rows)], declaration, rulesets.load_all(rulesets.DEFAULT), ()).report
+    (verdict,) = [v for v in report.verdicts if v.outcome == "fail"]
+    assert (verdict.rule, verdict.parts, verdict.candidate) == ("bridging-capacitor", ["CY1"], "CY1 as DISC-1KV-102K")
+    assert "DISC-1KV-102K" in verdict.because
+
+
+def blobs(folder):
+    """(role, blob) of a demo design's netlist and bill."""
+    return [("netlist", files.read(folder / "greenhouse.net")), ("bom", files.read(folder / "bom.csv"))]

@@ -72,7 +72,10 @@ def _candidate(part: Part, facts: Sequence[Fact], declared: DeclaredPart | None,
     value, stated = _value(texts, kind, once)
     rated, said_ratings = _ratings(facts, texts, kind, once)
     attributes = _attributes(facts, texts, judged, part, kind, once)
-    marked = _marks(facts, texts, declared, once)
+    ordinary = _bought_ordinary(facts, texts, kind, once)
+    # what the schematic wants is no proof of what an alternate is, nor of a part the bill describes as an ordinary one
+    vouched = facts if ordinary is None and not label else [fact for fact in facts if fact.trust >= Trust.BOM]
+    marked = _marks(vouched, _texts(vouched), declared, once)
     generic = _generic(texts, once)
     if generic is not None:
         fact, found = generic
@@ -95,7 +98,11 @@ def _candidate(part: Part, facts: Sequence[Fact], declared: DeclaredPart | None,
         windings=wound,
         maker=_best(facts, "maker"),
         type=_best(facts, "type"),
-        disagreements=(*_value_disagreements(value, stated), *said_ratings, *_mark_disagreements(facts, texts, declared, once)),
+        disagreements=(
+            *_value_disagreements(value, stated),
+            *said_ratings,
+            *_mark_disagreements(facts, texts, declared, ordinary if not label else None, once),
+        ),
     )
 
 
@@ -219,7 +226,7 @@ def _attributes(
 def _marks(
     facts: Sequence[Fact], texts: Sequence[Fact], declared: DeclaredPart | None, once: Callable[..., Any]
 ) -> tuple[Mark, ...]:
-    """Marks of the most trusted source that states a class; approvals of every source. A part number alone gives none."""
+    """Marks of the most trusted source that states a class, a part number last; approvals of every source."""
     found: dict[str, Mark] = {mark.name: mark for mark in declared.marks} if declared is not None else {}
     columns = sorted((fact for fact in facts if fact.attribute == "mark"), key=lambda fact: -fact.trust)
     classed = any(name[:1] in "XY" for name in found)
@@ -245,6 +252,19 @@ def _marks(
 _CLASSES = frozenset({"X1", "X2", "X3", "Y1", "Y2", "Y3", "Y4"})
 
 
+def _bought_ordinary(facts: Sequence[Fact], texts: Sequence[Fact], kind: str, once: Callable[..., Any]) -> Fact | None:
+    """The bill's description of a capacitor as an ordinary one: a rated voltage, and nothing of the bill states a class."""
+    if kind != "capacitor":
+        return None
+    bought = [fact for fact in texts if fact.trust >= Trust.BOM]
+    if any(fact.attribute == "mark" for fact in facts) or any(once(marks.read, fact.value) for fact in bought):
+        return None
+    return next(
+        (fact for fact in bought if fact.attribute == "description" and "voltage" in once(ratings.read, fact.value, kind).ratings),
+        None,
+    )
+
+
 def _record(text: str) -> tuple[str, str]:
     """`record ...; valid until 2027-01-31` as a parts file leaves it in the fact's text."""
     record = until = ""
@@ -257,7 +277,7 @@ def _record(text: str) -> tuple[str, str]:
 
 
 def _mark_disagreements(
-    facts: Sequence[Fact], texts: Sequence[Fact], declared: DeclaredPart | None, once: Callable[..., Any]
+    facts: Sequence[Fact], texts: Sequence[Fact], declared: DeclaredPart | None, ordinary: Fact | None, once: Callable[..., Any]
 ) -> list[Disagreement]:
     """A class in one place and another class of the same letter, or of the other letter alone, in another."""
     stated: list[tuple[frozenset[str], Fact]] = []
@@ -269,6 +289,8 @@ def _mark_disagreements(
         names = frozenset(name for name, _ in once(read, fact.value)) & _CLASSES
         if names:
             stated.append((names, fact))
+    if ordinary is not None and stated and stated[0][1].trust < Trust.BOM:
+        return [Disagreement("mark", ordinary, stated[0][1])]
     for names, fact in stated[1:]:
         if names.isdisjoint(stated[0][0]):
             return [Disagreement("mark", stated[0][1], fact)]
