@@ -277,3 +277,19 @@ def test_earth_like_names_are_only_a_hint():
     assert earth_like("Earth")
     assert earth_like("USB_SHIELD")
     assert not earth_like("GND")
+
+
+@pytest.mark.parametrize("kind, value", [("capacitor", 1e-9), ("capacitor", 1e-7), ("varistor", None)])
+def test_nothing_small_joins_a_mains_stub_to_one_of_two_secondaries(kind, value):
+    parts = {
+        "J1": ("inlet", {"1": "L", "2": "N"}),
+        "F1": ("fuse", {"1": "L", "2": "LF"}),
+        "T1": ("transformer", {"1": "LF", "2": "N", "5": "A1", "6": "A2", "7": "B1", "8": "B2"}),
+        "BR1": ("bridge", {"1": "A1", "2": "A2", "3": "VA", "4": "GNDA"}),
+        "R1": ("resistor", {"1": "VA", "2": "GNDA"}),
+        "BR2": ("bridge", {"1": "B1", "2": "B2", "3": "VB", "4": "GNDB"}),
+        "R2": ("resistor", {"1": "VB", "2": "GNDB"}),
+        "X9": (kind, {"1": "N", "2": "GNDA"}),
+    }
+    found, _ = barriers(parts, X9={"value": value} if value else {})
+    assert found["mains|GNDA"] == ("T1", "X9")

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 
 from checker.isolation import evidence, shorts, unlisted
 from checker.isolation.crossings import crossings, separations
-from checker.isolation.groups import halves
+from checker.isolation.groups import TRANSFORMERS, halves
 from checker.isolation.islands import Islands, build, settle_capacitors, settle_windings
 from checker.isolation.naming import named
 from checker.isolation.shorts import Culprit
@@ -94,30 +94,55 @@ def _next_short(isle: Islands, declaration: Declaration) -> tuple[Short | None, 
     for reason, one, two in _opposed(isle, members, declaration):
         return (*_joined(isle, members, reason, one, two), ())
     inactive = _inactive(isle)
-    if not inactive:
-        return None, (), ()
     hazardous = set(evidence.on_mains(evidence.gather(isle, members)))
     for culprit in shorts.find(isle, members, inactive, _active(isle))[:WEIGHED]:
-        if culprit.chain and _is_fault(isle, culprit, hazardous):
-            if culprit.cut:
-                return _short(isle, members, culprit, culprit.chain), culprit.chain, ()
-            likely = _to_open(isle, culprit.chain)
-            if _doubtful(isle, likely[0]) and halves(isle.design.parts[likely[0]], isle.choice[likely[0]]):
-                return None, (), likely[:1]
-            return _short(isle, members, culprit, likely), likely[:1], ()
+        if culprit.chain and (telling := _telling(isle, culprit, hazardous)):
+            return _found(isle, members, culprit, telling)
+    exposed = {island: nets for island, nets in members.items() if island in hazardous}
+    if len(isle.live) > NETS_WEIGHED:
+        return None, (), ()
+    partly = [ref for ref in _active(isle) if isle.kind(ref) in TRANSFORMERS and not hazardous.isdisjoint(isle.part_islands(ref))]
+    for culprit in shorts.find(isle, exposed, partly, single=True)[:WEIGHED]:
+        if telling := _telling(isle, culprit, hazardous, reached=True):
+            return _found(isle, members, culprit, telling)
+    for culprit in shorts.cuts(isle, exposed, inactive):
+        if telling := _telling(isle, culprit, hazardous, reached=True):
+            return _found(isle, members, culprit, telling)
     return None, (), ()
 
 
-def _is_fault(isle: Islands, culprit: Culprit, hazardous: set[str]) -> bool:
-    """Whether a part that joins the sides of insulating parts is a fault, not the way the circuit is meant.
+def _found(
+    isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, telling: Sequence[str]
+) -> tuple[Short | None, tuple[str, ...], tuple[str, ...]]:
+    if culprit.cut:
+        return _short(isle, members, culprit, culprit.chain), culprit.chain, ()
+    clean = min(shorts.interleaved(isle, culprit.splits[ref]) for ref in telling)
+    likely = _to_open(isle, [ref for ref in telling if shorts.interleaved(isle, culprit.splits[ref]) == clean])
+    if _doubtful(isle, likely[0]) and halves(isle.design.parts[likely[0]], isle.choice[likely[0]]):
+        return None, (), likely[:1]
+    return _short(isle, members, culprit, likely), likely[:1], ()
 
-    On the mains: when only one of the sides is mains once it is open. Elsewhere: when two insulating parts and more come apart.
+
+def _telling(isle: Islands, culprit: Culprit, hazardous: set[str], reached: bool = False) -> tuple[str, ...]:
+    """The links of a chain that are a fault, not the way the circuit is meant; of a cut all its parts or none.
+
+    On the mains: those that leave only one of the sides on it when they alone are open, as a planted part would be taken out
+    (opening a whole chain would also take away what feeds a side). Elsewhere: all, when two insulating parts and more come
+    apart. reached: the side that is no mains must also lead to a connector.
     """
     first, _ = culprit.split[culprit.parts[0]]
     if isle.island(first[0]) not in hazardous:
-        return len(culprit.parts) > 1
-    telling = len(culprit.parts) > 1 or shorts.is_simple(isle, culprit.chain)
-    return (telling or any(_doubtful(isle, ref) for ref in culprit.chain)) and _sides_differ(isle, culprit)
+        return culprit.chain if len(culprit.parts) > 1 else ()
+    if culprit.cut:
+        simple = len(culprit.parts) > 1 or any(shorts.is_simple(isle, ref) for ref in culprit.chain)
+        return culprit.chain if simple and _differ(isle, culprit.split, frozenset(culprit.chain), reached) else ()
+    links = shorts.by_suspicion(isle, culprit.chain)[: CHAIN_WEIGHED if len(isle.live) <= NETS_WEIGHED else 1]
+    found = []
+    for ref in links:
+        likely = shorts.is_simple(isle, ref) or _doubtful(isle, ref)
+        if (likely or len(culprit.parts) > 1) and _differ(isle, culprit.splits[ref], frozenset((ref,)), reached, every=not likely):
+            found.append(ref)
+    return tuple(found)
 
 
 def _doubtful(isle: Islands, ref: str) -> bool:
@@ -211,27 +236,25 @@ def _through(way: Sequence[str]) -> str:
     return ", ".join(parts) if parts else "one net"
 
 
-def _sides_differ(isle: Islands, culprit: Culprit) -> bool:
-    """Whether one side of an insulating part hangs on the mains and the other does not, once a likely link of the chain is open.
+def _differ(isle: Islands, split: Mapping[str, shorts.Split], opened: frozenset[str], reached: bool, every: bool = False) -> bool:
+    """Whether one side of an insulating part hangs on the mains and the other does not once these parts are open.
 
-    One link at a time, as a planted part would be taken out: opening a whole chain would also take away what feeds a side.
+    reached: that other side must lead to a connector. every: each of the insulating parts must say so.
     """
-    if culprit.cut:
-        return _differ(isle, culprit.split, frozenset(culprit.chain))
-    likely = shorts.likeliest(isle, culprit.chain)[: CHAIN_WEIGHED if len(isle.live) <= NETS_WEIGHED else 1]
-    return any(_differ(isle, culprit.splits[ref], frozenset((ref,))) for ref in likely)
-
-
-def _differ(isle: Islands, split: Mapping[str, shorts.Split], opened: frozenset[str]) -> bool:
     trial = build(isle.design, isle.choice, isle.opened | opened, isle.halved)
     settle_windings(trial)
     settle_capacitors(trial)
-    hazardous = set(evidence.on_mains(evidence.gather(trial, trial.members())))
-    for first, second in split.values():
-        hazard = [any(trial.island(net) in hazardous for net in side if net not in trial.links) for side in (first, second)]
-        if hazard[0] != hazard[1]:
-            return True
-    return False
+    members = trial.members()
+    hazardous = set(evidence.on_mains(evidence.gather(trial, members)))
+    told = []
+    for sides in split.values():
+        homes = [{trial.island(net) for net in side if net not in trial.links} for side in sides]
+        hazard = [not hazardous.isdisjoint(home) for home in homes]
+        free = homes[hazard.index(False)] if hazard[0] != hazard[1] else set()
+        if reached:
+            free = {home for home in free if any(isle.kind(ref) in CONNECTORS for net in members[home] for ref in isle.live[net])}
+        told.append(bool(free))
+    return all(told) if every else any(told)
 
 
 def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, likely: tuple[str, ...]) -> Short:

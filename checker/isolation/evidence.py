@@ -75,7 +75,7 @@ def gather(isle: Islands, members: Mapping[str, list[str]]) -> dict[str, Evidenc
     """Evidence per island, for every island (without any: an empty Evidence)."""
     found = {island: Evidence(stub=is_stub(isle, nets)) for island, nets in members.items()}
     roles = {net: role(net) for net in isle.live}
-    paired = {"line", "neutral"} <= set(roles.values())
+    paired = {"line", "neutral"} <= {role(net) for net in isle.design.nets}
     for net, word in roles.items():
         if net not in isle.links:
             _from_name(found[isle.island(net)], isle, net, word, paired)

@@ -19,6 +19,8 @@ _PASSIVE = CONNECTORS | MECHANICAL | INSULATING | LIMITERS | {
     "capacitor", "fuse", "resettable-fuse", "switch", "common-mode-choke", "filter", "inductor", "ferrite", "jumper", "net-tie",
     "thermistor", "lamp", "motor", "antenna",
 }  # fmt: skip
+_WIRING = frozenset({"fuse", "resettable-fuse", "switch", "thermistor", "inductor", "ferrite", "jumper"})
+WIRED = 8  # nets of a line conductor between a connector and a winding
 _NOTHING_MORE = MECHANICAL | {"test-point"}
 SMOOTHING = 90e-9  # F; 0.1 uF and more, with the tolerance of a nominal 100 nF, smooths; a barrier capacitor was 1 to 10 nF
 SMALL = 11e-9  # F; up to about 10 nF a capacitor between two islands is taken for a barrier capacitor
@@ -162,7 +164,7 @@ def settle_windings(isle: Islands) -> None:
     for ref, candidate in isle.choice.items():
         if candidate.kind not in TRANSFORMERS or candidate.windings or ref in isle.opened or not isle.design.parts[ref].fitted:
             continue
-        ends = [net for pin in _in_order(isle.design.parts[ref]) if (net := pin.net) in isle.live and stub.get(before[net], False)]
+        ends = [net for pin in in_order(isle.design.parts[ref]) if (net := pin.net) in isle.live and stub.get(before[net], False)]
         by_connector: dict[str, list[str]] = {}
         for net in dict.fromkeys(ends):
             for other in _reached(isle, net, members[before[net]]):
@@ -173,9 +175,38 @@ def settle_windings(isle: Islands) -> None:
                 for one, two in zip(nets[::2], nets[1::2], strict=True):
                     isle.bond(one, two)
         _settle_lone_ends(isle, ref, ends)
+        _settle_fed(isle, ref, ends)
 
 
-def _in_order(part: Part) -> list[Pin]:
+def _settle_fed(isle: Islands, ref: str, ends: list[str]) -> None:
+    """A winding fed from a connector of which one end leads to more than wiring: a fault on that end must not open the winding.
+
+    The two ends are neighbours among the pins, at least one is a stub, and no third pin is wired to that connector.
+    """
+    nets = list(dict.fromkeys(pin.net for pin in in_order(isle.design.parts[ref]) if pin.net in isle.live and pin.net is not None))
+    wired: dict[str, list[int]] = {}
+    for at, net in enumerate(nets):
+        for connector in _wired(isle, net):
+            wired.setdefault(connector, []).append(at)
+    for places in wired.values():
+        if len(places) == 2 and places[1] - places[0] == 1 and (nets[places[0]] in ends or nets[places[1]] in ends):
+            isle.bond(nets[places[0]], nets[places[1]])
+
+
+def _wired(isle: Islands, net: str) -> tuple[str, ...]:
+    """Connectors that a net reaches through nothing but wiring, seen a few nets far."""
+    reached, found = [net], dict[str, None]()
+    for here in reached:
+        for ref in isle.live[here]:
+            part, nets = isle.design.parts[ref], isle.design.parts[ref].nets()
+            if isle.kind(ref) in CONNECTORS:
+                found[ref] = None
+            elif isle.kind(ref) in _WIRING and part.fitted and ref not in isle.opened and len(nets) == 2 and len(reached) < WIRED:
+                reached += [other for other in nets if other in isle.live and other not in reached]
+    return tuple(found)
+
+
+def in_order(part: Part) -> list[Pin]:
     """Pins by number where they are numbered, else as listed."""
     if all(pin.number.isdecimal() and pin.number.isascii() for pin in part.pins):
         return sorted(part.pins, key=lambda pin: int(pin.number))
@@ -184,7 +215,7 @@ def _in_order(part: Part) -> list[Pin]:
 
 def _settle_lone_ends(isle: Islands, ref: str, ends: list[str]) -> None:
     """A stub that holds one pin of a transformer alone: joined to the island both its neighbours lie on."""
-    pins = [pin for pin in _in_order(isle.design.parts[ref]) if pin.net in isle.live]
+    pins = [pin for pin in in_order(isle.design.parts[ref]) if pin.net in isle.live]
     homes = [isle.island(pin.net) for pin in pins if pin.net is not None]
     for at, pin in enumerate(pins):
         if pin.net in ends and homes.count(homes[at]) == 1 and len(pins) > 2:
@@ -226,9 +257,10 @@ def settle_capacitors(isle: Islands) -> None:
         if len(islands) != 2 or not (stubs.get(islands[0], False) or stubs.get(islands[1], False)):
             continue
         stub = islands[0] if stubs.get(islands[0], False) else islands[1]
-        if (_joins(isle, candidate, members[stub]) or _in_series(isle, candidate, members[stub])) and not _defeats(
-            isle, islands, members
-        ):
+        joins = _in_series(isle, candidate, members[stub]) or (
+            _joins(isle, candidate, members[stub]) and not _defeats(isle, candidate, islands, members, stub)
+        )
+        if joins:
             one, two = islands
             isle.joined[ref] = (one, two)
             isle.union.join(one, two)
@@ -251,7 +283,7 @@ def _joins(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
 
 
 def _in_series(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
-    """Whether a capacitor is in series with a winding: one winding end and capacitors are all there is on the stub.
+    """Whether a capacitor is in series with a winding: one winding end and capacitors to one island are all there is on the stub.
 
     A winding that led nowhere else could carry no output, so this is a resonant or blocking capacitor, never one across a barrier.
     """
@@ -259,23 +291,35 @@ def _in_series(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
         return False
     refs = isle.live[stub[0]]
     ends = [ref for ref in refs if isle.kind(ref) in TRANSFORMERS]
-    return len(ends) == 1 and all(isle.kind(ref) in ("capacitor", "test-point") or ref in ends for ref in refs)
+    if len(ends) != 1 or not all(isle.kind(ref) in ("capacitor", "test-point") or ref in ends for ref in refs):
+        return False
+    return len({island for ref in refs if isle.kind(ref) == "capacitor" for island in isle.part_islands(ref)}) == 2
 
 
-def _defeats(isle: Islands, islands: tuple[str, str], members: Mapping[str, list[str]]) -> bool:
-    """Whether joining two islands would leave an insulating part with all its pins on one."""
+def _defeats(isle: Islands, candidate: Candidate, islands: tuple[str, ...], members: Mapping[str, list[str]], stub: str) -> bool:
+    """Whether joining two islands would take away insulation.
+
+    A smoothing capacitor at a bare winding end, such as a centre tap, may join what else the winding is on, as long as the
+    transformer keeps another side. Anything smaller, a limiter, and anything on a stub that leads to a connector may not join
+    two islands that an insulating part lies between.
+    """
+    value = candidate.value
+    smoothing = candidate.kind == "capacitor" and value is not None and isinstance(value.value, float) and value.value >= SMOOTHING
+    outside = any(isle.kind(ref) in CONNECTORS for net in members[stub] for ref in isle.live[net])
+    strict = not smoothing or outside
     smaller = min(islands, key=lambda island: len(members[island]))
     for net in members[smaller]:
         for ref in isle.live[net]:
             if isle.choice[ref].insulating or ref in isle.halved:
                 here = set(isle.part_islands(ref))
-                if len(here) > 1 and here <= set(islands):
+                if len(here) > 1 and (here <= set(islands) or (strict and set(islands) <= here)):
                     return True
     return False
 
 
 def _find_links(isle: Islands) -> None:
-    """Nets on which only capacitors stand (a test point changes nothing), grouped through capacitors.
+    """Nets on which only capacitors stand (a test point changes nothing), grouped through capacitors; never protective earth,
+    which a wire outside the board reaches.
 
     A group is joined to the one island it touches, else its nets are links.
     """
@@ -283,6 +327,7 @@ def _find_links(isle: Islands) -> None:
         net
         for net, refs in isle.live.items()
         if sum(isle.kind(ref) == "capacitor" for ref in refs) > 1
+        and role(net) != "earth"
         and all(
             (isle.kind(ref) == "capacitor" and isle.design.parts[ref].fitted and ref not in isle.opened)
             or isle.kind(ref) in _NOTHING_MORE

@@ -12,12 +12,14 @@ from bisect import bisect_right
 from collections import Counter
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import pairwise
 from typing import Any
 
 from checker.isolation.groups import TRANSFORMERS
-from checker.isolation.islands import Islands, build
+from checker.isolation.islands import Islands, build, in_order
 
 MOST_CUTS = 8  # insulating parts for which a minimum cut is tried when no single part explains the short
+MOST_PLACES = 6  # places along the pins of a transformer where its windings may part
 DEAREST_CUT = 12  # beyond this many parts' worth the two sides are simply one circuit
 CUT_NODES = 20_000  # nets and parts of an island beyond which no minimum cut is tried
 
@@ -136,28 +138,45 @@ def _ref(node: str) -> str:
 
 
 def find(
-    isle: Islands, members: Mapping[str, Sequence[str]], inactive: Sequence[str], support: Sequence[str] = ()
+    isle: Islands,
+    members: Mapping[str, Sequence[str]],
+    inactive: Sequence[str],
+    support: Sequence[str] = (),
+    single: bool = False,
 ) -> tuple[Culprit, ...]:
     """For insulating parts with all sides on one island: what joins them, best explanation first; unexplained parts are absent.
 
     support: insulating parts that insulate elsewhere and have two sides or more on such an island; they add weight to a part
-    that explains others, never explain one alone.
+    that explains others, never explain one alone. single: only single parts are looked for, no cuts and no nets.
     """
     by_island: dict[str, list[str]] = {}
     for ref in inactive:
-        for island in isle.part_islands(ref)[:1]:
-            by_island.setdefault(island, []).append(ref)
+        for island in isle.part_islands(ref):
+            if island in members:
+                by_island.setdefault(island, []).append(ref)
     beside: dict[str, list[str]] = {}
     for ref in support:
         for island in isle.part_islands(ref):
             beside.setdefault(island, []).append(ref)
     found: list[Culprit] = []
     for island, refs in by_island.items():
-        found += _on_island(isle, members[island], refs, beside.get(island, []))
+        found += _on_island(isle, members[island], refs, beside.get(island, []), single)
     return tuple(sorted(found, key=lambda culprit: -len(culprit.parts)))
 
 
-def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str], support: Sequence[str]) -> list[Culprit]:
+def cuts(isle: Islands, members: Mapping[str, Sequence[str]], refs: Sequence[str]) -> tuple[Culprit, ...]:
+    """Several simple parts that together join the sides of insulating parts: the cheapest cut of each, where it is one of those."""
+    found: list[Culprit] = []
+    for island, nets in members.items():
+        here = [ref for ref in refs if island in isle.part_islands(ref)]
+        if here and len(nets) <= CUT_NODES:
+            found += _cuts(isle, _graph(isle, nets), here)
+    return tuple(cut for cut in found if all(isle.kind(ref) in _RANK for ref in cut.chain))
+
+
+def _on_island(
+    isle: Islands, nets: Sequence[str], refs: Sequence[str], support: Sequence[str], single: bool = False
+) -> list[Culprit]:
     graph = _graph(isle, nets)
     walk = _walk(graph, f"n:{nets[0]}")
     separates: dict[str, dict[str, Split]] = {}
@@ -175,12 +194,18 @@ def _on_island(isle: Islands, nets: Sequence[str], refs: Sequence[str], support:
         for node in _candidates(isle, walk, ref):
             if _ref(node) in separates and (split := _split(isle, walk, node, ref)) is not None:
                 separates[_ref(node)][ref] = split
+    if single:
+        return _grouped(separates)
     shared += _by_net(isle, refs, separates, shared)
     culprits = _grouped(separates)
     explained = {ref for culprit in culprits for ref in culprit.parts} | {ref for culprit in shared for ref in culprit.parts}
     rest = [ref for ref in refs if ref not in explained]
     if rest and not culprits and len(graph) <= CUT_NODES:
-        culprits += _cuts(isle, graph, rest)
+        several = _cuts(isle, graph, rest)
+        simple = {ref for cut in several if all(isle.kind(each) in _RANK for each in cut.chain) for ref in cut.parts}
+        narrow = [culprit for ref in rest if ref not in simple for culprit in _narrow(isle, walk, ref)]
+        shared += narrow
+        culprits += [cut for cut in several if not any(culprit.parts[0] in cut.parts for culprit in narrow)]
     merged: dict[tuple[str, ...], list[str]] = {}
     for culprit in shared:
         merged.setdefault(culprit.nets, []).append(culprit.parts[0])
@@ -221,15 +246,34 @@ def shared_nets(isle: Islands, ref: str) -> tuple[str, ...]:
     return tuple(net for net in isle.live if counts.get(net, 0) > 1) if any(n > 1 for n in counts.values()) else ()
 
 
-def _candidates(isle: Islands, walk: _Walk, ref: str) -> list[str]:
-    """Ordinary parts on the tree paths between the sides of an insulating part."""
+def _on_the_way(isle: Islands, walk: _Walk, ref: str) -> list[str]:
+    """Nodes on the tree paths between the sides of an insulating part."""
     ends = [f"n:{side[0]}" for side in isle.sides[ref] if f"n:{side[0]}" in walk.enter]
-    found: dict[str, None] = {}
-    for end in ends[1:]:
-        for node in walk.between(ends[0], end):
-            if node.startswith("p:") and not isle.choice[_ref(node)].insulating and _ref(node) not in isle.halved:
-                found[node] = None
-    return list(found)
+    return list(dict.fromkeys(node for end in ends[1:] for node in walk.between(ends[0], end)))
+
+
+def _candidates(isle: Islands, walk: _Walk, ref: str) -> list[str]:
+    """Ordinary parts on the way between the sides of an insulating part."""
+    return [
+        node
+        for node in _on_the_way(isle, walk, ref)
+        if node.startswith("p:") and not isle.choice[_ref(node)].insulating and _ref(node) not in isle.halved
+    ]
+
+
+def _narrow(isle: Islands, walk: _Walk, ref: str) -> list[Culprit]:
+    """The net through which everything goes from side to side of an insulating part; of several, the one with most parts on it."""
+    nets = [node[2:] for node in _on_the_way(isle, walk, ref) if node.startswith("n:") and _parted(isle, walk, node, ref)]
+    return [Culprit((), (ref,), (max(nets, key=lambda net: len(isle.live[net])),))] if nets else []
+
+
+def _parted(isle: Islands, walk: _Walk, node: str, ref: str) -> bool:
+    """Whether an insulating part comes apart without a net; a pin on that net belongs to either side."""
+    pins = [f"n:{pin.net}" for pin in isle.design.parts[ref].pins if f"n:{pin.net}" in walk.enter]
+    homes = Counter(walk.without(node, pin) for pin in pins if pin != node)
+    own = sum(pin == node for pin in pins)
+    least = 2 - min(own, 1) if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings else 1
+    return sum(count >= least for count in homes.values()) > 1
 
 
 def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> Split | None:
@@ -309,7 +353,10 @@ def _cuts(isle: Islands, graph: Mapping[str, Sequence[str]], refs: Sequence[str]
     found: list[Culprit] = []
     for ref in refs[:MOST_CUTS]:
         sides = [side for side in isle.sides[ref] if f"n:{side[0]}" in graph]
-        if len(sides) < 2 or (isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings):
+        if len(sides) < 2:
+            continue
+        if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings:
+            found += _cut_windings(isle, graph, flow, ref)
             continue
         parts = _minimum_cut(isle, flow, sides[0][0], sides[1][0])
         if parts:
@@ -322,6 +369,42 @@ def _cuts(isle: Islands, graph: Mapping[str, Sequence[str]], refs: Sequence[str]
             culprit.chain, parts, (), {culprit.chain[0]: {**(known.split if known else {}), **culprit.split}}, cut=True
         )
     return list(merged.values())
+
+
+def _cut_windings(isle: Islands, graph: Mapping[str, Sequence[str]], flow: Any, ref: str) -> list[Culprit]:
+    """The cheapest cut between neighbouring groups of pins of a transformer whose windings nobody states, when its parts are
+    simple and it leaves no pin alone."""
+    pins = [str(pin.net) for pin in in_order(isle.design.parts[ref]) if f"n:{pin.net}" in graph]
+    found: list[tuple[str, ...]] = []
+    for at in sorted(range(2, len(pins) - 1), key=lambda at: abs(2 * at - len(pins)))[:MOST_PLACES]:
+        one, two = pins[:at], pins[at:]
+        if set(one).isdisjoint(two):
+            for net in one:
+                flow.add_edge(("out", f"n:<{ref} {at}"), ("in", f"n:{net}"), capacity=float("inf"))
+            for net in two:
+                flow.add_edge(("out", f"n:{net}"), ("in", f"n:>{ref} {at}"), capacity=float("inf"))
+            found.append(_minimum_cut(isle, flow, f"<{ref} {at}", f">{ref} {at}"))
+    for parts in sorted((parts for parts in found if parts), key=len):
+        if all(isle.kind(other) in _RANK for other in parts):
+            trial = build(isle.design, isle.choice, isle.opened | set(parts), isle.halved)
+            homes: dict[str, list[str]] = {}
+            for net in pins:
+                homes.setdefault(trial.island(net), []).append(net)
+            if len(homes) > 1 and all(len(nets) > 1 for nets in homes.values()):
+                first, *others = homes.values()
+                split = (tuple(dict.fromkeys(first)), tuple(dict.fromkeys(net for nets in others for net in nets)))
+                return [Culprit(parts, (ref,), (), {parts[0]: {ref: split}}, cut=True)]
+    return []
+
+
+def interleaved(isle: Islands, split: Mapping[str, Split]) -> int:
+    """How often the two sides change along the pins of transformers: windings lie side by side, so the barrier changes once."""
+    changes = 0
+    for ref, (first, second) in split.items():
+        if isle.kind(ref) in TRANSFORMERS:
+            sides = [pin.net in first for pin in in_order(isle.design.parts[ref]) if pin.net in first or pin.net in second]
+            changes += sum(one != two for one, two in pairwise(sides))
+    return changes
 
 
 def path(isle: Islands, one: Sequence[str], two: Sequence[str], nets: Iterable[str]) -> tuple[str, ...]:
@@ -353,9 +436,14 @@ def _suspicion(isle: Islands, ref: str) -> int:
     return _RANK.get(isle.kind(ref), len(_SUSPICION))
 
 
-def is_simple(isle: Islands, chain: Sequence[str]) -> bool:
-    """Whether a chain has a part that people put across by mistake; a fuse or a contactor of the line is none."""
-    return any(isle.kind(ref) in _RANK for ref in chain)
+def is_simple(isle: Islands, ref: str) -> bool:
+    """Whether people put such a part across by mistake; a fuse or a contactor of the line is none."""
+    return isle.kind(ref) in _RANK
+
+
+def by_suspicion(isle: Islands, chain: Sequence[str]) -> list[str]:
+    """The links of a chain, the simplest kind first."""
+    return sorted(chain, key=lambda ref: _suspicion(isle, ref))
 
 
 def likeliest(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
