@@ -6,9 +6,9 @@ failure cannot shock. The ruleset says which arrangements each grade accepts (`Y
 
 Per chain across a barrier: pass when its classes satisfy the needed grade; fail when a class is stated that does not, when
 no class is stated by anything that was read and the part is described completely enough to tell that it is an ordinary one
-(a stated voltage rating or part type without any class), and when the chain hangs on a switching node (a winding with its
-switch or rectifier), where it would carry the switching voltage across. Open when the grade is not known, or when nothing
-but a value is stated about the part.
+(a rated voltage that is no a.c. rating, and no class), and when the chain hangs on a switching node (a winding with its
+switch or rectifier), where it would carry the switching voltage across. Open when the grade is not known, when nothing but a
+value is stated about the part, or when it is rated for a.c. as safety capacitors are and only the class is missing.
 
 To settle it: BOM column `Class`, or `marks: [Y1]` in a parts file or the declaration.
 """
@@ -153,9 +153,10 @@ def _satisfies(classes: list[str | None] | list[str], arrangement: str) -> bool:
 
 
 def _described(candidate: Candidate) -> bool:
-    """Whether enough is stated about a capacitor that a missing class means an ordinary one: a rating, a technology, or
-    another class."""
-    return "voltage" in candidate.ratings or "technology" in candidate.attributes
+    """Whether a missing class means an ordinary capacitor: a rated voltage is stated, and it is no a.c. rating as safety
+    capacitors have it."""
+    rating = candidate.ratings.get("voltage")
+    return rating is not None and rating.form != "rms"
 
 
 def _said(analysis: Analysis, crossing: Crossing) -> str:
