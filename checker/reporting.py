@@ -360,6 +360,8 @@ def _notes(analysis: Analysis, told: frozenset[str]) -> list[str]:
             found.append(
                 f"{note.text} ({places})" if places and not all(str(s) in note.text for s in note.sources[:2]) else note.text
             )
+    if analysis.declaration.concessions:
+        found.append(f"{analysis.declaration.concessions} is declared; this version applies no concessions, so every fail stands")
     for crossing in analysis.isolation.idle:
         found.append(f"{crossing.part} is not fitted; fitted, it would lie across {' and '.join(crossing.between)}")
     for ref in analysis.isolation.inactive:

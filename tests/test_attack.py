@@ -4,8 +4,11 @@ from __future__ import annotations
 
 import pytest
 
+from checker.identify.kinds import judge
 from checker.isolation.domains import isolate
+from checker.model.circuit import Part, Pin
 from checker.model.declaration import Declaration
+from checker.model.fact import Fact
 from tests.circuits import choice, design
 
 Parts = dict[str, tuple[str, dict[str, str]]]
@@ -200,3 +203,81 @@ def test_a_winding_end_with_capacitors_to_both_sides_belongs_to_neither_by_the_c
     isolation = judged(parts, C5={"value": 47e-9}, C99={"value": 33e-9})
     assert isolation.domain_of["VOUT"] != isolation.domain_of["PGND"]
     assert "C99" in {crossing.part for crossing in isolation.crossings}
+
+
+def test_the_bond_of_a_secondary_to_earth_is_not_blamed_for_what_joins_it_to_the_mains():
+    parts = {
+        **flyback(),
+        "J1": ("inlet", {"1": "L", "2": "N", "3": "PE"}),
+        "R8": two("resistor", "SGND", "PE"),
+    }
+    assert faults(parts) == []
+    assert [chain for chain, _ in faults({**parts, "P9": two("ferrite", "PGND", "SGND")})] == [("P9",)]
+
+
+def test_an_output_choke_is_not_blamed_for_a_ground_net_on_both_sides():
+    parts = flyback()
+    parts |= {
+        "T1": ("transformer", {"1": "VBUS", "2": "SW", "7": "SEC", "8": "SEC", "9": "PGND", "10": "PGND"}),
+        "D3": two("diode", "VO", "SEC"),
+        "L1": two("inductor", "VO", "VOUT"),
+        "R5": two("resistor", "VOUT", "PGND"),
+        "J2": two("connector", "VOUT", "PGND"),
+    }
+    assert all("L1" not in chain for chain, _ in faults(parts))
+
+
+def test_an_empty_fuse_holder_keeps_nothing_apart():
+    parts = {**toroid(), "RV1": two("varistor", "L1", "N"), "C1": two("capacitor", "L1", "N")}
+    isolation = isolate(design(parts, frozenset({"F1"})), choice(parts, C1={"value": 1e-7, "marks": ["X2"]}), Declaration())
+    assert isolation.domain_of["L"] == isolation.domain_of["L1"] == isolation.domain_of["N"]
+    assert {crossing.part for crossing in isolation.crossings} == {"T1"}
+
+
+def test_two_resistors_on_either_side_of_a_fuse_are_named_not_the_net_behind_it():
+    parts = {
+        "X1": ("connector", {"1": "L", "2": "N"}),
+        "F1": two("fuse", "L", "LF"),
+        "T1": ("transformer", {"1": "LF", "2": "N", "3": "A1", "4": "A2"}),
+        **rectified("A", ("A1", "A2")),
+        "K1": ("relay", {"1": "L", "2": "A_OUT", "3": "HEATER", "5": "COIL"}),
+        "Q1": ("bipolar", {"1": "DRIVE", "2": "A_GND", "3": "COIL"}),
+        "R1": two("resistor", "A_OUT", "DRIVE"),
+        "D1": two("diode", "A_OUT", "COIL"),
+        "X2": two("connector", "HEATER", "N"),
+    }
+    assert faults(parts) == []
+    parts |= {"R98": two("resistor", "LF", "A_GND"), "R99": two("resistor", "L", "A_OUT")}
+    assert {ref for chain, _ in faults(parts) for ref in chain} == {"R98", "R99"}
+
+
+def test_the_primary_of_a_current_transformer_that_leads_to_a_terminal_is_one_winding():
+    parts = {
+        **flyback(),
+        "T2": ("current-transformer", {"1": "SW", "2": "SW2", "3": "CS", "4": "SGND"}),
+        "R8": two("resistor", "CS", "SGND"),
+        "X2": two("connector", "SW2", "VBUS"),
+    }
+    isolation = judged(parts)
+    assert isolation.domain_of["SW2"] == isolation.domain_of["SW"] != isolation.domain_of["CS"]
+
+
+@pytest.mark.parametrize(
+    ("ref", "count", "kind"), [("T2", 6, "gate-drive-transformer"), ("GDT1", 2, "gas-tube"), ("GDT1", 3, "gas-tube")]
+)
+def test_gdt_is_a_gas_tube_only_with_the_pins_of_one(ref, count, kind):
+    pins = tuple(Pin(str(at), "", "", f"n{at}") for at in range(1, count + 1))
+    assert judge(Part(ref, pins, (Fact("value", "GDT 1:1:1" if count > 3 else "GDT 230V"),), ())).kind == kind
+
+
+@pytest.mark.parametrize("nets", [("N", "S1"), ("LF", "S2"), ("S1", "L"), ("S2", "N")])
+@pytest.mark.parametrize("first", [False, True])
+def test_a_resistor_across_a_transformer_with_bare_terminals_on_both_sides_is_named(nets, first):
+    parts = {
+        "J1": two("connector", "L", "N"),
+        "F1": two("fuse", "L", "LF"),
+        "T1": ("transformer", {"1": "LF", "5": "N", "7": "S1", "9": "S2"}),
+        "J2": two("connector", "S1", "S2"),
+    }
+    planted = {"P9": two("resistor", *nets)}
+    assert faults({**planted, **parts} if first else {**parts, **planted}) == [(("P9",), ("T1",))]

@@ -222,7 +222,9 @@ def _with_magnetics(words: Sequence[str]) -> bool:
 
 
 def _fitting(hit: Hit, count: int) -> Hit:
-    """`isolator` alone may be a coupler: the pins tell."""
+    """`isolator` alone may be a coupler, `GDT` a gate-drive transformer: the pins tell."""
+    if hit.words == "gdt" and count >= 4:
+        return Hit("gate-drive-transformer", hit.rank, hit.words, hit.at, hit.attributes)
     if hit.words == "isolator" and 0 < count <= 6:
         return Hit("optocoupler", hit.rank, hit.words, hit.at, hit.attributes)
     return hit
@@ -233,7 +235,7 @@ def _allowed(hit: Hit, place: str, letters: str, count: int, agrees: bool) -> bo
         return False
     if letters in ("C", "CX", "CY", "CE") and 0 < count <= 2 and hit.kind != "capacitor":
         return False
-    if hit.kind == "capacitor" and count > 3:
+    if hit.kind in _TWO_ENDED and count > 3:
         return False
     if hit.rank == 1 and letters in CLASSES and not agrees and place != "symbol":
         return False
@@ -247,6 +249,7 @@ def _allowed(hit: Hit, place: str, letters: str, count: int, agrees: bool) -> bo
 
 # kinds that carry no current between their pins: a wrong one would hide a short, so a sentence alone does not make them
 _OPEN = CONNECTORS | MECHANICAL | {"capacitor", "varistor", "gas-tube", "spark-gap"}
+_TWO_ENDED = frozenset({"capacitor", "varistor", "gas-tube", "spark-gap"})  # a third pin is a case or a middle electrode
 _LARGE_COILS = frozenset({"L"})  # a transformer may be drawn as L1; with four pins the word is believed
 
 

@@ -223,12 +223,26 @@ def _joined(
     nets = members[isle.island(one[0])]
     chain, cut = shorts.between(isle, nets, one, two)
     way = shorts.path(isle, one, two, nets)
-    likely = chain if cut or not chain else _to_open(isle, chain)
+    likely = chain if cut or not chain else _to_open(isle, _freeing(isle, chain))
     facts = tuple(isle.design.parts[ref].fact for ref in likely) + tuple(isle.design.nets[net].fact for net in (one[0], two[0]))
     step = Step(
         f"{reason}, yet direct current flows from {one[0]} to {two[0]} through {_through(way)}", facts, result=" - ".join(way)
     )
     return Short(likely, (), (one[0], two[0]), way, True, step), likely if cut else likely[:1]
+
+
+def _freeing(isle: Islands, chain: Sequence[str]) -> list[str]:
+    """The simple links of a chain that, taken out, let most insulating parts insulate: the bond of a secondary to earth none."""
+    links = [ref for ref in shorts.by_suspicion(isle, chain) if shorts.is_simple(isle, ref)][:CHAIN_WEIGHED]
+    if len(links) < 2 or len(isle.live) > NETS_WEIGHED:
+        return links or list(chain)
+    freed = {}
+    for ref in links:
+        trial = build(isle.design, isle.choice, isle.opened | {ref}, isle.halved)
+        settle_windings(trial)
+        settle_capacitors(trial)
+        freed[ref] = sum(len(trial.part_islands(other)) > 1 for other, part in isle.choice.items() if part.insulating)
+    return [ref for ref in links if freed[ref] == max(freed.values())]
 
 
 def _through(way: Sequence[str]) -> str:
@@ -333,8 +347,15 @@ def _join_alike(isle: Islands, declaration: Declaration) -> None:
     mains = [island for island in evidence.on_mains(gathered) if not gathered[island].is_earth]
     for alike in (mains, [island for island, piece in gathered.items() if piece.is_earth]):
         names = {owner[island] for island in alike if island in owner}
-        for island in alike[1:] if len(names) <= 1 else ():
-            isle.bond(alike[0], island)
+        # the very nets that tell it: where a short joins another circuit to an island, that circuit's nets are not bonded
+        ends = [_telling_net(isle, island, gathered[island]) for island in alike]
+        for end in ends[1:] if len(names) <= 1 else ():
+            isle.bond(ends[0], end)
+
+
+def _telling_net(isle: Islands, island: str, piece: evidence.Evidence) -> str:
+    nets = _seed_nets(isle, island, (piece.earth if piece.is_earth else piece.mains).values())
+    return nets[0] if nets else island
 
 
 def _isolator(design: Design, suspect: unlisted.Unlisted) -> Question:

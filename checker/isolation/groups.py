@@ -30,8 +30,8 @@ def groups(part: Part, candidate: Candidate, across_diode: Callable[[str, str], 
     across_diode(net, net): whether a diode sits between two nets, which marks the coil of a relay without pin names.
     """
     kind = candidate.kind
-    if not part.fitted or kind in OPEN_KINDS:
-        return ()
+    if (not part.fitted and kind != "fuse") or kind in OPEN_KINDS:
+        return ()  # an empty fuse holder keeps nothing apart: a fuse will be put in
     if kind in TRANSFORMERS:
         return _windings(part, candidate) or (halves(part, candidate) if len(part.pins) >= MAGNETICS_PINS else ())
     if kind in HALVED:

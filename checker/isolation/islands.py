@@ -174,8 +174,8 @@ def settle_windings(isle: Islands) -> None:
             if len(nets) % 2 == 0:
                 for one, two in zip(nets[::2], nets[1::2], strict=True):
                     isle.bond(one, two)
-        _settle_lone_ends(isle, ref, ends)
         _settle_fed(isle, ref, ends)
+        _settle_lone_ends(isle, ref, ends)
 
 
 def _settle_fed(isle: Islands, ref: str, ends: list[str]) -> None:
@@ -214,15 +214,27 @@ def in_order(part: Part) -> list[Pin]:
 
 
 def _settle_lone_ends(isle: Islands, ref: str, ends: list[str]) -> None:
-    """A stub that holds one pin of a transformer alone: joined to the island both its neighbours lie on."""
+    """A stub that holds one pin of a transformer alone: joined to the island both its neighbours lie on, or to the only other pin
+    that is alone when that is its neighbour."""
     pins = [pin for pin in in_order(isle.design.parts[ref]) if pin.net in isle.live]
-    homes = [isle.island(pin.net) for pin in pins if pin.net is not None]
+    homes, low = [isle.island(pin.net) for pin in pins if pin.net is not None], _low_half(pins)
     for at, pin in enumerate(pins):
         if pin.net in ends and homes.count(homes[at]) == 1 and len(pins) > 2:
-            beside = {homes[other] for other in (at - 1, at + 1) if 0 <= other < len(pins)}
-            if len(beside) == 1:
-                isle.bond(beside.pop(), pin.net)
+            beside = [other for other in (at - 1, at + 1) if 0 <= other < len(pins)]
+            if len({homes[other] for other in beside}) == 1:
+                nearest = min(beside, key=lambda other: (low[other] != low[at], (other ^ at) != 1))
+                isle.bond(str(pins[nearest].net), pin.net)
                 homes = [isle.island(pin.net) for pin in pins if pin.net is not None]
+    lone = [at for at in range(len(pins)) if homes.count(homes[at]) == 1]
+    whole = all(homes[at] in homes[max(at - 1, 0) : at] + homes[at + 1 : at + 2] for at in range(len(pins)) if at not in lone)
+    if whole and len(lone) == 2 and lone[1] - lone[0] == 1 and len(pins) > 3 and any(pins[at].net in ends for at in lone):
+        isle.bond(str(pins[lone[0]].net), str(pins[lone[1]].net))  # every other pin has its winding beside it: these two are one
+
+
+def _low_half(pins: list[Pin]) -> list[bool]:
+    """Whether each pin lies on the first side of its package; False for all when pins are not numbered."""
+    numbers = [int(pin.number) if pin.number.isdecimal() and pin.number.isascii() else 0 for pin in pins]
+    return [0 < number <= (max(numbers) + 1) // 2 for number in numbers]
 
 
 def _reached(isle: Islands, net: str, island: list[str]) -> tuple[str, ...]:

@@ -269,32 +269,27 @@ def _narrow(isle: Islands, walk: _Walk, ref: str) -> list[Culprit]:
 
 def _parted(isle: Islands, walk: _Walk, node: str, ref: str) -> bool:
     """Whether an insulating part comes apart without a net; a pin on that net belongs to either side."""
-    pins = [f"n:{pin.net}" for pin in isle.design.parts[ref].pins if f"n:{pin.net}" in walk.enter]
+    pins = {f"n:{pin.net}" for pin in isle.design.parts[ref].pins if f"n:{pin.net}" in walk.enter}
     homes = Counter(walk.without(node, pin) for pin in pins if pin != node)
-    own = sum(pin == node for pin in pins)
-    least = 2 - min(own, 1) if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings else 1
+    least = 2 - (node in pins) if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings else 1
     return sum(count >= least for count in homes.values()) > 1
 
 
 def _split(isle: Islands, walk: _Walk, node: str, ref: str) -> Split | None:
     """The nets of an insulating part on the two sides of `node` once it is open, None when that does not separate the part."""
     parts: dict[str, list[str]] = {}
-    pins: Counter[str] = Counter()
-    net_pins = Counter(pin.net for pin in isle.design.parts[ref].pins)
     for side in isle.sides[ref]:
         homes = {walk.without(node, f"n:{net}") for net in side if f"n:{net}" in walk.enter}
         if not homes:
             continue  # this side lies on another island, which the part does insulate
         if len(homes) > 1:
             return None
-        home = homes.pop()
-        parts.setdefault(home, []).extend(side)
-        pins[home] += sum(net_pins[net] for net in side)
+        parts.setdefault(homes.pop(), []).extend(side)
     if len(parts) < 2:
         return None
     if isle.kind(ref) in TRANSFORMERS and not isle.choice[ref].windings:
-        # a winding has two ends: a cut that leaves one pin alone opens a rectifier or a switch, not the barrier
-        parts = {home: nets for home, nets in parts.items() if pins[home] >= 2}
+        # a winding has two ends: a cut that leaves one net alone opens a rectifier or a switch, not the barrier
+        parts = {home: nets for home, nets in parts.items() if len(set(nets)) >= 2}
         if len(parts) < 2:
             return None
     first, *others = parts.values()
@@ -326,7 +321,8 @@ def _flow(isle: Islands, graph: Mapping[str, Sequence[str]]) -> Any:
         capacity = float("inf")
         if node.startswith("p:") and not isle.choice[_ref(node)].insulating and _ref(node) not in isle.halved:
             count = len(neighbours)
-            capacity = 1 if count <= 2 else 2 if count == 3 else 3 if count <= 8 else 10
+            usual = 1 if isle.kind(_ref(node)) in _RANK else 1.5  # of two cuts of one size the one of simple parts
+            capacity = usual if count <= 2 else 2 if count == 3 else 3 if count <= 8 else 10
         flow.add_edge(("in", node), ("out", node), capacity=capacity)
         for other in neighbours:
             flow.add_edge(("out", node), ("in", other), capacity=float("inf"))
@@ -390,7 +386,7 @@ def _cut_windings(isle: Islands, graph: Mapping[str, Sequence[str]], flow: Any, 
             homes: dict[str, list[str]] = {}
             for net in pins:
                 homes.setdefault(trial.island(net), []).append(net)
-            if len(homes) > 1 and all(len(nets) > 1 for nets in homes.values()):
+            if len(homes) > 1 and all(len(set(nets)) > 1 for nets in homes.values()):
                 first, *others = homes.values()
                 split = (tuple(dict.fromkeys(first)), tuple(dict.fromkeys(net for nets in others for net in nets)))
                 return [Culprit(parts, (ref,), (), {parts[0]: {ref: split}}, cut=True)]
