@@ -70,7 +70,8 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
         crossings = across[barrier.between]
         if frozenset(barrier.between) not in spoiled and any(c.listed for c in crossings) and all(c.listed for c in crossings):
             key = (barrier.id,) if barrier.named else barrier.bridged_by
-            place = f"{_listed(barrier.bridged_by)} lie across {barrier.between[0]} and {barrier.between[1]}"
+            lie = "lies" if len(barrier.bridged_by) == 1 else "lie"
+            place = f"{_listed(barrier.bridged_by)} {lie} across {barrier.between[0]} and {barrier.between[1]}"
             because = f"{place}, and direct current finds no way"
             yield clause.passes(
                 Subject(barrier.bridged_by, key=key),
@@ -176,6 +177,9 @@ def _of_connector(analysis: Analysis, clause: Clause, ref: str, hazardous: Domai
         (("the connector insulates between these pins", "pass"), ("an ordinary connector", "fail")),
         ref,
     )
+    if analysis.choice[ref].kind != "test-point" and not analysis.choice[ref].sure:
+        known = Missing("kind", f"parts: {{{ref}: {{kind: ...}}}} in the declaration", _KIND_ANSWERS, ref)
+        return clause.opens(Subject((ref,), key=(ref,)), "A part that may be a connector carries both sides.", because, step, known)
     if analysis.choice[ref].kind == "test-point":
         return clause.opens(Subject((ref,), key=(ref,)), what, because, step, missing, level="note")
     return clause.fails(Subject((ref,), part.nets(), key=(ref,)), what, because, step)

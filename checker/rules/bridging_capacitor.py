@@ -181,47 +181,58 @@ def _of_node(analysis: Analysis, clause: Clause, crossing: Crossing) -> Iterator
     if analysis.grades[(clause.ruleset, "|".join(crossing.between))].grade in ("none", "functional", ""):
         return
     nets = _end_nets(analysis, crossing)
-    switching = [(net, because) for net in nets if (because := _switching(analysis, net))]
     subject = Subject(crossing.chain, nets, key=(*crossing.chain, "node"))
     facts = tuple(analysis.design.nets[net].fact for net in nets)
-    if switching:
-        net, because = switching[0]
-        step = Step(f"{' - '.join(crossing.chain)} hangs on {net}: {because}", (crossing.step, *facts))
-        yield clause.fails(subject, "A capacitor across the barrier hangs on a switching node.", step.text, step, found=Words(net))
-    else:
-        step = Step(
-            f"{' - '.join(crossing.chain)} hangs on {' and '.join(nets)}, no winding is switched or rectified there",
-            (crossing.step, *facts),
-        )
-        yield clause.passes(
-            subject, "The capacitors across the barrier hang on quiet nodes.", step.text, step, found=Words(", ".join(nets))
-        )
+    hangs = f"{' - '.join(crossing.chain)} hangs on"
+    for net in nets:
+        swings = _swings(analysis, net, crossing.chain)
+        if swings is None:
+            continue
+        step = Step(f"{hangs} {net}: {swings.because}", (crossing.step, *facts))
+        if swings.doubt is None:
+            yield clause.fails(
+                subject, "A capacitor across the barrier hangs on a switching node.", step.text, step, found=Words(net)
+            )
+        else:
+            answers = (("a switch or rectifier of the winding", "fail"), ("anything else", "pass"))
+            missing = Missing("kind", f"parts: {{{swings.doubt}: {{kind: ...}}}} in the declaration", answers, swings.doubt)
+            yield clause.opens(subject, "Whether the node of this capacitor is quiet.", step.text, step, missing, found=Words(net))
+        return
+    step = Step(f"{hangs} {' and '.join(nets)}, no winding is switched or rectified there", (crossing.step, *facts))
+    what = "The capacitors across the barrier hang on quiet nodes."
+    yield clause.passes(subject, what, step.text, step, found=Words(", ".join(nets)))
 
 
-def _switching(analysis: Analysis, net: str) -> str:
-    """Why a net swings with the converter: a winding and a switch or rectifier meet there and nothing holds it; "" when it
-    does not."""
-    refs = dict.fromkeys(
-        ref for ref, _ in analysis.design.nets[net].pins if ref in analysis.choice and analysis.design.parts[ref].fitted
-    )
-    windings = [ref for ref in refs if analysis.kind(ref) in ("transformer", "gate-drive-transformer", "inductor")]
-    movers = [ref for ref in refs if analysis.kind(ref) in ("mosfet", "igbt", "bipolar", "diode", "controller", "regulator")]
-    if not windings or not movers:
-        return ""
-    for ref in refs:
-        value = analysis.choice[ref].value
-        if analysis.kind(ref) == "capacitor" and value is not None and float(value.value) >= BULK:
-            return ""
-        if analysis.kind(ref) in ("connector", "inlet", "bridge", "fuse"):
-            return ""
-    if _is_return(analysis, refs, net):
-        return ""
-    return f"winding of {windings[0]} and {movers[0]} meet there"
+@dataclass(frozen=True, slots=True)
+class _Swings:
+    """Why a net swings with the converter. doubt: the part whose unknown kind or value leaves it open, None when it is sure."""
+
+    because: str
+    doubt: str | None = None
 
 
-def _is_return(analysis: Analysis, refs: dict[str, None], net: str) -> bool:
-    """A reference conductor: many parts hang on it, a switch only with its source or emitter."""
-    return len(refs) >= 8
+_MOVERS = frozenset({"mosfet", "igbt", "bipolar", "diode", "controller", "regulator"})
+_PERHAPS = frozenset({"unknown", "ic", "module"})
+_HOLDERS = frozenset({"connector", "inlet", "bridge", "fuse"})
+CROWDED = 8  # parts on a net from which on it is a reference conductor, not a switching node (common practice, no source)
+
+
+def _swings(analysis: Analysis, net: str, chain: tuple[str, ...]) -> _Swings | None:
+    """A winding and a switch or rectifier meet on the net and nothing beside the chain holds it; None when that is not so."""
+    found = dict.fromkeys(ref for ref, _ in analysis.design.nets[net].pins if ref in analysis.choice and ref not in chain)
+    refs = [ref for ref in found if analysis.design.parts[ref].fitted]
+    kinds = {ref: analysis.kind(ref) for ref in refs}
+    winding = next((ref for ref, kind in kinds.items() if kind in ("transformer", "gate-drive-transformer", "inductor")), None)
+    mover = next((ref for ref, kind in kinds.items() if kind in _MOVERS), None)
+    perhaps = next((ref for ref, kind in kinds.items() if kind in _PERHAPS), None)
+    if winding is None or (mover or perhaps) is None or len(refs) >= CROWDED or _HOLDERS & set(kinds.values()):
+        return None
+    values = {ref: analysis.choice[ref].value for ref, kind in kinds.items() if kind == "capacitor"}
+    if any(value is not None and float(value.value) >= BULK for value in values.values()):
+        return None
+    unread = next((ref for ref, value in values.items() if value is None), None)
+    because = f"winding of {winding} and {mover or perhaps} meet there"
+    return _Swings(because, unread if mover else perhaps)
 
 
 RULE = Rule("bridging-capacitor", "shock", Params, ask, __doc__ or "")
