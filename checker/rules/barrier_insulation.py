@@ -104,8 +104,10 @@ def _of_short(analysis: Analysis, clause: Clause, short: Short) -> Verdict:
         (("yes, two circuits are declared", "fail"), ("no", "not-applicable")),
         short.parts[0],
     )
+    joining = tuple(ref for ref in short.chain if analysis.kind(ref) in _JOINING)
+    subject = Subject((*short.parts, *joining), short.nets, key=tuple(sorted(short.parts)))
     return clause.opens(
-        Subject(short.parts, short.nets, key=tuple(sorted(short.parts))), "An insulating part has both sides in one circuit.",
+        subject, "An insulating part has both sides in one circuit.",
         short.step.text, short.step, missing, level="note",
     )  # fmt: skip
 
@@ -130,6 +132,7 @@ def _of_ordinary(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verd
     return clause.fails(Subject((ref,), nets, key=(ref,)), what, because, crossing.step, found=Words(candidate.kind))
 
 
+_JOINING = frozenset({"resistor", "jumper", "net-tie", "ferrite", "inductor", "capacitor"})
 _KIND_ANSWERS = (("an insulating kind such as digital-isolator", "pass"), ("an ordinary kind", "fail"))
 
 
