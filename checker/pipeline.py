@@ -8,7 +8,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from itertools import permutations
 
-from checker import plugins
+from checker import parameters, plugins
 from checker.assemble.join import assemble
 from checker.errors import WithstandError
 from checker.identify.candidates import identify
@@ -20,14 +20,17 @@ from checker.model.clause import Clause, Subject
 from checker.model.declaration import Declaration
 from checker.model.reading import Reading
 from checker.model.report import Report
-from checker.model.requirement import Grade
-from checker.model.rule import Analysis
+from checker.model.requirement import Basis, Grade, Need
+from checker.model.rule import Analysis, Board
 from checker.model.ruleset import Ruleset
 from checker.model.step import Step
+from checker.model.table import Table
 from checker.model.verdict import OUTCOMES, Missing, Verdict
 from checker.reporting import fingerprint, report
 from checker.requirements.grade import TABLE, needed
+from checker.requirements.needs import needs
 from checker.stress.sources import setting
+from checker.stress.voltages import stressed
 
 
 @dataclass(frozen=True, slots=True)
@@ -78,11 +81,29 @@ def analyse(
     """The stages between identity and rules for one choice of candidates."""
     isolation = isolate(design, choice, declaration)
     set_up = setting(declaration, isolation)
+    board = Board(design, declaration, identity, choice, isolation, set_up)
+    stress = stressed(board)
     grades: dict[tuple[str, str], Grade] = {}
+    asked: dict[tuple[str, str, str], Need] = {}
     for ruleset in rulesets:
         found = needed(isolation.separations, isolation.domains, declaration, set_up, ruleset.tables.get(TABLE))
         grades.update({(ruleset.id, separation): grade for separation, grade in found.items()})
-    return Analysis(design, declaration, identity, choice, isolation, set_up, grades)
+        asked.update(needs(board, stress, grades, basis(ruleset)))
+    return Analysis(design, declaration, identity, choice, isolation, set_up, grades, stress, asked)
+
+
+def basis(ruleset: Ruleset) -> Basis:
+    """What the clauses of a ruleset give the requirement stage: their parameters by `rule.parameter`, tables as tables."""
+    tables: dict[str, Table] = {}
+    figures: dict[str, object] = {}
+    for clause in ruleset.clauses:
+        named = parameters.tables_in(clause.params)
+        for name in parameters.types_of(type(clause.params)):
+            if name in named:
+                tables.setdefault(f"{clause.rule}.{name}", ruleset.tables[named[name]])
+            else:
+                figures.setdefault(f"{clause.rule}.{name}", getattr(clause.params, name))
+    return Basis(ruleset.id, tables, figures)
 
 
 def verdicts(analysis: Analysis, rulesets: Sequence[Ruleset], raised: list[str]) -> Iterator[Verdict]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from checker.model.candidate import Candidate, Identity
 from checker.model.circuit import Design
@@ -12,8 +12,11 @@ from checker.model.condition import NORMAL, Condition
 from checker.model.declaration import Declaration, Range, Supply
 from checker.model.domain import Isolation
 from checker.model.fact import Fact
-from checker.model.requirement import Grade
+from checker.model.requirement import Grade, Need
+from checker.model.stress import Stress
 from checker.model.verdict import Verdict
+
+LINK = 1.0  # ohm; a resistor below this in the line is a link or a shunt, not a load (common practice, no source)
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,6 +33,7 @@ class Setting:
     """The supply and surroundings the run judges under: declared values, else assumed ones (each then in `assumptions`).
 
     mains: the supply of kind mains, None when there is none. protection_class "" while nothing tells it.
+    environment: pollution_degree, altitude, material_group, and ambient when declared; a fact that was assumed has no place.
     """
 
     mains: Supply | None
@@ -38,14 +42,24 @@ class Setting:
     rated: Range | None  # rated mains voltage, V r.m.s.
     assumptions: tuple[Assumption, ...]
     facts: tuple[Fact, ...] = ()
+    environment: Mapping[str, Fact] = field(default_factory=dict)
+
+    def mains_voltage(self, tolerance: bool) -> float | None:
+        """The highest mains voltage, V r.m.s.: the rated one, or with its tolerance; None without mains."""
+        if self.mains is None:
+            return None
+        high = self.mains.voltage.high
+        return high * (1 + self.mains.tolerance.high / 100) if tolerance and self.mains.tolerance is not None else high
+
+    @property
+    def mains_frequency(self) -> float:
+        """The highest mains frequency, Hz; 60 when nothing tells it."""
+        return self.mains.frequency.high if self.mains is not None and self.mains.frequency is not None else 60.0
 
 
 @dataclass(frozen=True, slots=True)
-class Analysis:
-    """All stages' results for one design under one condition; the only thing a rule sees.
-
-    choice: reference -> the candidate under judgement, one per part. grades: (ruleset id, separation id) -> needed grade.
-    """
+class Board:
+    """The stages' results up to the setting, for one choice of candidates. choice: reference -> the candidate under judgement."""
 
     design: Design
     declaration: Declaration
@@ -53,12 +67,33 @@ class Analysis:
     choice: Mapping[str, Candidate]
     isolation: Isolation
     setting: Setting
-    grades: Mapping[tuple[str, str], Grade]
-    condition: Condition = NORMAL
 
     def kind(self, ref: str) -> str:
         """The kind of the candidate under judgement."""
         return self.choice[ref].kind
+
+    def is_link(self, ref: str) -> bool:
+        """Whether a part is a resistor so small that it carries the line on: a link or a current shunt."""
+        value = self.choice[ref].value
+        return self.kind(ref) == "resistor" and value is not None and isinstance(value.value, float) and value.value < LINK
+
+    def fitted_on(self, net: str) -> tuple[str, ...]:
+        """The fitted parts with a pin on that net, each once, in file order."""
+        parts = self.design.parts
+        return tuple(dict.fromkeys(ref for ref, _ in self.design.nets[net].pins if ref in self.choice and parts[ref].fitted))
+
+
+@dataclass(frozen=True, slots=True)
+class Analysis(Board):
+    """All stages' results for one design under one condition; the only thing a rule sees.
+
+    grades: (ruleset id, separation id) -> needed grade. needs: (ruleset id, separation id, "" or the part on its own pins).
+    """
+
+    grades: Mapping[tuple[str, str], Grade] = field(default_factory=dict)
+    stress: Stress = field(default_factory=Stress)
+    needs: Mapping[tuple[str, str, str], Need] = field(default_factory=dict)
+    condition: Condition = NORMAL
 
 
 @dataclass(frozen=True, slots=True)

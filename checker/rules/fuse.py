@@ -18,12 +18,12 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from checker.model.clause import Clause, Subject
+from checker.model.entry import Entry
 from checker.model.fact import Fact
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Verdict, Words
 from checker.rules.fuse_path import Before, toward_fuse
-from checker.rules.supply_entry import Entry, entries
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,7 +35,7 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict per supply entry of the mains side."""
     if analysis.setting.mains is None or not any(domain.hazard == "mains" for domain in analysis.isolation.domains.values()):
         return
-    found = entries(analysis)
+    found = analysis.stress.entries
     if not found:
         yield _no_entry(analysis, clause)
     reached = {ref: {pole: toward_fuse(analysis, pole) for pole in entry.poles} for ref, entry in found.items()}

@@ -5,7 +5,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from checker.model.rule import Analysis
-from checker.rules.supply_entry import is_link
 
 # carried past on the way to the fuse: still the same conductor
 _ON_THE_WAY = frozenset(
@@ -57,7 +56,7 @@ def toward_fuse(analysis: Analysis, pole: str) -> Before:
                 capacitors[ref] = None
             elif kind in ("connector", "inlet", "test-point"):
                 continue
-            elif kind == "resistor" and not is_link(analysis, ref):
+            elif kind == "resistor" and not analysis.is_link(ref):
                 resistors[ref] = None
             elif kind in _ON_THE_WAY or kind in ("resettable-fuse", "resistor"):
                 passed[ref] = None

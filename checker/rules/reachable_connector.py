@@ -25,7 +25,6 @@ from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Number, Verdict, Words
 from checker.parameters import AtMost
-from checker.rules.supply_entry import entries, is_wiring, line_nets
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,8 +38,8 @@ class Params:
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict per connector that carries a net of known hazard or voltage."""
-    supply_entries = {*entries(analysis, "mains"), *entries(analysis, "dc")}
-    lines = line_nets(analysis)
+    supply_entries = {*analysis.stress.entries, *analysis.stress.direct_entries}
+    lines = analysis.stress.lines
     outputs = {output.net: output for output in analysis.declaration.outputs}
     for ref, candidate in analysis.choice.items():
         if candidate.kind not in ("connector", "inlet") or not analysis.design.parts[ref].fitted:
@@ -80,7 +79,7 @@ def _of_hazard(analysis: Analysis, clause: Clause, ref: str, nets: tuple[str, ..
         (("no user can reach it", "pass"), ("a user can", "fail")),
         ref,
     )
-    if is_wiring(analysis, ref, lines) if domain.hazard == "mains" else not _meets_signals(analysis, nets):
+    if _is_wiring(analysis, ref, lines) if domain.hazard == "mains" else not _meets_signals(analysis, nets):
         what = "Supply wiring leaves the board at a connector that is not the supply entry."
         return clause.opens(subject, what, step.text, step, missing)
     if not analysis.choice[ref].sure:
@@ -118,6 +117,15 @@ def _of_rail(analysis: Analysis, clause: Clause, ref: str, output: Output) -> Ve
         surely=Number(voltage.low, "V", form), never_above=Number(voltage.high, "V", form), limit=Number(limit, "V", form),
         missing=Missing("the highest voltage of this output", "outputs in the declaration, as a single figure", (), ref),
     )  # fmt: skip
+
+
+def _is_wiring(analysis: Analysis, ref: str, lines: frozenset[str]) -> bool:
+    """Whether every mains net of a connector is a line conductor: an outlet or a load terminal, not a signal."""
+    isolation = analysis.isolation
+    for net in analysis.design.parts[ref].nets():
+        if net in isolation.domain_of and isolation.domains[isolation.domain_of[net]].hazard == "mains" and net not in lines:
+            return False
+    return True
 
 
 RULE = Rule("reachable-connector", "shock", Params, ask, __doc__ or "")

@@ -17,7 +17,11 @@ _MAINS_DEFAULTS: tuple[tuple[str, Range | str | int, str], ...] = (
     ("overvoltage_category", "II", "II"),
     ("connection", "pluggable-A", "pluggable-A"),
 )
-_SURROUNDINGS = (("pollution_degree", "2"), ("altitude", "2000 m"), ("material_group", "IIIb"))
+_SURROUNDINGS = (
+    (Fact("pollution_degree", "2"), "2"),
+    (Fact("altitude", 2000.0, unit="m"), "2000 m"),
+    (Fact("material_group", "IIIb"), "IIIb"),
+)
 
 
 def setting(declaration: Declaration, isolation: Isolation) -> Setting:
@@ -38,12 +42,13 @@ def setting(declaration: Declaration, isolation: Isolation) -> Setting:
             f"a protective earth conductor is connected ({earth.name})" if earth else "no protective earth conductor is connected"
         )
         assumed.append(Assumption("supply.protection_class", protection, because))
-    if completed:
-        for key, value in _SURROUNDINGS:
-            if key not in declaration.environment:
-                assumed.append(Assumption(f"environment.{key}", value, "not declared; the usual value for equipment used indoors"))
+    environment = dict(declaration.environment)
+    for fact, text in _SURROUNDINGS:
+        if environment.setdefault(fact.attribute, fact) is fact and completed:
+            because = "not declared; the usual value for equipment used indoors"
+            assumed.append(Assumption(f"environment.{fact.attribute}", text, because))
     facts = tuple(Fact("supply", supply.kind, supply.source) for supply in declaration.supplies)
-    return Setting(mains, tuple(completed), protection, mains.voltage if mains else None, tuple(assumed), facts)
+    return Setting(mains, tuple(completed), protection, mains.voltage if mains else None, tuple(assumed), facts, environment)
 
 
 def _complete(supply: Supply, assumed: list[Assumption]) -> Supply:

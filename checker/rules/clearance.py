@@ -1,0 +1,23 @@
+"""Is the clearance of each part across a barrier enough on its own pins?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from checker.model.clause import Clause
+from checker.model.rule import Analysis, Rule
+from checker.model.verdict import Verdict
+
+
+@dataclass(frozen=True, slots=True)
+class Params:
+    """No parameters yet."""
+
+
+def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
+    """Nothing yet."""
+    yield from ()
+
+
+RULE = Rule("clearance", "shock", Params, ask, __doc__ or "")

@@ -1,0 +1,23 @@
+"""Is the fuse made for this supply: voltage, kind, breaking capacity, current?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from checker.model.clause import Clause
+from checker.model.rule import Analysis, Rule
+from checker.model.verdict import Verdict
+
+
+@dataclass(frozen=True, slots=True)
+class Params:
+    """No parameters yet."""
+
+
+def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
+    """Nothing yet."""
+    yield from ()
+
+
+RULE = Rule("fuse-rating", "fire", Params, ask, __doc__ or "")

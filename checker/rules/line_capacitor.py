@@ -1,0 +1,23 @@
+"""Are the capacitors across the line of the right class and voltage, and in the right place?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from checker.model.clause import Clause
+from checker.model.rule import Analysis, Rule
+from checker.model.verdict import Verdict
+
+
+@dataclass(frozen=True, slots=True)
+class Params:
+    """No parameters yet."""
+
+
+def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
+    """Nothing yet."""
+    yield from ()
+
+
+RULE = Rule("line-capacitor", "fire", Params, ask, __doc__ or "")
