@@ -48,10 +48,26 @@ class Missing:
 
 
 @dataclass(frozen=True, slots=True)
+class Change:
+    """One attribute of one part set anew. attribute: "value", "mark", or a rating such as "rating:voltage".
+
+    value: SI figure in `unit` with `form`, or the text of a mark.
+    """
+
+    ref: str
+    attribute: str
+    value: float | str
+    unit: str = ""
+    form: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class Remedy:
-    """A change that was tried: text for a person, and the part facts or parts the engine re-ran the rules with."""
+    """A change that mends a fail. text: for a person, which part to which value. It is printed only after the rules were run
+    again with `changes`, this verdict passed and no other got worse."""
 
     text: str
+    changes: tuple[Change, ...]
 
 
 @dataclass(frozen=True, slots=True)
