@@ -1,17 +1,113 @@
-"""Voltages between nets, across parts and across barriers, as bounds with their derivation."""
+"""The stress stage: voltages between nets, across parts and across barriers, as bounds with their derivation.
+
+Order: line conductors and their poles; conductors for direct voltage; what the rectifiers make of the line; what fixes a
+direct voltage; how far everything else can be pulled; and, between two circuits, what insulation sees.
+"""
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
+from checker.formulas.waveform import plus
 from checker.model.rule import Board
+from checker.model.step import Step
 from checker.model.stress import Stress
+from checker.stress.across import Across
+from checker.stress.between import Voltages
+from checker.stress.buses import buses
+from checker.stress.conductors import conductors
 from checker.stress.entries import carried, entries
+from checker.stress.lines import pole_potentials, poles
+from checker.stress.potential import Potential
+from checker.stress.pulls import Pulls, pulls
+from checker.stress.rails import Rail, grounds, rails
+from checker.stress.spread import spread
+from checker.stress.strings import String, strings
 
 
 def stressed(board: Board) -> Stress:
     """Everything the stress stage finds."""
     mains = entries(board, "mains")
+    on_pole = poles(board, mains.values())
+    same = conductors(board, on_pole)
+    strung = strings(board)
+    edges = pulls(board, same, strung)
+    references = grounds(board)
+    fixed = sorted(rails(board, references), key=lambda rail: -rail.trust)
+
+    def voltages(tolerance: bool) -> Voltages:
+        line = pole_potentials(board, mains.values(), tolerance)
+        return _voltages(board, line, same, strung, edges, references, fixed)
+
+    between = voltages(tolerance=True)
+    rated = voltages(tolerance=False) if mains else between
+    earths = {name: [net] for name, net in references.items()}
+    for entry in mains.values():
+        earths[board.isolation.domain_of[entry.poles[0]]] = list(entry.poles)
+    for rail in fixed:
+        name = board.isolation.domain_of.get(rail.net)
+        if name is not None and board.isolation.domains[name].hazard != "mains" and rail.trust > 1:
+            earths.setdefault(name, []).append(rail.net)
+    across = Across(board, rated, earths, board.setting.mains_frequency if mains else 0.0)
+    parts = dict(across.parts())
+    barriers = {
+        separation.id: voltage
+        for separation in board.isolation.separations
+        if (voltage := across.barrier(separation, parts)) is not None
+    }
     return Stress(
         entries=mains,
         direct_entries=entries(board, "dc"),
         lines=carried(board, mains.values()),
+        poles=on_pole,
+        between=between.between,
+        rated=rated.between,
+        sign=between.sign,
+        across=parts,
+        barriers=barriers,
     )
+
+
+def _voltages(
+    board: Board,
+    line: Mapping[str, Potential],
+    same: Mapping[str, str],
+    strung: Mapping[str, String],
+    edges: Pulls,
+    references: Mapping[str, str],
+    fixed: list[Rail],
+) -> Voltages:
+    sources = dict(line)
+    sources.update(buses(board, same, line))
+    for name, net in references.items():
+        step = Step(f"{net} is the reference of {name}", (board.design.nets[net].fact,))
+        sources.setdefault(same.get(net, net), Potential(name, 0.0, 0.0, step, held=True))
+    _fix(sources, fixed, same)
+
+    def frame_of(net: str) -> str | None:
+        return board.isolation.domain_of.get(net)
+
+    found = spread(sources, line, edges, frame_of)
+    return Voltages(board, found, same, strung, board.setting.mains_frequency)
+
+
+def _fix(sources: dict[str, Potential], fixed: list[Rail], same: Mapping[str, str]) -> None:
+    """Adds the potential of each rail whose one end is known, the most trusted first, until nothing more follows."""
+    waiting = fixed
+    while waiting:
+        left = []
+        for rail in waiting:
+            net, back = same.get(rail.net, rail.net), same.get(rail.back, rail.back)
+            if net in sources and back in sources:
+                continue
+            if back in sources:
+                base = sources[back]
+                sources[net] = Potential(base.frame, plus(base.low, rail.low), plus(base.high, rail.high), rail.step, held=True)
+            elif net in sources:
+                base = sources[net]
+                sources[back] = Potential(base.frame, plus(base.low, -rail.high), plus(base.high, -rail.low), rail.step, held=True)
+            else:
+                left.append(rail)
+        if len(left) == len(waiting):
+            return
+        waiting = left

@@ -1,0 +1,55 @@
+"""Which net hangs on which terminal of a part, by the names of its pins; None where the names do not tell."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+from checker.model.circuit import Part
+
+ANODE = frozenset({"A", "ANODE", "AN", "A1"})
+CATHODE = frozenset({"K", "C", "CATHODE", "CA", "KATHODE"})
+_PLUS = frozenset({"+", "V+", "DC+", "POS", "P", "+VE", "VDC+"})
+_MINUS = frozenset({"-", "V-", "DC-", "NEG", "-VE", "VDC-"})
+_ALTERNATING = frozenset({"~", "AC", "AC1", "AC2", "~1", "~2", "A1", "A2", "AC~", "~A", "~B", "1AC", "2AC"})
+GROUND = frozenset("GND VSS AGND PGND DGND SGND COM GROUND V- VEE EP EPAD GND1 GND2 VSSA".split())
+SUPPLY = frozenset("VCC VDD VIN VI VDDA AVDD DVDD VS V+ VCC1 VCC2 VDD1 VDD2 VBAT BP BPP BP/M VDDIO AVCC IN VAUX".split())
+
+
+def named(part: Part, names: Iterable[str]) -> tuple[str, ...]:
+    """The nets of pins with one of these names (upper case), each once, in pin order."""
+    wanted = frozenset(names)
+    return tuple(dict.fromkeys(pin.net for pin in part.pins if pin.net is not None and pin.name.strip().upper() in wanted))
+
+
+def anode_and_cathode(part: Part) -> tuple[str, str] | None:
+    """(net of the anode, net of the cathode) of a part with one of each."""
+    anodes, cathodes = named(part, ANODE), named(part, CATHODE)
+    if not anodes and not cathodes:  # some symbols number the pins A and K
+        numbers = {pin.number.upper(): pin.net for pin in part.pins if pin.net is not None}
+        anodes = tuple(net for number, net in numbers.items() if number in ANODE)
+        cathodes = tuple(net for number, net in numbers.items() if number in CATHODE)
+    return (anodes[0], cathodes[0]) if len(anodes) == 1 and len(cathodes) == 1 and anodes != cathodes else None
+
+
+def bridge(part: Part) -> tuple[str, str, tuple[str, ...]] | None:
+    """(net of +, net of -, nets of the a.c. pins) of a rectifier bridge."""
+    plus, minus = named(part, _PLUS), named(part, _MINUS)
+    if len(plus) != 1 or len(minus) != 1:
+        return None
+    alternating = named(part, _ALTERNATING) or tuple(net for net in part.nets() if net not in (plus[0], minus[0]))
+    return (plus[0], minus[0], alternating) if alternating else None
+
+
+def coupler(part: Part) -> tuple[str, str, str, str] | None:
+    """(anode, cathode, collector, emitter) nets of a coupler with a transistor output; by the numbers 1 2 4 3 of a body with
+    four pins where names say nothing (from memory; every maker numbers it so)."""
+    light = named(part, ANODE), named(part, CATHODE - {"C"})
+    output = named(part, ("C", "COL", "COLLECTOR")), named(part, ("E", "EM", "EMITTER"))
+    if all(len(nets) == 1 for nets in (*light, *output)):
+        return light[0][0], light[1][0], output[0][0], output[1][0]
+    at = {pin.number: pin.net for pin in part.pins}
+    if set(at) == {"1", "2", "3", "4"} and not any((*light, *output)):
+        anode, cathode, emitter, collector = at["1"], at["2"], at["3"], at["4"]
+        if anode and cathode and emitter and collector:
+            return anode, cathode, collector, emitter
+    return None

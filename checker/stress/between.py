@@ -1,0 +1,152 @@
+"""The voltage between two nets, out of their potentials."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+
+from checker.formulas.waveform import Wave, bottom, higher, largest, least, lower, mean, minus, plus, rms, times, top
+from checker.model.rule import Board
+from checker.model.step import Step
+from checker.model.stress import Bounds, Voltage
+from checker.stress.potential import Potential
+from checker.stress.spread import Field
+from checker.stress.strings import String, facts
+
+NONE = 0.5  # V; what is surely less than this is no voltage worth telling
+
+
+class Voltages:
+    """Answers `voltage between two nets` for one choice of supply voltage; answers are kept."""
+
+    def __init__(self, board: Board, found: Field, same: Mapping[str, str], strung: Mapping[str, String], frequency: float):
+        self._board, self._found, self._same, self._frequency = board, found, same, frequency
+        self._strings = {net: string for string in strung.values() for net in string.nets[1:-1]}
+        self._ends: dict[tuple[str, str], String] = {}
+        for string in strung.values():
+            for one, other in zip(string.nets, string.nets[1:], strict=False):
+                self._ends[one, other] = self._ends[other, one] = string
+        self._known: dict[tuple[str, str], Voltage | None] = {}
+
+    def between(self, one: str, other: str) -> Voltage | None:
+        """The voltage between two nets, None when nothing bounds it and nothing of it is sure."""
+        key = (one, other) if one <= other else (other, one)
+        if key not in self._known:
+            self._known[key] = self._voltage(*key)
+        return self._known[key]
+
+    def sign(self, one: str, other: str) -> int:
+        """1 when `one` is surely above `other` all the cycle, -1 when surely below, 0 when that is not known."""
+        a, b = self.potential(one, usual=True), self.potential(other, usual=True)
+        if a is None or b is None or a.frame != b.frame:
+            return 0
+        if bottom(minus(a.low, b.high)) > NONE:
+            return 1
+        return -1 if bottom(minus(b.low, a.high)) > NONE else 0
+
+    def potential(self, net: str, usual: bool) -> Potential | None:
+        """The potential of a net; inside a resistor string by its share of the voltage between the ends."""
+        known = self._found.usual if usual else self._found.sure
+        string = self._strings.get(net)
+        if string is None:
+            return known.get(self._same.get(net, net))
+        ends = [known.get(self._same.get(end, end)) for end in (string.nets[0], string.nets[-1])]
+        if ends[0] is None or ends[1] is None or ends[0].frame != ends[1].frame:
+            return None
+        shares = string.share(0, string.nets.index(net))
+        low = lower(*(_at(ends[0].low, ends[1].low, share) for share in shares))
+        high = higher(*(_at(ends[0].high, ends[1].high, share) for share in shares))
+        step = Step(f"{net} divides the voltage between {string.nets[0]} and {string.nets[-1]}", (ends[0].step, ends[1].step))
+        return Potential(ends[0].frame, low, high, step)
+
+    def _voltage(self, one: str, other: str) -> Voltage | None:
+        string = self._ends.get((one, other)) or self._strings.get(one) or self._strings.get(other)
+        if string is not None and one in string.nets and other in string.nets:
+            whole = self._of_ends(string)
+            return None if whole is None else self._shared(string, one, other, whole)
+        return self._of_potentials(one, other)
+
+    def _of_ends(self, string: String) -> Voltage | None:
+        return self._of_potentials(string.nets[0], string.nets[-1])
+
+    def _shared(self, string: String, one: str, other: str, whole: Voltage) -> Voltage:
+        low, high = string.share(string.nets.index(one), string.nets.index(other))
+        if (low, high) == (1.0, 1.0):
+            return whole
+        first, last = sorted((string.nets.index(one), string.nets.index(other)))
+        refs = ", ".join(string.members[first:last])
+
+        def scaled(bounds: Bounds) -> Bounds:
+            most = None if bounds.never_above is None else bounds.never_above * high
+            step = Step(
+                f"{refs} of the string {' - '.join(string.members)} takes {100 * low:.3g} to {100 * high:.3g} % of it, by values "
+                f"and tolerances", (bounds.step, *facts(self._board, string)), formula="U x R / (R + rest)",
+                result=most, unit="V", form=bounds.form,
+            )  # fmt: skip
+            return Bounds(bounds.surely * low, most, step, form=bounds.form)
+
+        return Voltage(scaled(whole.rms), scaled(whole.peak), whole.shape, whole.frequency)
+
+    def _of_potentials(self, one: str, other: str) -> Voltage | None:
+        soft = self.potential(one, usual=True), self.potential(other, usual=True)
+        if soft[0] is None or soft[1] is None or soft[0].frame != soft[1].frame:
+            return None
+        hard = self.potential(one, usual=False), self.potential(other, usual=False)
+        sure = minus(soft[0].low, soft[1].high), minus(soft[0].high, soft[1].low)
+        never = (-math.inf, math.inf) if hard[0] is None or hard[1] is None else _decisive(hard[0], hard[1], sure)
+        return voltage(f"between {one} and {other}", never, sure, (soft[0].step, soft[1].step), self._frequency)
+
+
+def _decisive(one: Potential, other: Potential, sure: tuple[Wave, Wave]) -> tuple[Wave, Wave]:
+    """The interval that the difference of two potentials never leaves.
+
+    Where physics bounds it one way only, the other way is taken as in normal use, so long as that is not what decides its
+    size: a start-up string sees at most the bus, whatever its far end is rated for. Otherwise ratings would prove themselves.
+    """
+    low, high = minus(one.low, other.high), minus(one.high, other.low)
+    if math.isinf(bottom(low)) and math.isfinite(top(high)) and -bottom(sure[0]) <= top(high):
+        return sure[0], high
+    if math.isinf(top(high)) and math.isfinite(bottom(low)) and top(sure[1]) <= -bottom(low):
+        return low, sure[1]
+    return low, high
+
+
+def _at(one: Wave, other: Wave, share: float) -> Wave:
+    """The point at `share` of the way from `one` to `other`."""
+    return one if share <= 0 else other if share >= 1 else plus(times(one, 1 - share), times(other, share))
+
+
+def voltage(
+    what: str, upper: tuple[Wave, Wave], sure: tuple[Wave, Wave], steps: tuple[Step, ...], frequency: float
+) -> Voltage | None:
+    """A Voltage from the interval that a difference never leaves and the one it has in normal use, lower and upper wave each.
+
+    None when nothing bounds it and nothing of it is sure.
+    """
+    most, surely = largest(*upper), least(*sure)
+    bounded = math.isfinite(top(most))
+    if not bounded and top(surely) < NONE:
+        return None
+    shape = _shape(upper if bounded else sure)
+    figures = {"peak": (top(surely) + 0.0, top(most) + 0.0), "rms": (rms(surely), rms(most) if bounded else math.inf)}
+    made = {}
+    for name, (least_of, most_of) in figures.items():
+        form = "dc" if shape == "dc" else name
+        highest = most_of if bounded else None
+        text = f"the voltage {what} is at most {most_of:.4g} V" if bounded else f"nothing bounds the voltage {what}"
+        if least_of >= NONE:
+            text += f", surely {least_of:.4g} V"
+        step = Step(f"{text} ({'direct' if form == 'dc' else name})", steps, result=highest, unit="V", form=form)
+        made[name] = Bounds(least_of, highest, step, form=form)
+    return Voltage(made["rms"], made["peak"], shape, 0.0 if shape == "dc" else frequency)
+
+
+def _shape(band: tuple[Wave, Wave]) -> str:
+    low, high = band
+    if isinstance(low, float) and isinstance(high, float):
+        return "dc"
+    spread = max(abs(top(high)), abs(bottom(low)))
+    if max(top(high) - bottom(high), top(low) - bottom(low)) <= 0.02 * spread:
+        return "dc"
+    middle = (mean(low) + mean(high)) / 2
+    return "ac" if math.isfinite(middle) and abs(middle) < 0.02 * spread and bottom(low) < 0 < top(high) else "mixed"

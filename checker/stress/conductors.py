@@ -1,0 +1,76 @@
+"""Nets that are one conductor for direct voltage: joined by fuses, links, ferrites, limiters and filter chokes."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Mapping
+
+from checker.model.rule import Board
+from checker.stress.potential import SMOOTHING
+
+_JOINS = frozenset({"fuse", "resettable-fuse", "jumper", "net-tie", "ferrite", "thermistor"})
+
+
+def conductors(board: Board, poles: Mapping[str, str]) -> dict[str, str]:
+    """Net -> representative of its conductor, for every net that is not alone; a line conductor's is its pole."""
+    held = _held(board)
+    pairs = [*poles.items(), *_joined(board, held)]
+    return _united(pairs, dict.fromkeys(poles.values()))
+
+
+def _joined(board: Board, held: frozenset[str]) -> Iterator[tuple[str, str]]:
+    for ref, candidate in board.choice.items():
+        part = board.design.parts[ref]
+        if not part.fitted:
+            continue
+        nets = part.nets()
+        if candidate.kind in ("inductor", "common-mode-choke"):
+            for one, other in _windings(board, ref):
+                if one in held and other in held:
+                    yield one, other
+        elif len(nets) == 2 and (candidate.kind in _JOINS or board.is_link(ref)):
+            yield nets[0], nets[1]
+
+
+def _windings(board: Board, ref: str) -> Iterator[tuple[str, str]]:
+    """The nets at the two ends of each winding of an inductor; a choke of one winding needs no statement."""
+    part = board.design.parts[ref]
+    at = {pin.number: pin.net for pin in part.pins if pin.net is not None}
+    for winding in board.choice[ref].windings:
+        one, other = at.get(winding.pins[0]), at.get(winding.pins[-1])
+        if one is not None and other is not None and one != other:
+            yield one, other
+    if not board.choice[ref].windings and len(part.nets()) == 2:
+        yield part.nets()[0], part.nets()[1]
+
+
+def _held(board: Board) -> frozenset[str]:
+    """Nets with a smoothing capacitor: a choke between two of them carries direct current and drops none of its voltage."""
+    found: set[str] = set()
+    for ref, candidate in board.choice.items():
+        value = candidate.value
+        if (
+            candidate.kind == "capacitor"
+            and board.design.parts[ref].fitted
+            and value is not None
+            and float(value.value) >= SMOOTHING
+        ):
+            found.update(board.design.parts[ref].nets())
+    return frozenset(found)
+
+
+def _united(pairs: Iterable[tuple[str, str]], names: Iterable[str]) -> dict[str, str]:
+    """Net -> representative, for nets joined by `pairs`; `names` go before others as representatives and are never joined."""
+    parent: dict[str, str] = {}
+    first = {name: at for at, name in enumerate(names)}
+
+    def find(net: str) -> str:
+        while parent.setdefault(net, net) != net:
+            parent[net] = parent[parent[net]]
+            net = parent[net]
+        return net
+
+    for one, other in pairs:
+        kept, joined = sorted((find(one), find(other)), key=lambda net: (first.get(net, len(first)), net))
+        if kept != joined and not (kept in first and joined in first):
+            parent[joined] = kept
+    return {net: find(net) for net in parent}

@@ -1,0 +1,45 @@
+"""The potential of a net against the reference of its frame, as two waves with the step they come from."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from checker.formulas.waveform import Wave, bottom, top
+from checker.model.step import Step
+
+
+@dataclass(frozen=True, slots=True)
+class Potential:
+    """low <= potential <= high at every moment of the mains cycle, V against the reference of `frame`, in normal use at the
+    highest supply voltage. held: something holds the net at a steady potential (a supply, a smoothing capacitor)."""
+
+    frame: str
+    low: Wave
+    high: Wave
+    step: Step
+    held: bool = False
+
+    @property
+    def bounded(self) -> bool:
+        """Whether both bounds are finite."""
+        return math.isfinite(top(self.high)) and math.isfinite(bottom(self.low))
+
+
+NOWHERE_STEP = Step("nothing bounds it")
+
+
+@dataclass(frozen=True, slots=True)
+class Drops:
+    """Usual drops of a conducting part, V (common practice, no source): what `surely reached` must leave out."""
+
+    diode: float = 1.2  # one rectifier diode at surge current
+    forward: float = 1.5  # a clamping diode while it conducts
+    sense: float = 5.0  # across a sense resistor of at most SENSE ohm
+    light: float = 6.0  # across a light-emitting diode of a coupler or lamp, either way round
+
+
+DROPS = Drops()
+SENSE = 10.0  # ohm; at most this much in series with a switch is a sense resistor (common practice, no source)
+SERIES = 100.0  # ohm; at most this much in a line conductor limits inrush and carries the line on (common practice, no source)
+SMOOTHING = 47e-9  # F; from here on a capacitor holds a rectified voltage (common practice, no source)

@@ -1,0 +1,199 @@
+"""From the nets whose potential something fixes to all the others: the interval each of them can lie in.
+
+Twice: what holds whatever the parts are rated for, and what holds in normal use, where every part keeps within its rating.
+The first proves that a voltage is never exceeded; the second says what is surely reached, and how far apart two circuits
+are in normal use, which is what insulation is judged by.
+"""
+
+from __future__ import annotations
+
+import math
+from collections import deque
+from collections.abc import Callable, Collection, Mapping, Sequence
+from dataclasses import dataclass, field
+
+from checker.formulas.waveform import Wave, bottom, higher, lower, plus, top
+from checker.model.step import Step
+from checker.stress.potential import Potential
+from checker.stress.pulls import Pulls
+
+ROUNDS = 3  # how far a rating reaches from a bounded net; each round is sound by itself
+
+
+@dataclass(slots=True)
+class Field:
+    """Potentials by conductor. sure: by physics alone; usual: in normal use, within or equal to `sure`."""
+
+    sure: dict[str, Potential] = field(default_factory=dict)
+    usual: dict[str, Potential] = field(default_factory=dict)
+
+
+def spread(sources: Mapping[str, Potential], line: Collection[str], pulls: Pulls, frame_of: Callable[[str], str | None]) -> Field:
+    """The potential of every conductor of `pulls`. line: those sources that follow the line, which moves what a capacitor ties
+    to it. frame_of: conductor -> its frame, None for one without a domain."""
+    moving = {net for net in pulls.agile if net not in sources} | set(line)
+    swings = set(pulls.swings)
+    for one, other in pulls.coupled:
+        swings.update(far for net, far in ((one, other), (other, one)) if net in moving)
+    nets = dict.fromkeys((*pulls.up, *pulls.down, *pulls.above, *pulls.below, *swings))
+    high = _reached(sources, pulls.up, pulls.above, swings, nets, 1)
+    low = _reached(sources, pulls.down, pulls.below, swings, nets, -1)
+    found = Field(dict(sources), dict(sources))
+    for net in nets:
+        frame = frame_of(net)
+        if net in sources or frame is None or net.startswith(" "):
+            continue
+        (above, highest), (below, lowest) = high[net], low[net]
+        ends = [sources[name] for name in dict.fromkeys((lowest, highest)) if name in sources]
+        if not ends or any(end.frame != frame for end in ends):
+            continue
+        step = _between(net, lowest, highest, ends)
+        found.sure[net] = found.usual[net] = Potential(frame, below, above, step)
+    _by_ratings(found, pulls, sources, swings)
+    return found
+
+
+def _between(net: str, lowest: str, highest: str, ends: Sequence[Potential]) -> Step:
+    steps = tuple(end.step for end in ends)
+    if not lowest or not highest:
+        return Step(
+            f"{net} can be pulled {'up' if highest else 'down'} to {highest or lowest}; nothing bounds it the other way", steps
+        )
+    return Step(f"{net} lies between {lowest} and {highest}: only ordinary parts reach it", steps)
+
+
+def _reached(
+    sources: Mapping[str, Potential],
+    edges: Mapping[str, list[str]],
+    clamps: Mapping[str, list[tuple[str, float]]],
+    swings: set[str],
+    nets: Mapping[str, None],
+    sign: int,
+) -> dict[str, tuple[Wave, str]]:
+    """Conductor -> (the extreme potential that something can pull it to, the source that pulls furthest, "" for no bound).
+
+    sign 1: highest, by `up` edges; -1: lowest, by `down` edges.
+    """
+    end = math.inf * sign
+    further, nearer = (higher, lower) if sign > 0 else (lower, higher)
+    extreme = top if sign > 0 else bottom
+    known: dict[str, tuple[Wave, str]] = {net: (source.high if sign > 0 else source.low, net) for net, source in sources.items()}
+    back: dict[str, list[str]] = {}
+    for net, pulling in edges.items():
+        for other in pulling:
+            back.setdefault(other, []).append(net)
+    limits = {
+        net: [(plus(known[other][0], sign * volts), other) for other, volts in there if other in sources and sources[other].held]
+        for net, there in clamps.items()
+        if net not in sources
+    }
+
+    def clamped(net: str, wave: Wave, by: str) -> tuple[Wave, str]:
+        for limit, other in limits.get(net, ()):
+            if extreme(wave) * sign > extreme(limit) * sign:
+                by = other
+            wave = nearer(wave, limit)
+        return wave, by
+
+    queue: deque[str] = deque()
+    for net in swings:
+        if net not in sources:
+            known[net] = clamped(net, end, "")
+            queue.append(net)
+    queue.extend(net for net in sources)
+    while queue:
+        at = queue.popleft()
+        wave, by = known[at]
+        for net in back.get(at, ()):
+            if net in sources:
+                continue
+            old = known.get(net)
+            if old is None:
+                made = clamped(net, wave, by)
+            else:
+                joint = further(old[0], wave)
+                if joint == old[0]:
+                    continue
+                made = clamped(net, joint, by if extreme(wave) * sign >= extreme(old[0]) * sign else old[1])
+                if made[0] == old[0]:
+                    continue
+            known[net] = made
+            queue.append(net)
+    return {net: known.get(net) or clamped(net, end, "") for net in nets}
+
+
+def _by_ratings(found: Field, pulls: Pulls, sources: Mapping[str, Potential], swings: set[str]) -> None:
+    """Narrows what is not bounded by what the parts on it are rated for, then passes that on along the edges."""
+    for _ in range(ROUNDS):
+        changed = False
+        for one, other, volts, back in pulls.usual:
+            for net, far, up, down in ((one, other, volts, back), (other, one, back, volts)):
+                changed |= _narrowed(found, sources, net, far, up, down)
+        for net in [net for net, known in found.usual.items() if not (known.bounded or net in sources or net in swings)]:
+            changed |= _pulled(found, pulls, net)
+        if not changed:
+            return
+
+
+def _narrowed(found: Field, sources: Mapping[str, Potential], net: str, far: str, up: float, down: float) -> bool:
+    """Keeps `net` within `up` above and `down` below `far`, where it was not bounded before."""
+    there, known = found.usual.get(far), found.usual.get(net)
+    if there is None or net in sources:
+        return False
+    if known is None:
+        known = Potential(there.frame, -math.inf, math.inf, there.step)
+    if known.frame != there.frame:
+        return False
+    high = plus(there.high, up) if math.isinf(top(known.high)) else known.high
+    low = plus(there.low, -down) if math.isinf(bottom(known.low)) else known.low
+    if high == known.high and low == known.low:
+        return False
+    step = Step(
+        f"in normal use {net} keeps within {max(up, down):g} V of {far}, for which a part between them is rated", (there.step,)
+    )
+    found.usual[net] = Potential(known.frame, low, high, step)
+    return True
+
+
+def _pulled(found: Field, pulls: Pulls, net: str) -> bool:
+    """Bounds a conductor anew by those that pull it, once these are bounded in normal use."""
+    known = found.usual[net]
+    pulling = {
+        "high": _neighbours(found, pulls.up, net, known.frame) if math.isinf(top(known.high)) else None,
+        "low": _neighbours(found, pulls.down, net, known.frame) if math.isinf(bottom(known.low)) else None,
+    }
+    high, low = known.high, known.low
+    ends: list[Potential] = []
+    if pulling["high"]:
+        ends += pulling["high"]
+        high = ends[0].high
+        for other in pulling["high"]:
+            high = higher(high, other.high)
+    if pulling["low"]:
+        ends += pulling["low"]
+        low = pulling["low"][0].low
+        for other in pulling["low"]:
+            low = lower(low, other.low)
+    if (high == known.high and low == known.low) or (math.isinf(top(high)) and math.isinf(bottom(low))):
+        return False
+    step = Step(f"in normal use {net} lies between what it hangs on", tuple(end.step for end in ends[:2]))
+    found.usual[net] = Potential(known.frame, low, high, step)
+    return True
+
+
+def _neighbours(found: Field, edges: Mapping[str, list[str]], net: str, frame: str) -> list[Potential]:
+    """The potentials of all that pull a conductor, through hubs; empty when one of them is not known."""
+    seen, stack, there = {net}, list(edges.get(net, ())), []
+    while stack:
+        at = stack.pop()
+        if at in seen:
+            continue
+        seen.add(at)
+        if at.startswith(" "):
+            stack.extend(edges.get(at, ()))
+            continue
+        known = found.usual.get(at)
+        if known is None or known.frame != frame:
+            return []
+        there.append(known)
+    return there
