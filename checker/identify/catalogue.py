@@ -27,7 +27,8 @@ class Generic:
 
     ratings: `voltage` is the repetitive reverse voltage of a diode, drain or collector voltage of a transistor, stand-off
     voltage of a suppressor, highest cathode voltage of a shunt reference; `current` and `power` as usual; `zener_voltage`,
-    `reference` and `minimum_current` are nominal figures that only their kinds have. source: where the figures are from.
+    `reference`, `output` (of a fixed regulator) and `minimum_current` are nominal figures that only their kinds have.
+    source: where the figures are from.
     Insulation is not among them: what a coupler withstands is its maker's word alone.
     """
 
@@ -147,6 +148,24 @@ _TRANSISTORS = (
 _TL431 = _generic("TL431", "shunt-reference", LOWEST, voltage=36.0, reference=2.495, minimum_current=1e-3)
 _TLV431 = _generic("TLV431", "shunt-reference", LOWEST, voltage=6.0, reference=1.24)
 
+_LINEAR_REFERENCE = _generic("317", "regulator", reference=1.25)
+
+
+def _fixed_linear(match: re.Match[str]) -> Generic:
+    """7805, 78L12, 7905: the last two figures are the output, negative for the 79 series."""
+    volts = float(match[2]) * (-1 if match[1] == "79" else 1)
+    return _generic(f"{match[1]}{match[2]}", "regulator", output=volts)
+
+
+def _low_drop(match: re.Match[str]) -> Generic:
+    """1117-3.3, 1117-33: the output; 1117-ADJ holds its reference."""
+    said = match[1]
+    if not said[0].isdigit():
+        return _generic("1117 adjustable", "regulator", reference=1.25)
+    volts = float(said if "." in said else f"{said[0]}.{said[1:] or 0}")
+    return _generic(f"1117-{volts:g}", "regulator", output=volts)
+
+
 _SERIES: list[tuple[re.Pattern[str], Callable[[re.Match[str]], Generic]]] = [
     (re.compile(pattern + r"(?![0-9])"), read)
     for pattern, read in (
@@ -174,5 +193,8 @@ _SERIES: list[tuple[re.Pattern[str], Callable[[re.Match[str]], Generic]]] = [
         ),
         (r"(?:AZ|KA|LM|TL|ATL|NCP)431", _fixed(_TL431)),
         (r"TLV431", _fixed(_TLV431)),
+        (r"(?:L|LM|UA|MC|KA|NJM|NJW|TA)?(78|79)[LMST]?(05|06|08|09|10|12|15|18|24)", _fixed_linear),
+        (r"(?:LM|LD|AMS|AP|AZ|NCP|LT|ZLDO|TLV|REG|LF)?1117\w{0,4}-?(1\.[258]|2\.5|2\.85|3\.3|5\.0|18|25|33|50|ADJ)", _low_drop),
+        (r"(?:LM|LT|L|KA|UA)317", _fixed(_LINEAR_REFERENCE)),
     )
 ]

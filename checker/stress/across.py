@@ -42,10 +42,11 @@ class Across:
     def __init__(self, board: Board, rated: Voltages, earths: Mapping[str, Sequence[str]], frequency: float):
         self._board, self._rated, self._frequency = board, rated, frequency
         self._earths = {
-            name: [known.low for net in nets if (known := rated.potential(net, usual=True)) is not None and known.bounded]
+            name: tuple(known.low for net in nets if (known := rated.potential(net, usual=True)) is not None and known.bounded)
             for name, nets in earths.items()
         }
-        self._known: dict[tuple[Wave, Wave, Wave, Wave, tuple[str, str]], _Extremes] = {}
+        self._numbers: dict[tuple[tuple[Wave, ...], ...], int] = {}
+        self._known: dict[tuple[Wave, Wave, Wave, Wave, int], _Extremes] = {}
 
     def parts(self) -> Iterator[tuple[tuple[str, tuple[str, str]], Voltage]]:
         """((reference, pair of domains), voltage) of each bridging part on its own pins; a chain member has the whole of it."""
@@ -92,10 +93,11 @@ class Across:
         return self._extremes(one, two, domains), (one.step, two.step)
 
     def _extremes(self, one: Potential, two: Potential, domains: tuple[str, str]) -> _Extremes:
-        key = (one.low, one.high, two.low, two.high, domains)
+        choices = tuple(self._earths.get(name) or (0.0,) for name in domains)
+        key = (one.low, one.high, two.low, two.high, self._numbers.setdefault(choices, len(self._numbers)))
         if key not in self._known:
             found = []
-            for earth, tied in product(*(self._earths.get(name) or [0.0] for name in domains)):
+            for earth, tied in product(*choices):
                 low = minus(minus(one.low, earth), minus(two.high, tied))
                 high = minus(minus(one.high, earth), minus(two.low, tied))
                 sure, most = least(low, high), largest(low, high)

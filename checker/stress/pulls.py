@@ -11,15 +11,14 @@ import math
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
+from checker.model.candidate import CONNECTORS
 from checker.model.rule import Board
 from checker.model.terminals import ANODE, CATHODE, GROUND, SUPPLY, anode_and_cathode, coupler, named
 from checker.stress.buses import diodes
 from checker.stress.potential import DROPS
 from checker.stress.strings import String
 
-_OPEN = frozenset(
-    "capacitor varistor gas-tube spark-gap connector inlet test-point hole fiducial logo heatsink shield antenna crystal".split()
-)
+_OPEN = frozenset("capacitor varistor gas-tube spark-gap test-point hole fiducial logo heatsink shield antenna crystal".split())
 _WOUND = frozenset("transformer gate-drive-transformer current-transformer inductor unknown battery".split())
 _CHIPS = frozenset(
     "controller ic regulator module digital-isolator isolated-amplifier isolated-driver isolated-module hall-sensor sensor "
@@ -100,6 +99,8 @@ def pulls(board: Board, same: Mapping[str, str], strung: Mapping[str, String]) -
             if len(set(nets)) > 1:  # a filter choke whose two ends are one conductor swings nothing
                 found.swings.update(nets)
                 found.agile.update(dict.fromkeys(nets))
+        elif kind in CONNECTORS - {"test-point"}:
+            found.swings.update(nets)  # what is plugged in drives it, nobody knows with what
         elif kind in _CHIPS:
             _chip(board, ref, same, found)
         elif kind not in _OPEN:

@@ -16,7 +16,7 @@ from checker.model.fact import Fact
 from checker.model.names import ground_like, supply_volts, tokens
 from checker.model.rule import Board
 from checker.model.step import Step
-from checker.model.terminals import ANODE, CATHODE, anode_and_cathode, named
+from checker.model.terminals import ANODE, CATHODE, anode_and_cathode, coupler, named
 
 NAMED = 0.10  # tolerance of a voltage that only a name states (common practice, no source)
 RESISTORS, REFERENCE, ZENER = 0.05, 0.02, 0.05  # tolerances when none is stated (common practice, no source)
@@ -233,9 +233,10 @@ def resistor_tolerance(board: Board, ref: str) -> float:
 
 def _zener_and_led(board: Board, ref: str, grounds: Mapping[str, str]) -> Iterator[Rail]:
     """A zener in series with a coupler's diode, from a rail to its return, holds the rail at their sum."""
-    ends = anode_and_cathode(board.design.parts[ref])
-    if ends is None:
+    pins_of = coupler(board.design.parts[ref])
+    if pins_of is None:
         return
+    ends = pins_of[:2]
     domain = board.isolation.domain_of.get(ends[0])
     back = grounds.get(domain) if domain is not None else None
     if back is None or (ends[1] != back and ends[0] == back):

@@ -123,7 +123,7 @@ def _reached(
 
 
 def _by_ratings(found: Field, pulls: Pulls, sources: Mapping[str, Potential], swings: set[str]) -> None:
-    """Narrows what is not bounded by what the parts on it are rated for, then passes that on along the edges."""
+    """Narrows every net by what the parts on it are rated for, then bounds by its neighbours what is not bounded yet."""
     for _ in range(ROUNDS):
         changed = False
         for one, other, volts, back in pulls.usual:
@@ -136,7 +136,7 @@ def _by_ratings(found: Field, pulls: Pulls, sources: Mapping[str, Potential], sw
 
 
 def _narrowed(found: Field, sources: Mapping[str, Potential], net: str, far: str, up: float, down: float) -> bool:
-    """Keeps `net` within `up` above and `down` below `far`, where it was not bounded before."""
+    """Keeps `net` within `up` above and `down` below `far`, where that is nearer than what bounded it before."""
     there, known = found.usual.get(far), found.usual.get(net)
     if there is None or net in sources:
         return False
@@ -144,9 +144,9 @@ def _narrowed(found: Field, sources: Mapping[str, Potential], net: str, far: str
         known = Potential(there.frame, -math.inf, math.inf, there.step)
     if known.frame != there.frame:
         return False
-    high = plus(there.high, up) if math.isinf(top(known.high)) else known.high
-    low = plus(there.low, -down) if math.isinf(bottom(known.low)) else known.low
-    if high == known.high and low == known.low:
+    high = plus(there.high, up) if top(there.high) + up < top(known.high) else known.high
+    low = plus(there.low, -down) if bottom(there.low) - down > bottom(known.low) else known.low
+    if high is known.high and low is known.low:
         return False
     step = Step(
         f"in normal use {net} keeps within {max(up, down):g} V of {far}, for which a part between them is rated", (there.step,)
