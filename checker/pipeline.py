@@ -26,6 +26,7 @@ from checker.model.ruleset import Ruleset
 from checker.model.step import Step
 from checker.model.table import Table
 from checker.model.verdict import OUTCOMES, Missing, Verdict
+from checker.remedies import tried
 from checker.reporting import fingerprint, report
 from checker.requirements.grade import TABLE, needed
 from checker.requirements.needs import needs
@@ -55,16 +56,28 @@ def judge(
     raised: list[str] = []
     worst: dict[tuple[str, str], Verdict] = {}
     first: Analysis | None = None
-    for choice in choices(identity):
+
+    def answers(choice: Mapping[str, Candidate]) -> tuple[Analysis, dict[tuple[str, str], Verdict]]:
         analysis = analyse(design, declaration, identity, choice, rulesets)
-        first = first or analysis
+        found: dict[tuple[str, str], Verdict] = {}
         for verdict in verdicts(analysis, rulesets, raised):
             key = (verdict.clause, fingerprint(verdict))
+            if key not in found or _rank(verdict) < _rank(found[key]):
+                found[key] = verdict
+            if len(found) > VERDICTS:
+                raise WithstandError(f"{name}: more than {VERDICTS:,} verdicts; split the design")
+        return analysis, found
+
+    for choice in choices(identity):
+        analysis, found = answers(choice)
+        first = first or analysis
+        for key, verdict in found.items():
             if key not in worst or _rank(verdict) < _rank(worst[key]):
                 worst[key] = verdict if analysis is first else _from_alternate(verdict, choice, identity)
-            if len(worst) > VERDICTS:
-                raise WithstandError(f"{name}: more than {VERDICTS:,} verdicts; split the design")
     assert first is not None
+    told = len(raised)
+    worst = tried(worst, first.choice, lambda choice: answers(choice)[1])
+    del raised[told:]  # a fault that a remedy brings out is the remedy's, which is dropped
     return Judged(report(first, tuple(worst.values()), rulesets, inputs, plugins.plugin_names()), tuple(raised))
 
 
