@@ -65,7 +65,12 @@ def _inputs(function: Callable[..., Any]) -> Callable[..., Any]:
 @click.argument("netlist", required=False)
 @_inputs
 @click.option(
-    "--format", "form", metavar="FORM", default="text", show_default=True, help="Form of the report on standard output: text, json."
+    "--format",
+    "form",
+    metavar="FORM",
+    default="text",
+    show_default=True,
+    help="Form of the report on standard output: text, json, csv.",
 )
 @click.option(
     "--output", metavar="[FORM=]FILE", multiple=True, help="Write the report to a file as well; repeatable, one form each."
@@ -155,12 +160,25 @@ def _stops(verdict: Any, stop_at: str) -> bool:
 @command.command()
 @click.argument("design", metavar="NETLIST|REPORT")
 @_inputs
-def barrier(design: str, **given: Any) -> int:
-    """Show the domains, the barriers between them, and what lies across each."""
+@click.option(
+    "--format",
+    "form",
+    type=click.Choice(["text", "csv"]),
+    default="text",
+    show_default=True,
+    help="text for a person, csv for the spacing table of the layout.",
+)
+def barrier(design: str, form: str, **given: Any) -> int:
+    """Show the domains, the barriers between them, what each needs, and what lies across it and states.
+
+    `--format csv` is the spacing table for the layout: a row for each separation, those that nothing lies across included, and
+    for each part on its own pins.
+    """
     from checker.writers import barriers
+    from checker.writers import csv as tables
 
     report = _report(design, given)
-    _write(barriers.write(report).encode(), [])
+    _write(tables.spacing(report) if form == "csv" else barriers.write(report).encode(), [])
     return 0
 
 
@@ -183,13 +201,14 @@ def _report(design: str, given: Mapping[str, Any]) -> Report | Reports:
 
 
 @command.command()
-@click.argument("subject", metavar="RULE|FINGERPRINT")
+@click.argument("subject", metavar="RULE|FINGERPRINT|BARRIER")
 @click.argument("design", metavar="[NETLIST|REPORT]", required=False)
 @_inputs
 def explain(subject: str, design: str | None, **given: Any) -> int:
-    """Print the manual page of a RULE, or the whole derivation of one verdict.
+    """Print the manual page of a RULE, or the whole derivation of one verdict or of the figures of one barrier.
 
-    A verdict is named by the start of its FINGERPRINT, as `verify` prints it, and looked up in a netlist's report or a saved one.
+    A verdict is named by the start of its FINGERPRINT, as `verify` prints it, a barrier as `barrier` prints it ('mains|+12V'); both
+    are looked up in a netlist's report or a saved one.
     """
     from checker import plugins
     from checker.errors import ArgumentError
@@ -211,19 +230,23 @@ def _caution() -> str:
     return f"Caution: {CAUTION}"
 
 
-def _derivation(report: Report | Reports, prefix: str) -> str:
-    """The derivation of the one verdict whose fingerprint starts with `prefix`."""
+def _derivation(report: Report | Reports, subject: str) -> str:
+    """The derivation of the separation called `subject`, else of the one verdict whose fingerprint starts with it."""
     from checker.errors import ArgumentError
     from checker.model.report import Reports
     from checker.neutral import neutral
     from checker.writers import derivation
 
     reports = report.reports if isinstance(report, Reports) else [report]
-    found = [(one, verdict) for one in reports for verdict in one.verdicts if verdict.fingerprint.startswith(prefix)]
+    named = [(one, kept) for one in reports for kept in (*one.barriers, *one.separations) if kept.id == subject]
+    if len(named) == 1:
+        return derivation.barrier(*named[0])
+    found = [(one, verdict) for one in reports for verdict in one.verdicts if verdict.fingerprint.startswith(subject)]
     if len(found) != 1:
         what = "no verdict" if not found else f"{len(found)} verdicts"
         raise ArgumentError(
-            f"{what} of this report begin{'s' * (not found)} with {neutral(prefix, 80)}; give more of a fingerprint it prints"
+            f"{what} of this report begin{'s' * (not found)} with {neutral(subject, 80)}; give more of a fingerprint it prints, or "
+            f"the name of one barrier"
         )
     return derivation.write(*found[0])
 
@@ -244,6 +267,44 @@ def ruleset_list() -> int:
         click.echo(f"{name:<24} revision {found.revision:<4} {clauses:<11} {found.unverified} unverified   {found.title}")
     click.echo(f"\n{_caution()}")
     return 0
+
+
+@ruleset.command("show")
+@click.argument("name", metavar="NAME|FILE")
+@click.option("--clause", metavar="ID", default="", help="Only this clause and the tables it names.")
+def ruleset_show(name: str, clause: str) -> int:
+    """Print a ruleset: its layers, every clause with the figures it judges by and who set them, and every table."""
+    from checker import rulesets
+    from checker.writers import rulesets as shown
+
+    layers = rulesets.load_layers(name)
+    id = rulesets.clause_id(layers[-1], clause) if clause else ""
+    _write(shown.write(layers, id).encode(), [])
+    return 0
+
+
+@ruleset.command("validate")
+@click.argument("rulesets", metavar="FILE...", nargs=-1, required=True)
+def ruleset_validate(rulesets: tuple[str, ...]) -> int:
+    """Load rulesets with the layers below them and check their tables; status 2 when one cannot be used."""
+    from checker import rulesets as loading
+    from checker.errors import WithstandError
+    from checker.neutral import harmless, neutral
+    from checker.writers.rulesets import counts
+
+    status = 0
+    for name in rulesets:
+        try:
+            found = loading.load(name)
+            wrong: list[WithstandError] = list(loading.faults(found))
+        except WithstandError as error:
+            wrong = [error]
+        for fault in wrong:
+            click.echo(harmless(f"withstand: {fault}"), err=True)
+            status = EXIT_UNUSABLE
+        if not wrong:
+            click.echo(harmless(f"{neutral(name)}: valid, {counts(found)}"))
+    return status
 
 
 def main(arguments: Sequence[str] | None = None) -> None:

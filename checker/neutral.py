@@ -12,6 +12,10 @@ import unicodedata
 # Cc control, Cf format (bidirectional marks, zero-width), Zl / Zp separators, Cs lone surrogates
 _PLAIN = re.compile(r"[ -~]*\Z")
 _UNSAFE = frozenset({"Cc", "Cf", "Zl", "Zp", "Cs", "Co", "Cn"})
+_COMMAND = re.compile(r"##(?=[A-Za-z]{0,32}\[)")
+# What makes a spreadsheet program read a cell as a formula, the wide forms included. After a semicolon as well, since programs
+# of many countries take that for the end of a cell.
+_FORMULA = re.compile("(^|;)([\\s'\"]*)(?=[-=+@\uff0d\uff1d\uff0b\uff20])")
 
 
 def neutral(text: str, limit: int = 1024) -> str:
@@ -28,3 +32,17 @@ def _escaped(character: str) -> str:
         return character
     code = ord(character)
     return f"\\x{code:02x}" if code < 0x100 else f"\\u{code:04x}" if code < 0x10000 else f"\\U{code:08x}"
+
+
+def harmless(line: str) -> str:
+    """A line that no program which reads a log takes for a command: those begin with `::`, even after spaces, or hold `##[` or
+    `##name[` anywhere."""
+    bare = line.lstrip()
+    if bare.startswith("::"):
+        line = line[: len(line) - len(bare)] + "\\x3a" + bare[1:]
+    return _COMMAND.sub(r"#\\x23", line)
+
+
+def cell(text: str) -> str:
+    """`text` as a spreadsheet cell that stays text: neutral, no command of a log, the start of a formula behind an apostrophe."""
+    return _FORMULA.sub(r"\1\2'", harmless(neutral(text, limit=2000)))

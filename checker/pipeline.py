@@ -20,7 +20,7 @@ from checker.model.clause import Clause, Subject
 from checker.model.declaration import Declaration
 from checker.model.reading import Reading
 from checker.model.report import Report
-from checker.model.requirement import Basis, Grade, Need
+from checker.model.requirement import Basis, Grade, Need, Spacing
 from checker.model.rule import Analysis, Board
 from checker.model.ruleset import Ruleset
 from checker.model.step import Step
@@ -30,6 +30,8 @@ from checker.remedies import tried
 from checker.reporting import fingerprint, report
 from checker.requirements.grade import TABLE, needed
 from checker.requirements.needs import needs
+from checker.requirements.separations import grades as spacing_grades
+from checker.requirements.separations import separations, voltages
 from checker.stress.sources import setting
 from checker.stress.voltages import stressed
 
@@ -96,13 +98,20 @@ def analyse(
     set_up = setting(declaration, isolation)
     board = Board(design, declaration, identity, choice, isolation, set_up)
     stress = stressed(board)
+    further = separations(board, stress)
+    stress = replace(stress, barriers={**stress.barriers, **voltages(further, stress)})
+    every = (*isolation.separations, *further)
     grades: dict[tuple[str, str], Grade] = {}
     asked: dict[tuple[str, str, str], Need] = {}
     for ruleset in rulesets:
-        found = needed(isolation.separations, isolation.domains, declaration, set_up, ruleset.tables.get(TABLE))
+        table = ruleset.tables.get(TABLE)
+        pairs = [separation for separation in every if not isinstance(separation, Spacing)]
+        found = needed(pairs, isolation.domains, declaration, set_up, table) | spacing_grades(further, table)
         grades.update({(ruleset.id, separation): grade for separation, grade in found.items()})
-        asked.update(needs(board, stress, grades, basis(ruleset)))
-    return Analysis(design, declaration, identity, choice, isolation, set_up, grades, stress, asked)
+        asked.update(needs(board, every, stress, grades, basis(ruleset)))
+    return Analysis(
+        design, declaration, identity, choice, isolation, set_up, grades=grades, stress=stress, needs=asked, further=further
+    )
 
 
 def basis(ruleset: Ruleset) -> Basis:

@@ -61,6 +61,7 @@ BUILT_IN: Mapping[str, Mapping[str, str]] = {
     "writers": {
         "text": "checker.writers.text:WRITER",
         "json": "checker.writers.json:WRITER",
+        "csv": "checker.writers.csv:WRITER",
     },
     "rulesets": {},  # shipped rulesets are files, found by checker.rulesets
 }

@@ -7,18 +7,15 @@ import json
 from collections.abc import Iterable, Mapping, Sequence
 from importlib.metadata import PackageNotFoundError, version
 
+from checker import reporting_barriers
 from checker.formulas.rounding import significant
 from checker.model.candidate import Candidate
 from checker.model.clause import LEVELS
-from checker.model.declaration import DeclaredBarrier
-from checker.model.domain import Crossing
-from checker.model.fact import Fact, Source
+from checker.model.fact import Fact
 from checker.model.order import natural
 from checker.model.reading import Note
 from checker.model.report import (
     AssumptionMade,
-    BarrierShown,
-    BridgingPart,
     Consequence,
     DomainShown,
     Evidence,
@@ -29,16 +26,13 @@ from checker.model.report import (
     PartShown,
     Report,
     RulesetUsed,
-    StepShown,
     Tool,
     VerdictShown,
-    WorkingVoltage,
 )
 from checker.model.rule import Analysis
 from checker.model.ruleset import Ruleset
-from checker.model.separation import GRADES, Separation
-from checker.model.step import Step
 from checker.model.verdict import OUTCOMES, Limit, Number, Verdict, Words
+from checker.reporting_steps import Steps, evidence
 
 MOST_EVIDENCE = 12  # places shown with one verdict; its steps have them all
 MOST_ALIKE = 3  # notes of one kind that are listed one by one
@@ -47,7 +41,6 @@ _TOGETHER = {
     "not-in-netlist": "are in the BOM and not in the netlist",
     "case-differs": "are written in another case in netlist and BOM",
 }
-_DISTANCES = ("clearance", "creepage", "through_insulation", "isolation_working", "isolation_test", "impulse")
 
 
 def tool_version() -> str:
@@ -80,45 +73,6 @@ def _facts(verdict: Verdict) -> tuple[Fact, ...]:
     return verdict.evidence or (verdict.step.facts() if verdict.step is not None else ())
 
 
-class _Steps:
-    """Numbers steps in the order they are first shown, inputs before what rests on them."""
-
-    def __init__(self) -> None:
-        self.ids: dict[int, str] = {}
-        self.kept: list[Step] = []
-        self.shown: list[StepShown] = []
-
-    def id(self, step: Step | None) -> str | None:
-        if step is None:
-            return None
-        stack: list[tuple[Step, bool]] = [(step, False)]
-        while stack:
-            at, ready = stack.pop()
-            if id(at) in self.ids:
-                continue
-            if not ready:
-                stack.append((at, True))
-                stack.extend((link, False) for link in reversed(at.inputs) if isinstance(link, Step))
-                continue
-            self.ids[id(at)] = f"s{len(self.shown) + 1}"
-            self.kept.append(at)
-            result = significant(at.result) if isinstance(at.result, float) else at.result
-            self.shown.append(
-                StepShown(
-                    id=self.ids[id(at)],
-                    text=at.text,
-                    formula=at.formula,
-                    inputs=[self.ids[id(link)] for link in at.inputs if isinstance(link, Step)],
-                    result=result,
-                    unit=at.unit,
-                    form=at.form,
-                    citation=at.citation,
-                    evidence=_evidence(link for link in at.inputs if isinstance(link, Fact)),
-                )
-            )
-        return self.ids[id(step)]
-
-
 def report(
     analysis: Analysis,
     verdicts: Sequence[Verdict],
@@ -127,7 +81,7 @@ def report(
     plugin_names: Sequence[str],
 ) -> Report:
     """The report of one design."""
-    steps = _Steps()
+    steps = Steps()
     design, isolation = analysis.design, analysis.isolation
     domains = [
         DomainShown(
@@ -141,11 +95,9 @@ def report(
         )
         for domain in isolation.domains.values()
     ]
-    across = isolation.across()
-    barriers = [
-        _barrier(analysis, separation, across[separation.between], [ruleset.id for ruleset in rulesets], steps)
-        for separation in isolation.separations
-    ]
+    named = [ruleset.id for ruleset in rulesets]
+    barriers = reporting_barriers.barriers(analysis, named, steps)
+    separations = reporting_barriers.separations(analysis, named, steps)
     ordered = sorted(verdicts, key=_order)
     shown = [_verdict(verdict, steps) for verdict in ordered]
     return Report(
@@ -161,12 +113,13 @@ def report(
         parts=_parts(analysis),
         domains=domains,
         barriers=barriers,
-        separations=[],
+        separations=separations,
         stress=[],
         verdicts=shown,
         steps=steps.shown,
         summary=summary(shown),
         notes=_notes(analysis, frozenset(verdict.because for verdict in verdicts)),
+        environment=_environment(analysis.setting.environment),
     )
 
 
@@ -190,7 +143,7 @@ def _order(verdict: Verdict) -> tuple[int, int, str, list[object], str]:
     )
 
 
-def _verdict(verdict: Verdict, steps: _Steps) -> VerdictShown:
+def _verdict(verdict: Verdict, steps: Steps) -> VerdictShown:
     missing = verdict.missing
     return VerdictShown(
         rule=verdict.rule,
@@ -217,7 +170,7 @@ def _verdict(verdict: Verdict, steps: _Steps) -> VerdictShown:
         because=verdict.because,
         step=steps.id(verdict.step),
         remedy=None if verdict.remedy is None else verdict.remedy.text,
-        evidence=_evidence(_facts(verdict)[:MOST_EVIDENCE]),
+        evidence=evidence(_facts(verdict)[:MOST_EVIDENCE]),
         fingerprint=fingerprint(verdict),
         facts_hash=facts_hash(verdict),
         verified=verdict.verified,
@@ -239,18 +192,6 @@ def _limit(limit: Limit | Words | None) -> LimitShown | None:
     if isinstance(limit, Words):
         return LimitShown(text=limit.text)
     return LimitShown(value=significant(limit.value), unit=limit.unit, form=limit.form, bound=limit.bound, status=limit.status)
-
-
-def _evidence(facts: Iterable[Fact]) -> list[Evidence]:
-    found: dict[tuple[Source, str], Evidence] = {}
-    for fact in facts:
-        said = fact.text or (f"{fact.value:g} {fact.unit}".strip() if isinstance(fact.value, float) else str(fact.value))
-        text = f"{fact.attribute}: {said}"
-        place = fact.source
-        found.setdefault(
-            (place, text), Evidence(path=place.path, line=place.line, column=place.column, cell=place.cell or None, text=text)
-        )
-    return list(found.values())
 
 
 def _parts(analysis: Analysis) -> list[PartShown]:
@@ -291,53 +232,9 @@ def _ratings(candidate: Candidate) -> dict[str, Figure]:
     }
 
 
-def _barrier(
-    analysis: Analysis, separation: Separation, crossings: Sequence[Crossing], rulesets: Sequence[str], steps: _Steps
-) -> BarrierShown:
-    grades = [grade for ruleset in rulesets if (grade := analysis.grades[(ruleset, separation.id)]).grade]
-    highest = max((grade.grade for grade in grades), key=_grade_rank, default="")
-    declared = next((b for b in analysis.declaration.barriers if set(b.between) == set(separation.between)), None)
-    return BarrierShown(
-        id=separation.id,
-        between=list(separation.between),
-        grade=highest,
-        bridged_by=list(separation.bridged_by),
-        chains=[list(chain) for chain in separation.chains],
-        working_voltage=_working_voltage(declared, steps),
-        required=[],
-        parts=[_bridging(analysis, crossing, steps) for crossing in sorted(crossings, key=lambda c: natural(c.part))],
-        reason=separation.reason,
-        step=steps.id(next((grade.step for grade in grades if grade.grade == highest), separation.step)),
-    )
-
-
-def _grade_rank(grade: str) -> int:
-    return GRADES.index(grade) if grade in GRADES else len(GRADES)
-
-
-def _working_voltage(declared: DeclaredBarrier | None, steps: _Steps) -> WorkingVoltage | None:
-    if declared is None or (declared.rms is None and declared.peak is None):
-        return None
-    rms, peak = (None if bound is None else significant(bound.high) for bound in (declared.rms, declared.peak))
-    fact = Fact("working_voltage", f"{rms} V r.m.s., {peak} V peak", declared.source)
-    return WorkingVoltage(rms=rms, peak=peak, step=steps.id(Step("working voltage as declared", (fact,))))
-
-
-def _bridging(analysis: Analysis, crossing: Crossing, steps: _Steps) -> BridgingPart:
-    candidate = analysis.choice[crossing.part]
-    provided: Mapping[str, object] = {
-        name: significant(float(fact.value))
-        for name in _DISTANCES
-        if (fact := candidate.ratings.get(name)) is not None and isinstance(fact.value, float)
-    }
-    return BridgingPart(
-        part=crossing.part,
-        pins=[*crossing.sides[0], *crossing.sides[1]],
-        provided=dict(provided),
-        how=crossing.how,
-        listed=crossing.listed,
-        step=steps.id(crossing.step),
-    )
+def _environment(facts: Mapping[str, Fact]) -> dict[str, str | float]:
+    """The surroundings the run judged under, declared or assumed: text, or a figure in SI."""
+    return {name: significant(fact.value) if isinstance(fact.value, float) else str(fact.value) for name, fact in facts.items()}
 
 
 def _notes(analysis: Analysis, told: frozenset[str]) -> list[str]:
@@ -362,6 +259,11 @@ def _notes(analysis: Analysis, told: frozenset[str]) -> list[str]:
             )
     if analysis.declaration.concessions:
         found.append(f"{analysis.declaration.concessions} is declared; this version applies no concessions, so every fail stands")
+    circuits = len(analysis.isolation.domains)
+    listed = {frozenset(separation.between) for separation in (*analysis.isolation.separations, *analysis.further)}
+    left_out = circuits * (circuits - 1) // 2 - sum(between <= analysis.isolation.domains.keys() for between in listed)
+    if analysis.further and left_out > 0:
+        found.append(f"{left_out} pairs of circuits without a hazard that nothing lies between are not among the separations")
     for crossing in analysis.isolation.idle:
         found.append(f"{crossing.part} is not fitted; fitted, it would lie across {' and '.join(crossing.between)}")
     for ref in analysis.isolation.inactive:

@@ -8,13 +8,15 @@ from __future__ import annotations
 
 import os
 import re
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
+from itertools import pairwise
 from pathlib import Path
 
 from checker import files, limits, plugins, ruleset_file
 from checker.errors import ArgumentError, InputError
 from checker.model.ruleset import Ruleset
+from checker.model.table import Table
 from checker.neutral import neutral
 from checker.ruleset_file import RulesetFile
 from checker.ruleset_layers import Layer, joined
@@ -75,6 +77,42 @@ def load_all(values: tuple[str, ...], folder: Path | None = None) -> tuple[Rules
             )
         found[ruleset.id] = ruleset
     return tuple(found.values())
+
+
+def faults(ruleset: Ruleset) -> Iterator[InputError]:
+    """What is wrong with a loaded ruleset although it can be read: a distance that shrinks while the voltage rises."""
+    for table in ruleset.tables.values():
+        first, *others = table.columns.items()
+        if table.lookup == "exact" or first[1].split(" ")[0] != "V":
+            continue
+        for at, (column, unit) in enumerate(others, 1):
+            if unit == "mm":
+                yield from _falls(table, at, column)
+
+
+def _falls(table: Table, at: int, column: str) -> Iterator[InputError]:
+    filled = [(row[0], row[at]) for row in table.rows if isinstance(row[0], float) and isinstance(row[at], float)]
+    for (low, before), (high, after) in pairwise(filled):
+        if isinstance(before, float) and isinstance(after, float) and after < before:
+            yield InputError(
+                table.origin.path,
+                f"the column {column} of the table {table.id} falls while the voltage rises",
+                line=table.origin.line,
+                found=f"{after:g} mm at {high:g} V after {before:g} mm at {low:g} V",
+                expected="distances that rise or stay",
+                remedy="Compare the two rows with the source.",
+            )
+
+
+def clause_id(ruleset: Ruleset, asked: str) -> str:
+    """The id of the clause a person means by `clearance` or `iec-62368-1/clearance`. Raises ArgumentError with a suggestion."""
+    ids = tuple(clause.id for clause in ruleset.clauses)
+    id = asked.removeprefix(f"{ruleset.id}/")
+    if id not in ids:
+        raise ArgumentError(
+            f"the ruleset {ruleset.id} has no clause {neutral(asked, 80)}{suggestion(id, ids)} It has: {', '.join(ids) or 'none'}."
+        )
+    return id
 
 
 def available() -> tuple[RulesetInfo, ...]:

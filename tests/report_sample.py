@@ -205,11 +205,44 @@ REPORT = Report(
             bridged_by=["C7", "T1"],
             chains=[["C7"]],
             working_voltage=WorkingVoltage(rms=370.0, peak=510.0, step="s4"),
-            required=[{"ruleset": "iec-62368-1", "clearance": 3.0, "electric_strength": {"dc": 4000.0}}],
-            parts=[BridgingPart(part="U1", pins=["1", "3"], rms=240.0, provided={"clearance": 8.0})],
+            required=[
+                {
+                    "ruleset": "iec-62368-1", "grade": "reinforced", "clearance": 3.0, "electric_strength": {"dc": 4000.0},
+                    "step": "s4", "verified": "partial",
+                }
+            ],
+            parts=[
+                BridgingPart(
+                    part="U1",
+                    pins=["1", "3"],
+                    sides=[["1"], ["3"]],
+                    rms=240.0,
+                    provided={"clearance": 2.5, "isolation_test": 5000.0},
+                    required=[
+                        {
+                            "ruleset": "iec-62368-1", "clearance": 3.0, "creepage": 4.8, "through_insulation": 0.0, "step": "s4",
+                            "bounded": False, "at_least": {"creepage": 4.8, "through_insulation": 0.0, "clearance": 2.0},
+                            "unbounded": ["creepage", "through_insulation"],
+                            "missing": ["the working voltage between DRAIN and SGND"],
+                        },
+                        {"ruleset": "house", "electric_strength": {"rms": 6000.0}, "at_least": {"electric_strength.rms": 5500.0}},
+                    ],
+                )
+            ],
+            step="s3",
         )
     ],
-    separations=[],
+    separations=[
+        BarrierShown(
+            id="live|neutral", between=["live", "neutral"], grade="basic", bridged_by=[], chains=[],
+            working_voltage=WorkingVoltage(rms=240.0, peak=339.4, step=None),
+            required=[{"ruleset": "iec-62368-1", "creepage": 2.5}], parts=[], reason="line to line before the fuse",
+        ),
+        BarrierShown(
+            id="mains|earth", between=["mains", "earth"], grade="basic", bridged_by=[], chains=[], working_voltage=None,
+            required=[], parts=[], reason="nothing lies between them",
+        ),
+    ],
     stress=[
         StressShown(
             part="Q1", net=None, quantity="voltage", surely=461.0, never_above=None, unit="V", form="peak", kind="repetitive",
@@ -219,5 +252,6 @@ REPORT = Report(
     verdicts=VERDICTS,
     steps=STEPS,
     summary={"pass": 3, "fail": 3, "open": 2, "not-applicable": 1, "conceded": 0, "unconfirmed": 1},
+    environment={"pollution_degree": "2", "material_group": "IIIb", "altitude": 2000.0},
     notes=["board.net: two nets called SGND were joined"],
 )  # fmt: skip

@@ -6,6 +6,7 @@ tests call `checker.cli.run`; those about processes (pipes, locale, the current 
 
 from __future__ import annotations
 
+import csv
 import os
 import re
 import shutil
@@ -260,7 +261,16 @@ def test_arguments_that_cannot_be_used(run: Run, desk: Path) -> None:
     assert not (desk / "report").exists()
 
 
-@pytest.mark.parametrize("arguments", [("verify", "--frobnicate"), ("verify", "small.net", "--stop-at", "maybe"), ("frobnicate",)])
+@pytest.mark.parametrize(
+    "arguments",
+    [
+        ("verify", "--frobnicate"),
+        ("verify", "small.net", "--stop-at", "maybe"),
+        ("barrier", "small.net", "--format", "json"),
+        ("ruleset", "validate", "--frobnicate"),
+        ("frobnicate",),
+    ],
+)
 def test_usage_errors_are_for_the_parser(run: Run, desk: Path, arguments: tuple[str, ...]) -> None:
     done = run(*arguments)
     assert (done.status, done.out) == (2, b"")
@@ -405,7 +415,33 @@ def test_json_goes_to_a_file_and_comes_back_equal(run: Run, desk: Path) -> None:
     report = json_form.read(read_file("report.json"))
     assert json_form.write(report) == printed.out
     assert shown.out == plugins.writer("text").write(report)  # the saved report holds everything that is printed
-    assert run("barrier", "report.json").out == run("barrier", *verify_demo()[1:]).out
+    for form in ("text", "csv"):
+        assert run("barrier", "report.json", "--format", form).out == run("barrier", *verify_demo()[1:], "--format", form).out
+
+
+def test_the_tables_are_tables(run: Run, desk: Path) -> None:
+    """Every row of both tables has the cells of its header; a verdict, and a separation or part, is a row."""
+    for arguments in (verify_demo(), verify_demo(WRONG)):
+        report = report_of(run(*arguments, "--format", "json").out)
+        done = run(*arguments, "--format", "csv")
+        header, *rows = csv.reader(done.out.decode().splitlines(), strict=True)
+        assert {len(row) for row in rows} == {len(header)}
+        assert [row[header.index("fingerprint")] for row in rows] == [verdict.fingerprint for verdict in report.verdicts]
+        header, *rows = csv.reader(run("barrier", *arguments[1:], "--format", "csv").out.decode().splitlines(), strict=True)
+        assert {len(row) for row in rows} == {len(header)}
+        wanted = {
+            (kept.id, part) for kept in (*report.barriers, *report.separations) for part in ("", *(p.part for p in kept.parts))
+        }
+        assert {(row[1], row[4]) for row in rows} == wanted
+
+
+def test_every_figure_of_a_barrier_can_be_explained(run: Run, desk: Path) -> None:
+    done = run("explain", "mains|+12V", *verify_demo()[1:])
+    assert (done.status, done.err) == (0, "")
+    assert b"Separation mains | +12V: reinforced (barrier)\n" in done.out
+    assert b"CY1: why it lies across\n" in done.out
+    assert b"(greenhouse.net:" in done.out
+    run("explain", "mains|+13V", *verify_demo()[1:]).refused("no verdict", "mains|+13V", "name of one barrier")
 
 
 def test_the_same_inputs_give_the_same_bytes(run: Run, desk: Path) -> None:
@@ -487,11 +523,11 @@ def test_hostile_names_are_accepted_and_neutral_in_every_form(run: Run, desk: Pa
     (desk / "evil.csv").write_bytes(("Reference,Value,Description\n" + rows).encode())
     design = ("evil.net", "--bom", "evil.csv")
     outputs = {form: run("verify", *design, "--format", form, "--stop-at", "never") for form in plugins.forms()}
-    outputs["barrier"] = run("barrier", *design)
+    outputs |= {f"barrier-{form}": run("barrier", *design, "--format", form) for form in ("text", "csv")}
     for form, done in outputs.items():
         assert done.status == 0, done.err
         text = done.out.decode()
-        assert "owned" in text  # the names are there, only harmless
+        assert "owned" in text or form == "barrier-csv"  # the names are there, only harmless; no barrier lies on that board
         assert unsafe(text) == set()
         command = START if form == "json" else COMMAND  # JSON puts every name between quotes, never first on a line
         assert [line for line in text.splitlines() if command.match(line)] == []

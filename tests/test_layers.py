@@ -28,7 +28,7 @@ LAYERS: tuple[tuple[str, ...], ...] = (
     ("formulas",),
     STAGES,
     ("plugins", "ruleset_file", "ruleset_layers", "rulesets", "declaration", "project"),
-    ("reporting", "pipeline"),
+    ("remedies", "reporting", "reporting_barriers", "reporting_steps", "pipeline"),
     ("api", "testing"),
     ("cli",),
 )

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import csv
+import io
 import json
 import math
 import re
@@ -29,8 +31,9 @@ from checker.model.report import (
     Unreadable,
 )
 from checker.neutral import neutral
+from checker.writers import barriers, derivation, text
+from checker.writers import csv as csv_writer
 from checker.writers import json as json_writer
-from checker.writers import text
 from checker.writers.page import Page
 
 SEVERAL = Reports(
@@ -286,16 +289,32 @@ def test_verdicts_of_one_part_stand_under_one_heading_and_errors_come_first():
     ]
 
 
+OPEN = "OPEN: NOT PROVEN, AND WHAT WOULD SETTLE IT"
+
+
 def test_an_open_verdict_says_what_settles_it_and_where_each_answer_leads():
-    assert section(text.write(REPORT), "OPEN: NOT PROVEN, AND WHAT WOULD SETTLE IT")[6:13] == [
+    assert section(text.write(REPORT), OPEN)[7:] == [
         "           if no isolator -> fail",
         f"  explain  {VERDICTS[3].fingerprint[:8]}",
         "",
-        "  warning  F1: The rated voltage of the fuse in the line is not given.",
+        "Part F1",
+        "  warning  The rated voltage of the fuse in the line is not given.",
         "           settled by: rated voltage (BOM column Voltage)",
         "           if 250 V or more -> pass",
         "           if less than 240 V -> fail",
+        f"  explain  {VERDICTS[4].fingerprint[:8]}",
+        "",
     ]
+
+
+def test_several_questions_about_one_part_stand_under_one_heading_and_each_counts():
+    asked = [verdict(rule, "open", ["T1"], what=f"{rule}?") for rule in ("creepage", "clearance")]
+    other = verdict("fuse", "open", ["F1"], what="fuse?")
+    report = with_verdicts(asked[0], other, asked[1], summary={"fail": 0, "open": 3, "pass": 0})
+    said = text.write(report)
+    assert said.splitlines()[0] == "Design flyback-5w: 0 failed, 3 open, 0 passed"
+    shown = [line for line in section(said, OPEN) if line.startswith(("Part", "  error"))]
+    assert shown == ["Part T1", "  error    creepage?", "  error    clearance?", "Part F1", "  error    fuse?"]
 
 
 def test_passes_and_what_does_not_apply_are_one_line_a_rule():
@@ -406,7 +425,7 @@ def test_a_hostile_name_never_becomes_a_command_of_a_log(name, width):
         assumptions=[msgspec.structs.replace(REPORT.assumptions[0], key=name, value=name)],
     )
     several = Reports(reports=[report], unreadable=[Unreadable(design=name, message=name)], summary={}, caution=name)
-    for said in (text.write(report, width), text.write(several, width)):
+    for said in (text.write(report, width), text.write(several, width), csv_writer.write(several).decode()):
         for line in said.split("\n"):
             assert not line.strip().startswith("::")
             assert not re.search(r"##[A-Za-z]*\[", line)
@@ -433,3 +452,207 @@ def test_a_barrier_without_figures_is_written_and_read():
     )  # fmt: skip
     report = msgspec.structs.replace(REPORT, separations=[bare])
     assert read(json_writer.write(report)).separations == [bare]
+
+
+# CSV
+
+
+def rows(data: bytes) -> list[dict[str, str]]:
+    """The rows by heading; every row has as many cells as the header."""
+    header, *found = list(csv.reader(io.StringIO(data.decode(), newline=""), strict=True))
+    assert {len(row) for row in found} <= {len(header)}
+    return [dict(zip(header, row, strict=True)) for row in found]
+
+
+def test_the_header_of_the_verdicts_is_the_contract():
+    assert csv_writer.write(REPORT).decode().split("\n")[0] == (
+        "design,outcome,level,hazard,rule,clause,citation,parts,nets,what,found,found_unit,found_form,limit,limit_unit,limit_form,"
+        "bound,margin,missing,because,remedy,path,line,fingerprint"
+    )
+
+
+def test_a_row_a_verdict_in_the_order_of_the_report():
+    found = rows(csv_writer.write(REPORT))
+    assert [(row["rule"], row["outcome"]) for row in found] == [(shown.rule, shown.outcome) for shown in VERDICTS]
+    words, figures, asked = found[0], found[1], found[3]
+    assert (words["found"], words["found_unit"], words["limit"], words["bound"]) == ("X2", "", "Y1, or Y2+Y2 in series", "")
+    assert (words["nets"], words["path"], words["line"]) == ("PGND, SGND", "bom.csv", "14")
+    assert words["fingerprint"] == VERDICTS[0].fingerprint
+    assert [figures[name] for name in ("found", "found_unit", "found_form", "limit", "bound", "margin")] == [
+        "355", "V", "peak", "340", "at-most", "-0.0441176",
+    ]  # fmt: skip
+    assert asked["missing"].startswith("whether U3 insulates, and its isolation rating (kind and ratings")
+
+
+def test_a_design_that_could_not_be_read_is_a_row():
+    found = rows(csv_writer.write(SEVERAL))
+    assert len(found) == len(VERDICTS) + 1
+    assert {name: cell for name, cell in found[-1].items() if cell} == {
+        "design": "third", "outcome": "unreadable", "what": "there is no such file",
+    }  # fmt: skip
+
+
+def test_lines_end_with_lf_alone():
+    for data in (csv_writer.write(REPORT), csv_writer.spacing(REPORT)):
+        assert b"\r" not in data
+        assert data.endswith(b"\n")
+
+
+FORMULAS = (
+    "=cmd|' /C calc'!A0",
+    "+12V",
+    "-5V",
+    "@SUM(A1)",
+    "\t=1+1",
+    " =1+1",
+    '"=1+1',
+    "a;=1+1",
+    "a; +1",
+    "\uff1d1+1",
+    'a"b,c\nd=e',
+    "\r\n=1+1",
+    "\x00=1",
+)
+
+
+@pytest.mark.parametrize("name", FORMULAS)
+def test_no_cell_is_a_formula_and_none_breaks_its_row(name):
+    one = verdict(name, "fail", [name, "R1"], nets=[name], what=name, because=name, found=Figure(text=name))
+    bridge = msgspec.structs.replace(REPORT.barriers[0].parts[0], part=name, sides=[[name], ["2"]])
+    barrier = msgspec.structs.replace(
+        REPORT.barriers[0], id=f"{name}|x", between=[name, "x"], parts=[bridge], required=[{"ruleset": name, "missing": [name]}]
+    )
+    report = with_verdicts(one, design=name, barriers=[barrier], separations=[], environment={"material_group": name})
+    for data in (csv_writer.write(report), csv_writer.spacing(report)):
+        text = data.decode()
+        assert neutral(text.replace("\n", ""), limit=10**6) == text.replace("\n", "")
+        for row in rows(data):
+            for shown in row.values():
+                assert not re.search(r"(^|;)[\s'\"]*(?<!')[=+\-@\uff1d]", shown), shown
+    assert len(rows(csv_writer.write(report))) == 1
+    assert len(rows(csv_writer.spacing(report))) == 3  # the separation, and the part for each of its two rulesets
+
+
+def test_figures_stay_figures():
+    report = with_verdicts(verdict("fuse", "fail", ["F1"], found=Figure(value=-1.23456789e-7, unit="A", form=""), margin=-1.5))
+    found = rows(csv_writer.write(report))[0]
+    assert (found["found"], found["margin"]) == ("-1.23457e-07", "-1.5")
+
+
+def test_the_spacing_table_has_separations_and_parts_with_what_they_need():
+    data = csv_writer.spacing(REPORT)
+    assert data.decode().split("\n")[0] == (
+        "design,separation,between_1,between_2,part,pins,grade,working_rms_V,working_peak_V,clearance_mm,creepage_mm,"
+        "through_insulation_mm,strength_peak_V,bounded,pollution_degree,material_group,altitude_m,ruleset,because"
+    )
+    both, coupler, house, poles, apart = rows(data)
+    assert (both["separation"], both["part"], both["working_rms_V"], both["clearance_mm"]) == ("mains|VOUT", "", "370", "3")
+    assert (both["strength_peak_V"], both["bounded"], both["ruleset"]) == ("4000", "true", "iec-62368-1")
+    assert (both["pollution_degree"], both["material_group"], both["altitude_m"]) == ("2", "IIIb", "2000")
+    assert (coupler["part"], coupler["pins"], coupler["creepage_mm"], coupler["bounded"]) == ("U1", "1 | 3", "4.8", "false")
+    assert coupler["because"].endswith("more may be needed, settled by the working voltage between DRAIN and SGND")
+    assert (coupler["through_insulation_mm"], coupler["ruleset"]) == ("", "iec-62368-1")  # zero: nothing is known to be needed
+    assert (house["ruleset"], house["strength_peak_V"]) == ("house", "8485.28")  # 6 kV r.m.s.
+    assert (poles["separation"], poles["part"], poles["creepage_mm"]) == ("live|neutral", "", "2.5")
+    assert (apart["separation"], apart["ruleset"], apart["bounded"], apart["creepage_mm"]) == ("mains|earth", "", "", "")
+
+
+# barriers
+
+
+def test_needs_and_statements_stand_side_by_side():
+    lines = barriers.write(REPORT).splitlines()
+    start = lines.index("Barrier mains | VOUT: reinforced")
+    assert lines[start + 1 : start + 13] == [
+        "  because  Mains against an unearthed secondary asks for reinforced.",
+        "  voltage  370 V rms, 510 V peak",
+        "",
+        "                 clearance    creepage         through ins.  test",
+        "  between the two sides",
+        "    iec-62368-1  3 mm                                        2.828 kV rms",
+        "  U1: part; pins 1 | 3; 240 V rms",
+        "    stated       2.5 mm open  not stated       not stated    5 kV SHORT",
+        "    iec-62368-1  2 to 3 mm    at least 4.8 mm  not bounded",
+        "    house                                                    5.5 to 6 kV rms",
+        "  open: settled by the working voltage between DRAIN and SGND",
+        "  explain  mains|VOUT",
+    ]
+    start = lines.index("Further separations for the layout: no part lies across them")
+    assert lines[start + 2 : start + 6] == [
+        "                 creepage",
+        "  live | neutral: basic; 240 V rms, 339.4 V peak (line to line before the fuse)",
+        "    iec-62368-1  2.5 mm",
+        "  mains | earth: basic; not bounded (nothing lies between them)",
+    ]
+
+
+def column_of_tests(form: str, volts: float, asked: dict[str, float]) -> list[str]:
+    """The cells of the test column, statement and need, of a part that states this test voltage."""
+    rating = Figure(value=volts, unit="V", form=form)
+    part = msgspec.structs.replace(REPORT.parts[0], ref="U1", kind="optocoupler", value=None, ratings={"isolation_test": rating})
+    bridge = msgspec.structs.replace(
+        REPORT.barriers[0].parts[0], provided={"isolation_test": volts}, required=[{"ruleset": "r", "electric_strength": asked}]
+    )
+    barrier = msgspec.structs.replace(REPORT.barriers[0], parts=[bridge], required=[])
+    lines = barriers.write(msgspec.structs.replace(REPORT, parts=[part], barriers=[barrier], separations=[])).splitlines()
+    start = next(at for at, line in enumerate(lines) if line.startswith("  U1: optocoupler"))
+    return [line.split(maxsplit=1)[1] for line in lines[start + 1 : start + 3]]
+
+
+@pytest.mark.parametrize(
+    ("form", "volts", "asked", "shown"),
+    [
+        ("rms", 3000.0, {"dc": 4000.0, "rms": 2828.0}, ["3 kV rms", "2.828 kV rms"]),
+        ("rms", 2500.0, {"dc": 4000.0}, ["2.5 kV rms SHORT", "2.828 kV rms"]),
+        ("dc", 3000.0, {"dc": 4000.0, "rms": 2828.0}, ["3 kV dc SHORT", "4 kV dc"]),
+        ("peak", 4000.0, {"rms": 2000.0}, ["4 kV peak", "2.828 kV dc"]),
+        ("", 3000.0, {"dc": 4000.0, "rms": 2828.0}, ["3 kV", "2.828 kV rms"]),
+        ("", 2500.0, {"dc": 4000.0, "rms": 2828.0}, ["2.5 kV SHORT", "2.828 kV rms"]),
+    ],
+)
+def test_a_test_voltage_is_compared_in_the_form_it_is_stated_in(form, volts, asked, shown):
+    assert column_of_tests(form, volts, asked) == shown
+
+
+@pytest.mark.parametrize("width", [20, 60, 80, 100, 140])
+def test_no_line_of_the_barriers_is_wider_than_asked(width):
+    for line in barriers.write(REPORT, width).splitlines():
+        assert len(line) <= max(width, 60)
+
+
+def test_a_page_too_narrow_for_the_columns_says_the_same_in_lines():
+    wide, narrow = (barriers.write(REPORT, width) for width in (100, 60))
+    assert "    house: test 5.5 to 6 kV rms" in narrow.splitlines()
+    for said in ("clearance 2.5 mm open", "creepage not stated", "at least 4.8 mm", "not bounded"):
+        assert said in " ".join(narrow.split())
+    assert sorted(set(wide.split()) - set(narrow.replace(",", "").replace(":", "").split()) - set(narrow.split())) == []
+
+
+@pytest.mark.parametrize("name", HOSTILE)
+@pytest.mark.parametrize("width", [60, 100])
+def test_a_hostile_name_is_harmless_among_the_barriers(name, width):
+    bridge = msgspec.structs.replace(
+        REPORT.barriers[0].parts[0], part=name, sides=[[name], [name]], how=name, required=[{"ruleset": name, "clearance": 3.0}]
+    )
+    barrier = msgspec.structs.replace(
+        REPORT.barriers[0], id=name, between=[name, name], grade=name, reason=name, chains=[[name, name]], parts=[bridge],
+        required=[{"ruleset": name, "clearance": 3.0, "unbounded": ["clearance"], "missing": [name], "step": "s1"}],
+    )  # fmt: skip
+    report = msgspec.structs.replace(REPORT, design=name, barriers=[barrier], separations=[barrier])
+    for said in (barriers.write(report, width), derivation.barrier(report, barrier, width)):
+        for line in said.split("\n"):
+            assert not line.strip().startswith("::")
+            assert not re.search(r"##[A-Za-z]*\[", line)
+            assert neutral(line, limit=10**6) == line
+
+
+def test_every_figure_of_a_barrier_leads_to_its_clause():
+    said = derivation.barrier(REPORT, REPORT.barriers[0])
+    assert [line for line in said.splitlines() if line and not line.startswith((" ", "Caution"))] == [
+        "Separation mains | VOUT: reinforced (barrier)",
+        "Grade",
+        "Working voltage",
+        "Needed by iec-62368-1",
+        "U1: needed by iec-62368-1",
+    ]
+    assert "[ratio * rated] = 340 V peak (derating-commercial)" in said

@@ -109,6 +109,8 @@ class BridgingPart(Record, frozen=True, kw_only=True):
     how: str = ""
     listed: bool = True
     step: str | None = None
+    sides: list[list[str]] = []
+    voltage_step: str | None = None
 
 
 class BarrierShown(Record, frozen=True, kw_only=True):
@@ -214,6 +216,7 @@ class Report(Record, frozen=True, kw_only=True):
     summary: dict[str, int]
     caution: str = CAUTION
     notes: list[str] = []
+    environment: dict[str, str | float] = {}
 
 
 class Unreadable(Record, frozen=True, kw_only=True):

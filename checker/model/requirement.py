@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
+from checker.model.separation import Separation
 from checker.model.step import Step
 from checker.model.table import Table
 
@@ -62,3 +63,15 @@ class Basis:
     ruleset: str
     tables: Mapping[str, Table] = field(default_factory=dict)
     figures: Mapping[str, Any] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
+class Spacing(Separation):
+    """A separation that is no barrier between two domains, with what the domains would otherwise tell.
+
+    nets: of each side. across: the two nets whose voltage stands between the sides: for the two ends of a fuse, which is one
+    conductor until it opens, the pole it sits in and the other one.
+    """
+
+    nets: tuple[tuple[str, ...], tuple[str, ...]] = ((), ())
+    across: tuple[str, str] = ("", "")

@@ -13,6 +13,7 @@ from checker.model.declaration import Declaration, Range, Supply
 from checker.model.domain import Isolation
 from checker.model.fact import Fact
 from checker.model.requirement import Grade, Need
+from checker.model.separation import Separation
 from checker.model.stress import Stress
 from checker.model.verdict import Verdict
 
@@ -88,12 +89,14 @@ class Analysis(Board):
     """All stages' results for one design under one condition; the only thing a rule sees.
 
     grades: (ruleset id, separation id) -> needed grade. needs: (ruleset id, separation id, "" or the part on its own pins).
+    further: what must be kept apart besides the barriers, for the layout; its grades, voltages and needs stand beside theirs.
     """
 
     grades: Mapping[tuple[str, str], Grade] = field(default_factory=dict)
     stress: Stress = field(default_factory=Stress)
     needs: Mapping[tuple[str, str, str], Need] = field(default_factory=dict)
     condition: Condition = NORMAL
+    further: tuple[Separation, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -35,13 +35,15 @@ class Voltage:
 
     shape: "ac" when it follows the mains and changes sign, "dc" when its sign stays and its value is steady, "mixed" otherwise.
     peak is the largest magnitude of the waveform, rms its r.m.s. value (for "dc" both are the direct voltage).
-    frequency: of the fundamental, Hz; 0.0 for "dc", None when nothing tells it.
+    frequency: of the fundamental, Hz; 0.0 for "dc", None when nothing tells it. worst: of a maximum over pairs of nets, the pair
+    that gives it, or the pair that nothing bounds.
     """
 
     rms: Bounds
     peak: Bounds
     shape: str
     frequency: float | None = 0.0
+    worst: tuple[str, str] = ("", "")
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,7 +59,8 @@ class Stress:
     sign: two nets -> 1 when the first is surely above the second all the time, -1 when below, 0 when that is not known.
     across: (part, pair of domains) -> working voltage across that bridging part on its own pins, at the rated supply,
     without tolerance, the far side taken as earthed where that is worse, as insulation is judged.
-    barriers: separation id -> the same as maximum over every pair of nets of its two sides.
+    barriers: separation id (`name|name` for two circuits that nothing crosses) -> the same as maximum over every pair of nets of
+    its two sides.
     """
 
     entries: Mapping[str, Entry] = field(default_factory=dict)

@@ -66,12 +66,17 @@ class Across:
         """The highest between any two nets of its sides; where there are too many of them, of the parts across it."""
         one, two = (self._board.isolation.domains[name].nets for name in separation.between)
         if len(one) * len(two) <= PAIRS:
-            return self.between(one, two, separation.between)
+            return self.pair(separation.between)
         there = [parts.get((ref, separation.between)) for ref in separation.bridged_by]
         found = [voltage for voltage in there if voltage is not None]
         if len(found) < len(there) or not found:
             return None
         return max(found, key=lambda voltage: voltage.peak.never_above or math.inf)
+
+    def pair(self, domains: tuple[str, str]) -> Voltage | None:
+        """The highest between any two nets of two circuits; None where there are too many to look at."""
+        one, two = (self._board.isolation.domains[name].nets for name in domains)
+        return self.between(one, two, domains) if len(one) * len(two) <= PAIRS else None
 
     def between(self, one: Iterable[str], two: Iterable[str], domains: tuple[str, str]) -> Voltage | None:
         """The highest voltage between any net of `one` and any of `two`; None when nothing bounds it and nothing is sure."""
@@ -121,4 +126,4 @@ class Across:
                 (*steps, *facts), result=most if bounded else None, unit="V", form=form, citation=CITATION,
             )  # fmt: skip
             made.append(Bounds(surely, most if bounded else None, step, form=form))
-        return Voltage(made[0], made[1], "mixed", self._frequency)
+        return Voltage(made[0], made[1], "mixed", self._frequency, (first, second))

@@ -7,6 +7,7 @@ direct voltage; how far everything else can be pulled; and, between two circuits
 from __future__ import annotations
 
 from collections.abc import Mapping
+from itertools import combinations
 
 from checker.formulas.waveform import plus
 from checker.model.rule import Board
@@ -23,6 +24,8 @@ from checker.stress.pulls import Pulls, pulls
 from checker.stress.rails import Rail, grounds, rails
 from checker.stress.spread import spread
 from checker.stress.strings import String, strings
+
+MOST_DOMAINS = 16  # circuits of which every pair is looked at, crossed or not
 
 
 def stressed(board: Board) -> Stress:
@@ -50,11 +53,12 @@ def stressed(board: Board) -> Stress:
             earths.setdefault(name, []).append(rail.net)
     across = Across(board, rated, earths, board.setting.mains_frequency if mains else 0.0)
     parts = dict(across.parts())
-    barriers = {
-        separation.id: voltage
-        for separation in board.isolation.separations
-        if (voltage := across.barrier(separation, parts)) is not None
-    }
+    found = {separation.id: across.barrier(separation, parts) for separation in board.isolation.separations}
+    domains = board.isolation.domains
+    for one, two in combinations(domains, 2) if len(domains) <= MOST_DOMAINS else ():
+        if f"{one}|{two}" not in found:
+            found[f"{one}|{two}"] = across.pair((one, two))
+    barriers = {name: voltage for name, voltage in found.items() if voltage is not None}
     return Stress(
         entries=mains,
         direct_entries=entries(board, "dc"),

@@ -1,8 +1,8 @@
-"""One verdict with its whole derivation, for a person at a terminal, from a report alone."""
+"""One verdict, or every figure of one barrier, with the whole derivation, for a person at a terminal, from a report alone."""
 
 from __future__ import annotations
 
-from checker.model.report import Report, StepShown, VerdictShown
+from checker.model.report import BarrierShown, Report, StepShown, VerdictShown
 from checker.units import shown
 from checker.writers.page import Page
 from checker.writers.text import where
@@ -24,16 +24,42 @@ def write(report: Report, verdict: VerdictShown, width: int = WIDTH) -> str:
     page.put()
     page.put("Derivation, what it rests on below each step")
     steps = {step.id: step for step in report.steps}
-    _tree(page, verdict.step, steps)
+    _tree(page, verdict.step, steps, set())
     page.put()
     page.put(f"{verdict.fingerprint}, facts {verdict.facts_hash}", "fingerprint", indent=2)
     page.put(report.caution, "Caution:")
     return page.text()
 
 
-def _tree(page: Page, root: str | None, steps: dict[str, StepShown]) -> None:
-    """Steps depth first; one that was shown before is named by its id only."""
+def barrier(report: Report, shown: BarrierShown, width: int = WIDTH) -> str:
+    """A barrier or another separation: how its grade, its voltages and each figure that is needed came about."""
+    page = Page(width)
+    page.put(f"{' | '.join(shown.between)}: {shown.grade or 'grade not known'} ({shown.reason})", "Separation")
+    steps = {step.id: step for step in report.steps}
     seen: set[str] = set()
+    _section(page, "Grade", shown.step, steps, seen)
+    _section(page, "Working voltage", shown.working_voltage.step if shown.working_voltage else None, steps, seen)
+    for need in shown.required:
+        _section(page, f"Needed by {need.get('ruleset')}", need.get("step"), steps, seen)
+    for bridge in shown.parts:
+        _section(page, f"{bridge.part}: why it lies across", bridge.step, steps, seen)
+        _section(page, f"{bridge.part}: voltage on its pins", bridge.voltage_step, steps, seen)
+        for need in bridge.required:
+            _section(page, f"{bridge.part}: needed by {need.get('ruleset')}", need.get("step"), steps, seen)
+    page.put()
+    page.put(report.caution, "Caution:")
+    return page.text()
+
+
+def _section(page: Page, title: str, root: str | None, steps: dict[str, StepShown], seen: set[str]) -> None:
+    if root is not None:
+        page.put()
+        page.put(title)
+        _tree(page, root, steps, seen)
+
+
+def _tree(page: Page, root: str | None, steps: dict[str, StepShown], seen: set[str]) -> None:
+    """Steps depth first; one that is in `seen`, shown before, is named by its id only."""
     stack = [(root, 1)] if root is not None else []
     while stack:
         at, depth = stack.pop()

@@ -6,13 +6,13 @@ command by a program that reads a log: those start a line with `::`, even after 
 
 from __future__ import annotations
 
-import re
 import textwrap
+from collections.abc import Sequence
+from itertools import zip_longest
 
-from checker.neutral import neutral
+from checker.neutral import harmless, neutral
 
 NARROWEST = 60
-_COMMAND = re.compile(r"##(?=[A-Za-z]{0,32}\[)")
 
 
 class Page:
@@ -37,7 +37,27 @@ class Page:
         later = " " * (column or indent + 2)
         flat = neutral(text, limit=2000)
         wrapped = textwrap.wrap(flat, self.width, initial_indent=first, subsequent_indent=later, break_on_hyphens=False)
-        self.lines += [_harmless(line.rstrip()) for line in wrapped or [first]]
+        self.lines += [harmless(line.rstrip()) for line in wrapped or [first]]
+
+    def grid(self, rows: Sequence[Sequence[str] | str], indent: int = 0) -> bool:
+        """Rows of cells in columns as wide as they need; a text among them is wrapped in between.
+
+        False, and nothing put, when the columns are wider than the page.
+        """
+        cells = [row if isinstance(row, str) else [neutral(cell, limit=self.width) for cell in row] for row in rows]
+        columns = zip_longest(*(row for row in cells if not isinstance(row, str)), fillvalue="")
+        widths = [max(map(len, column)) for column in columns]
+        room = self.width - indent - sum(widths)
+        gap = min(2, room // max(len(widths) - 1, 1))
+        if room < 0 or (gap < 1 and len(widths) > 1):
+            return False
+        for row in cells:
+            if isinstance(row, str):
+                self.put(row, indent=indent)
+            else:
+                line = (" " * gap).join(f"{cell:<{width}}" for cell, width in zip(row, widths, strict=False))
+                self.lines.append(harmless((" " * indent + line).rstrip()))
+        return True
 
     def rule(self, character: str) -> None:
         """A line right across the page."""
@@ -46,13 +66,6 @@ class Page:
     def text(self) -> str:
         """The page, every line ended, without empty lines at the end."""
         return "\n".join(self.lines).rstrip("\n") + "\n"
-
-
-def _harmless(line: str) -> str:
-    bare = line.lstrip()
-    if bare.startswith("::"):
-        line = line[: len(line) - len(bare)] + "\\x3a" + bare[1:]
-    return _COMMAND.sub(r"#\\x23", line)
 
 
 def some(items: list[str], most: int) -> str:

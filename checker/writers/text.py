@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from functools import partial
 
 from msgspec import UNSET
 
@@ -51,13 +52,13 @@ def _several(page: Page, reports: Reports) -> None:
 def _one(page: Page, report: Report, caution: bool = True) -> None:
     variant = f" ({report.variant})" if report.variant else ""
     page.put(f"{report.design}{variant}: {_counts(report.summary)}", "Design")
-    steps = {step.id: step for step in report.steps}
+    failed_block = partial(_failed, steps={step.id: step for step in report.steps})
     now = [verdict for verdict in report.verdicts if verdict.state != "absent"]
     now.sort(key=lambda verdict: LEVELS.index(verdict.level) if verdict.level in LEVELS else len(LEVELS))
     failed = [verdict for verdict in now if verdict.outcome == "fail"]
-    _blocks(page, "FAILED", [verdict for verdict in failed if verdict.conceded is None], steps)
-    _open(page, [verdict for verdict in now if verdict.outcome == "open"])
-    _blocks(page, "FAILED, WITH A CONCESSION", [verdict for verdict in failed if verdict.conceded is not None], steps)
+    _blocks(page, "FAILED", [verdict for verdict in failed if verdict.conceded is None], failed_block)
+    _blocks(page, "OPEN: NOT PROVEN, AND WHAT WOULD SETTLE IT", [verdict for verdict in now if verdict.outcome == "open"], _open)
+    _blocks(page, "FAILED, WITH A CONCESSION", [verdict for verdict in failed if verdict.conceded is not None], failed_block)
     _by_rule(page, "PASSED", [verdict for verdict in now if verdict.outcome == "pass"])
     _by_rule(page, "DOES NOT APPLY", [verdict for verdict in now if verdict.outcome == "not-applicable"])
     _list(page, "GONE SINCE THE BASELINE", [(f"{_who(v)}: {v.what}", v.rule) for v in report.verdicts if v.state == "absent"])
@@ -76,7 +77,7 @@ def _counts(summary: Mapping[str, int]) -> str:
     return ", ".join(said) + (f"; {unconfirmed} passed on a limit that is not verified" if unconfirmed else "")
 
 
-def _blocks(page: Page, title: str, verdicts: Sequence[VerdictShown], steps: Mapping[str, StepShown]) -> None:
+def _blocks(page: Page, title: str, verdicts: Sequence[VerdictShown], block: Callable[[Page, VerdictShown], None]) -> None:
     """Verdicts in full, those about the same parts under one heading, headings in the order of their worst verdict."""
     if not verdicts:
         return
@@ -91,11 +92,11 @@ def _blocks(page: Page, title: str, verdicts: Sequence[VerdictShown], steps: Map
         for at, verdict in enumerate(group):
             if at:
                 page.put()
-            _block(page, verdict, steps)
+            block(page, verdict)
     _more(page, len(verdicts))
 
 
-def _block(page: Page, verdict: VerdictShown, steps: Mapping[str, StepShown]) -> None:
+def _failed(page: Page, verdict: VerdictShown, steps: Mapping[str, StepShown]) -> None:
     def line(label: str, text: str) -> None:
         if text:
             page.put(text, label, 2, COLUMN)
@@ -114,20 +115,13 @@ def _block(page: Page, verdict: VerdictShown, steps: Mapping[str, StepShown]) ->
     line("explain", verdict.fingerprint[:PREFIX] + (f" ({verdict.state})" if verdict.state else ""))
 
 
-def _open(page: Page, verdicts: Sequence[VerdictShown]) -> None:
-    if not verdicts:
-        return
-    page.put()
-    page.put("", "OPEN: NOT PROVEN, AND WHAT WOULD SETTLE IT")
-    for verdict in verdicts[:MOST]:
-        page.put()
-        page.put(f"{_who(verdict)}: {verdict.what}", verdict.level, 2, COLUMN)
-        if verdict.missing:
-            page.put(f"settled by: {verdict.missing.fact} ({verdict.missing.supply_as})", "", COLUMN, COLUMN)
-            for answer in verdict.missing.then:
-                page.put(f"{answer.answer} -> {answer.outcome}", "if", COLUMN, COLUMN + 3)
-        page.put(verdict.fingerprint[:PREFIX], "explain", 2, COLUMN)
-    _more(page, len(verdicts))
+def _open(page: Page, verdict: VerdictShown) -> None:
+    page.put(verdict.what, verdict.level, 2, COLUMN)
+    if verdict.missing:
+        page.put(f"settled by: {verdict.missing.fact} ({verdict.missing.supply_as})", "", COLUMN, COLUMN)
+        for answer in verdict.missing.then:
+            page.put(f"{answer.answer} -> {answer.outcome}", "if", COLUMN, COLUMN + 3)
+    page.put(verdict.fingerprint[:PREFIX], "explain", 2, COLUMN)
 
 
 def _by_rule(page: Page, title: str, verdicts: Sequence[VerdictShown]) -> None:
