@@ -75,6 +75,23 @@ class Net:
 
 
 @dataclass(frozen=True, slots=True)
+class Pad:
+    """Copper of one pin on the board, as in `PadRecord`, joined: ref as in the design, net as in the design or None."""
+
+    ref: str
+    pin: str
+    net: str | None
+    x: float
+    y: float
+    width: float
+    height: float
+    turned: float = 0.0
+    drill: float = 0.0
+    side: str = "both"
+    source: Source = NOWHERE
+
+
+@dataclass(frozen=True, slots=True)
 class Input:
     """One file the run rests on. role: netlist, bom, parts, declaration, project, ruleset, report."""
 
@@ -95,3 +112,4 @@ class Design:
     variant: str | None = None
     has_bom: bool = False
     variants: tuple[str, ...] = field(default=())
+    pads: tuple[Pad, ...] = ()

@@ -68,6 +68,28 @@ class NetRecord:
 
 
 @dataclass(frozen=True, slots=True)
+class PadRecord:
+    """A pad or hole of a layout file: where the copper of one pin lies. Distances in mm, angles in degrees anticlockwise.
+
+    ref, pin: "" for copper that belongs to no part (a via, a hole). label: that of the net in the same reading, "" for none.
+    width, height: of the copper before it is turned, along x and y, 0.0 where the file does not say; a round pad has both equal.
+    drill: diameter of the hole, 0.0 without one. side: "top", "bottom" or "both", as the copper can be reached.
+    """
+
+    ref: str
+    pin: str
+    label: str
+    x: float
+    y: float
+    width: float
+    height: float
+    turned: float = 0.0
+    drill: float = 0.0
+    side: str = "both"
+    source: Source = NOWHERE
+
+
+@dataclass(frozen=True, slots=True)
 class SymbolPin:
     """A pin as the symbol library lists it, whether or not it is on a net."""
 
@@ -118,7 +140,7 @@ class VariantRecord:
 
 @dataclass(frozen=True, slots=True)
 class Reading:
-    """The facts of one file. role: `netlist`, `bom` or `parts`. form: the open format's name."""
+    """The facts of one file. role: `netlist`, `bom` or `parts`. form: the open format's name. pads: of a layout carrier."""
 
     role: str
     form: str
@@ -130,6 +152,7 @@ class Reading:
     variants: tuple[VariantRecord, ...] = ()
     notes: tuple[Note, ...] = ()
     title: str = ""
+    pads: tuple[PadRecord, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
