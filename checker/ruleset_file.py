@@ -224,12 +224,16 @@ def _ordered(node: Node, rows: tuple[tuple[float | str | None, ...], ...], colum
 
 
 def _rounding(node: Node, column: _Column) -> str:
-    said = node.text(limit=40)
-    way, _, step = said.partition(" to ")
-    if way not in ("up", "nearest") or not step or not column.unit or column.unit == PLAIN:
+    """`up to 0.1 mm`, `nearest to 0.1 mm`, or in two steps `up to 0.01 mm, above 0.5 mm to 0.1 mm`."""
+    said = node.text(limit=60)
+    way, _, steps = said.partition(" to ")
+    fine, above, coarse = steps.partition(", above ")
+    figures = (fine, *coarse.split(" to ")) if above else (fine,)
+    if way not in ("up", "nearest") or not all(figures) or len(figures) == 2 or not column.unit or column.unit == PLAIN:
         raise node.error("is no way of rounding", expected="`up to 0.1 mm` or `nearest to 0.1 mm`, in the unit of the last column")
     try:
-        units.parse(step, column.unit.split(" ")[0])
+        for figure in figures:
+            units.parse(figure, column.unit.split(" ")[0])
     except units.UnitError as error:
         raise node.error(error.what, found=error.found, expected=error.expected) from None
     return said

@@ -450,7 +450,7 @@ def _rules_stand() -> bool:
 
 
 shipped = pytest.mark.skipif(not _rules_stand(), reason="not every built-in rule stands in this checkout")
-FILES = ("iec-62368-1", "iec-62368-1-2014", "derating-commercial")
+FILES = ("iec-62368-1", "iec-62368-1-2014", "iec-60664-1", "derating-commercial")
 
 
 @pytest.fixture(autouse=True)
@@ -466,7 +466,7 @@ def plain(name: str) -> dict:
 
 
 @shipped
-@pytest.mark.parametrize("name", ["iec-62368-1", "derating-commercial"])
+@pytest.mark.parametrize("name", ["iec-62368-1", "iec-60664-1", "derating-commercial"])
 def test_a_shipped_ruleset_holds_what_its_file_says(name):
     ruleset, said = rulesets.load(name), plain(name)
     assert (ruleset.id, ruleset.revision, ruleset.path) == (name, said["revision"], f"rulesets/{name}.yaml")
@@ -572,9 +572,10 @@ def test_a_house_layer_tightens_a_shipped_ruleset(tmp_path):
 @shipped
 def test_available_lists_every_shipped_file_newest_edition_first():
     assert [(info.name, info.edition, info.clauses, info.origin) for info in rulesets.available()] == [
-        ("derating-commercial", "", 1, "shipped"),
-        ("iec-62368-1", "2018", 7, "shipped"),
-        ("iec-62368-1", "2014", 7, "shipped"),
+        ("derating-commercial", "", len(plain("derating-commercial")["clauses"]), "shipped"),
+        ("iec-60664-1", "2007", len(plain("iec-60664-1")["clauses"]), "shipped"),
+        ("iec-62368-1", "2018", len(plain("iec-62368-1")["clauses"]), "shipped"),
+        ("iec-62368-1", "2014", len(plain("iec-62368-1")["clauses"]), "shipped"),
     ]
     assert len(list(rulesets.shipped_folder().glob("*.yaml"))) == len(FILES)
 
@@ -583,7 +584,7 @@ def test_an_unknown_name_lists_what_there_is_with_a_suggestion():
     with pytest.raises(ArgumentError) as error:
         rulesets.load("iec-62386-1")
     assert "there is no ruleset iec-62386-1; did you mean `iec-62368-1`?" in str(error.value)
-    assert "Available: derating-commercial, iec-62368-1." in str(error.value)
+    assert "Available: derating-commercial, iec-60664-1, iec-62368-1." in str(error.value)
     for hostile in ("", ":", "iec-62368-1:", "IEC", "..", "a\n::error::b", "x" * 5000):
         with pytest.raises(ArgumentError) as error:
             rulesets.load(hostile)
