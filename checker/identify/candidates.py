@@ -214,6 +214,9 @@ def _attributes(
         for name, read, unit in (
             ("package_pins", packages.body_pins, ""),
             ("pad_span", packages.pad_span, "mm"),
+            ("pad_gap", packages.pad_gap, "mm"),
+            ("body_width", packages.body_width, "mm"),
+            ("lead_span", packages.lead_span, "mm"),
             ("size", packages.size, ""),
         ):
             value = once(read, str(footprint.value))

@@ -39,10 +39,34 @@ _STANDARD = re.compile(
     re.IGNORECASE,
 )
 _IEC_NEAR = re.compile(r"(?<![^\W_])(?:IEC|EN)[\s/&,+]{0,3}\Z", re.IGNORECASE)
+_GRADES = {
+    "functional": "functional", "operational": "functional", "funktions": "functional", "basic": "basic", "basis": "basic",
+    "double": "double", "doppelte": "double", "reinforced": "reinforced", "verst\u00e4rkte": "reinforced",
+}  # fmt: skip
+_GRADE = r"reinforced|basic|double|functional|operational|verst\u00e4rkte|doppelte|basis|funktions"
 _INSULATION = re.compile(
-    r"(?<![^\W_])(?P<grade>reinforced|basic|double|functional)(?:[\s/-]{1,2}or[\s-]|/)?\s{0,2}(?:reinforced\s)?"
-    r"(?P<noun>(?:electrical\s)?(?:insulat|isolat)(?:ion|ed|or|ors))(?![^\W_])",
+    rf"(?<![^\W_])(?P<grade>{_GRADE})(?:[\s/-]{{1,2}}(?:or|and)[\s-]|/)?\s{{0,2}}(?:(?P<also>reinforced)\s)?-?"
+    r"(?P<noun>(?:electrical\s)?(?:insulat|isolat|isolier)(?:ion|ed|or|ors|ung))(?![^\W_])",
     re.IGNORECASE,
+)
+# the grade beside a test voltage or behind `isolated`: `5.7KVRMS REINFORCED`, `1500VDC BASIC`, `ISOLATED REINFORCED 5.2KVDC`
+_TEST = r"(?<![^\W_.,])(?:[0-9]{1,2}(?:[.,][0-9]{1,2})?\s?k|[0-9]{4,5}\s?)V(?:[\s-]?(?:ac|dc|rms|pk|peak))?"
+_BESIDE = re.compile(
+    rf"(?:{_TEST}|(?<![^\W_])(?:isolated|insulated|isolation|insulation)(?:\s?[:=])?)"
+    r"(?:[\s,;(]{1,2}(?=reinforced)|[\s(]{1,2})(?P<grade>reinforced|basic|functional)"
+    rf"(?![^\W_])(?!\s?(?:part|plastic|pin|lead|terminal|case|housing|fib))"
+    rf"|(?<![^\W_])(?P<before>reinforced|basic|functional)[\s,]{{1,2}}(?={_TEST}(?![^\W_]))",
+    re.IGNORECASE,
+)
+# what says that the part is no protection against shock
+_NO_SAFETY = re.compile(
+    r"(?<![^\W_])(?:not?|never)\s(?:to\sbe\s)?(?:(?:suitable|intended|designed|used|meant|approved|rated)\s)?(?:(?:for|as)\s)?(?:an?\s)?"
+    r"safety[\s-](?:isolat|insulat|barrier)\w{0,4}(?![^\W_])",
+    re.IGNORECASE,
+)
+# winding wire whose three layers are made to be reinforced insulation by themselves
+_TRIPLE = re.compile(
+    r"(?<![^\W_])(?:tripl[ey][\s-]{0,2}insulat(?:ed|ion)|TIW|dreifach[\s-]?isoliert\w{0,2})(?![^\W_])", re.IGNORECASE
 )
 
 
@@ -63,11 +87,27 @@ def _found(text: str) -> list[tuple[str, str, int, int]]:
         name = _standard(match, text)
         if name and not _TAKEN_BACK.search(text[max(0, match.start() - _BACK) : match.start()]):
             found.append((name, match[0], *match.span()))
-    for match in _INSULATION.finditer(text):
-        if not _TAKEN_BACK.search(text[max(0, match.start() - _BACK) : match.start()]):
-            found.append((match["grade"].lower(), match[0], *match.span()))
+    found += _grades(text)
     found.sort(key=lambda one: one[2])
     return list({name: (name, words, start, end) for name, words, start, end in reversed(found)}.values())[::-1]
+
+
+def _grades(text: str) -> list[tuple[str, str, int, int]]:
+    """Stated grades of insulation, and winding wire made for it."""
+    found: list[tuple[str, str, int, int]] = []
+    for pattern in (_INSULATION, _BESIDE, _NO_SAFETY, _TRIPLE):
+        for match in pattern.finditer(text):
+            if _TAKEN_BACK.search(text[max(0, match.start() - _BACK) : match.start()]):
+                continue
+            if pattern is _TRIPLE:
+                names = ["triple insulated"]
+            elif pattern is _NO_SAFETY:
+                names = ["functional"]
+            else:
+                words = [word for word in match.groupdict().items() if word[1] and word[0] != "noun"]
+                names = [_GRADES[word.lower()] for _, word in words]
+            found += [(name, match[0], *match.span()) for name in names]
+    return found
 
 
 _CLASS_LIST = re.compile(r"(?:[XY][1-4]\s?[/,&+]\s?){1,4}\Z")
@@ -94,11 +134,12 @@ def _standard(match: re.Match[str], text: str) -> str:
 
 _PIECES = re.compile(r"[\s,;/+|()\[\]]+")
 _NAMES = {name.lower(): name for name in "UL UR cUL cULus cURus VDE ENEC CSA CQC CE CCC BSI KC PSE T\u00dcV".split()} | {
-    "tuv": "T\u00dcV"
+    "tuv": "T\u00dcV",
+    **{word: word for word in ("functional", "basic", "double", "reinforced")},
 }
 _FILLERS = frozenset(
     "and or to per the class classes safety approved approval approvals certified recognized recognised listed insulation "
-    "isolation file iec en din ed edition with rated capacitor cap n/a na none no not nil null nan any tbd yes pending".split()
+    "isolation file iec en din ed edition with rated capacitor cap n/a na none no not nil null nan any tbd yes pending only".split()
 )
 _REFUSING = frozenset("no not non without pending".split())
 _MARKS_PER_CELL = 16

@@ -48,9 +48,12 @@ _WITH_CURRENT = (_PASSIVE - {"resistor"}) | _SEMICONDUCTORS | _CONTACTS | frozen
 _WITH_TOLERANCE = _PASSIVE | frozenset("varistor zener crystal".split())
 # kinds whose text also names a voltage of the load or the transistor: 600 V there is no test voltage
 _SWITCHING = _CONTACTS | {"optocoupler"}
+# a working voltage of these is that of their input or contacts unless the text says insulation
+_FED = _CONTACTS | {"isolated-module", "transformer"}
 _LOWEST_TEST = 500.0  # a lower bare voltage at an insulating part is a supply or a winding
 _LOWEST_TEST_SWITCHING = 1000.0
 _LOWEST_LABELLED = 100.0
+_LOWEST_RATED_TEST = 1500.0  # a `rated insulation voltage` from here on means the test voltage (common practice, no source)
 _LOWEST_WORKING = 50.0  # `working voltage 5 V` at an isolator is its supply
 _HIGHEST_COIL = 110.0
 
@@ -86,7 +89,14 @@ _TEMPERATURE_RANGE = re.compile(
 _TEMPERATURE = re.compile(rf"{_START}(?<!-)(?P<high>[0-9]{{2,3}}){_DEGREES}{_END}(?!/)")
 _NO_TEMPERATURE_BEFORE = re.compile(r"(?:storage|solder\w{0,4}|reflow|peak)[\s=:]{0,2}\Z", re.IGNORECASE)
 _MILLIMETRES = re.compile(rf"{_START}(?P<number>[0-9]{{1,3}}(?:[.,][0-9]{{1,2}})?)\s?mm{_END}")
-_DISTANCE = re.compile(r"creepage|clearance", re.IGNORECASE)
+_DISTANCE = re.compile(
+    r"(?P<creepage>creepage|kriech(?:strecke|weg)\w?)|(?P<clearance>clearance|luft(?:strecke|-)\w?)"
+    r"|(?P<through_insulation>(?<![^\W_])DTI(?![^\W_])|(?:distance\s)?through\s(?:the\s)?insulation|insulation\sthickness)",
+    re.IGNORECASE,
+)
+# the outline of a dual-in-line part as distributors write it: `4DIP 400MIL`, `4-DIP (0.300", 7.62mm)`
+_ROWS = re.compile(r"(?<![0-9.])(?:0?\.(?P<inch>[346]00?)\s?(?:\"|''|in)|(?P<mil>300|400|600)\s?MIL)(?![^\W_])", re.IGNORECASE)
+_DUAL_IN_LINE = re.compile(r"(?<![A-Z])(?:P|C)?DI[PL](?![A-Z])|(?<![A-Z])(?:P|C)?DI[PL](?=[-_ ]?[0-9])", re.IGNORECASE)
 _GROUPED = re.compile(r"(?<![0-9.,])([1-9][0-9]{0,2}),([0-9]{3})(?=\s?V)")
 _LONG_BEFORE_COMMA = re.compile(r"(?<![0-9.,])([0-9]{4,7}),")
 _DATE = re.compile(r"(?<![0-9])(?:[0-9]{4}[-/.][0-9]{1,2}[-/.][0-9]{1,2}|[0-9]{1,2}[./][0-9]{1,2}[./][0-9]{4})(?![0-9])")
@@ -96,9 +106,12 @@ _PRICE = re.compile(
 
 # what a word beside a voltage makes of it
 _LABEL = re.compile(
-    r"(?P<none>(?<![^\W_])(?:V(?:F|GS|GE|TH|BE|EB|C|CL|CC|DD|IN|OUT|IOTM)|ESD|HBM|CDM|CMTI|surge|pulse|sat|clamp\w{0,4})(?![^\W_]))"
+    r"(?P<none>(?<![^\W_])(?:V(?:F|GS|GE|TH|BE|EB|C|CL|CC|DD|IN|OUT|IOTM)|transient|ESD|HBM|CDM|CMTI|surge|pulse|sat|clamp\w{0,4})(?![^\W_]))"
     r"|(?P<impulse>(?<![^\W_])(?:impulse|VIOSM)(?![^\W_]))"
-    r"|(?P<viorm>(?<![^\W_])VIORM(?![^\W_]))|(?P<viowm>(?<![^\W_])VIOWM(?![^\W_]))|(?P<working>(?<![^\W_])working(?:\svoltage)?(?![^\W_]))"
+    r"|(?P<viorm>(?<![^\W_])(?:VIORM|repetitive\speak(?:\s(?:isolation|insulation))?(?:\svoltage)?)(?![^\W_]))"
+    r"|(?P<viowm>(?<![^\W_])(?:VIOWM|continuous\s(?:barrier|isolation|insulation)(?:\swithstand)?(?:\svoltage)?)(?![^\W_]))"
+    r"|(?P<working>(?<![^\W_])working(?:\svoltage)?(?![^\W_]))"
+    r"|(?P<rated>(?<![^\W_])rated\sinsulation\svoltage(?![^\W_]))"
     r"|(?P<test>(?<![^\W_])(?:iso|viso|isol|isolation|insulation(?!\sres)|withstand\w{0,3}|hi-?pot|dwv|dielectric\sstrength|test(?:ed)?)(?:\svoltage)?(?![^\W_]))"
     r"|(?P<coil>(?<![^\W_])coil(?![^\W_]))",
     re.IGNORECASE,
@@ -189,6 +202,9 @@ def _labelled(text: str) -> list[_Volts]:
                     labels[at].add(sort)
             elif at and to_left <= _LABEL_REACH and not _DIGIT.search(text, left, match.start()):
                 labels[at - 1].add(sort)
+    for at in range(1, len(found)):  # `working voltage 600VRMS/849VPK`: one voltage in two forms
+        if not labels[at] and text[found[at - 1][2] : found[at][1]].strip() == "/":
+            labels[at] |= labels[at - 1] & {"working", "viorm", "viowm"}
     return [_Volts(rating, start, end, frozenset(sorts)) for (rating, start, end), sorts in zip(found, labels, strict=True)]
 
 
@@ -208,8 +224,10 @@ def _insulating(found: Found, volts: list[_Volts], amperes: list[tuple[Rating, i
             continue
         if "impulse" in one.labels:
             found.ratings.setdefault("impulse", one.rating)
-        elif one.labels & {"viorm", "viowm"} or (
-            "working" in one.labels and value >= _LOWEST_WORKING and (kind not in _CONTACTS or "test" in one.labels)
+        elif "rated" in one.labels and value >= _LOWEST_RATED_TEST:
+            stated.append(one)
+        elif one.labels & {"viorm", "viowm", "rated"} or (
+            "working" in one.labels and value >= _LOWEST_WORKING and (kind not in _FED or "test" in one.labels)
         ):
             working.append(one)
         elif "test" in one.labels and "working" not in one.labels and value >= _LOWEST_LABELLED:
@@ -378,7 +396,7 @@ def _tolerance(text: str) -> Rating | None:
 
 
 def _distances(text: str) -> dict[str, Rating]:
-    """Creepage and clearance, only where the word stands before or behind the length."""
+    """Creepage, clearance and distance through insulation, only where the word stands before or behind the length."""
     found: dict[str, Rating] = {}
     lengths = list(_MILLIMETRES.finditer(text))
     # `creepage 8 mm, clearance 7 mm` or `8 mm creepage, 7 mm clearance`: one order through the whole text
@@ -386,15 +404,15 @@ def _distances(text: str) -> dict[str, Rating]:
     for at, match in enumerate(lengths):
         if leads:
             left = lengths[at - 1].end() if at else 0
-            names = _DISTANCE.findall(text, max(left, match.start() - 30), match.start())
+            words = _DISTANCE.finditer(text, max(left, match.start() - 30), match.start())
         else:
             right = lengths[at + 1].start() if at + 1 < len(lengths) else len(text)
-            names = _DISTANCE.findall(text, match.end(), min(right, match.end() + 24))
+            words = _DISTANCE.finditer(text, match.end(), min(right, match.end() + 24))
         value = _float(match["number"])
-        for name in names:
-            kept = found.get(name.lower())
+        for name in (word.lastgroup or "" for word in words):
+            kept = found.get(name)
             if kept is None or value < kept.value:
-                found[name.lower()] = Rating(value, "mm", "", match[0])
+                found[name] = Rating(value, "mm", "", match[0])
     return found
 
 
@@ -446,6 +464,9 @@ def _made_of(found: Found, text: str, kind: str) -> None:
         word = _RESISTOR_WORDS.search(text)
         if word is not None:
             found.attributes["technology"] = (_RESISTOR_NAMES[word.lastgroup or ""], word[0])
+    if kind in INSULATING and (rows := _ROWS.search(text)) is not None and _DUAL_IN_LINE.search(text):
+        millimetres = int((rows["mil"] or rows["inch"])[0]) * 2.54
+        found.attributes["row_span"] = (f"{millimetres:g} mm", rows[0])
     if kind not in INSULATING:
         sizes = list(_SIZE.finditer(text))
         if sizes and len({match["size"] for match in sizes}) == 1:
