@@ -159,7 +159,13 @@ class Choice(Parameter):
 
 @dataclass(frozen=True, slots=True)
 class TableName(Parameter):
-    """The id of a table of the ruleset. Another table is not known to be tighter, so it counts as looser."""
+    """The id of a table of the ruleset. more: its larger figures are tighter, so that two tables can be compared.
+
+    By its name alone another table is not known to be tighter, so it counts as looser; `checker.ruleset_layers`, which has the
+    tables, compares their figures.
+    """
+
+    more: bool = False
 
     def read(self, node: Node) -> str:
         return node.name_text()

@@ -11,9 +11,11 @@ from dataclasses import dataclass, replace
 from checker import parameters
 from checker.errors import InputError
 from checker.files import Blob
+from checker.formulas.lookup import look_up
 from checker.model.clause import LEVELS, Clause
 from checker.model.ruleset import Ruleset
 from checker.model.table import Table
+from checker.parameters import TableName
 from checker.ruleset_file import Alteration, RulesetFile, place
 from checker.strict_yaml import suggestion
 
@@ -37,13 +39,13 @@ def joined(file: RulesetFile, blob: Blob, below: Layer | None) -> Layer:
         tables |= below.ruleset.tables
         clauses |= {clause.id: replace(clause, ruleset=file.id) for clause in below.ruleset.clauses}
         made |= below.made
-    for alteration in file.changes:
-        id = _target(alteration, made, file)
-        clauses[id] = _altered(clauses[id], alteration, file, below.label if below else "")
     for name, table in file.tables.items():
         if name in tables:
             raise _twice(file, f"the table {name}", tables[name].origin.path, tables[name].origin.line, table.origin.line)
         tables[name] = table
+    for alteration in file.changes:
+        id = _target(alteration, made, file)
+        clauses[id] = _altered(clauses[id], alteration, file, below.label if below else "", tables)
     for clause in file.clauses:
         if clause.id in clauses:
             other = clauses[clause.id].origin
@@ -63,6 +65,35 @@ def joined(file: RulesetFile, blob: Blob, below: Layer | None) -> Layer:
         tables=tables,
     )
     return Layer(ruleset, made)
+
+
+def _weighed(change: parameters.Change, old: object, new: object, tables: Mapping[str, Table]) -> parameters.Change:
+    """A change of table is looser when the new one asks for less anywhere, where its figures can be compared."""
+    kind = parameters.types_of(type(old))[change.name]
+    before, after = tables.get(getattr(old, change.name)), tables.get(getattr(new, change.name))
+    if not isinstance(kind, TableName) or not kind.more or before is None or after is None:
+        return change
+    return replace(change, looser=asks_less(before, after))
+
+
+def asks_less(old: Table, new: Table) -> bool:
+    """Whether a table of needs has a smaller figure than `old` at any row of either, or no column that `old` has.
+
+    A column for one half of a material group (`pd2_iiib`) is compared with that of the whole group (`pd2_iii`).
+    """
+    pairs = [
+        (column, like)
+        for column in list(new.columns)[1:]
+        for like in (column, column[:-1])
+        if like in list(old.columns)[1:] and new.columns[column] == old.columns[like]
+    ]
+    keys = {float(row[0]) for table in (old, new) for row in table.rows if isinstance(row[0], float)}
+    for column, like in pairs:
+        for key in keys:
+            before, after = look_up(old, like, key), look_up(new, column, key)
+            if before is not None and after is not None and after.value < before.value:
+                return True
+    return not pairs or not keys
 
 
 def _twice(file: RulesetFile, what: str, path: str, line: int, here: int) -> InputError:
@@ -101,8 +132,9 @@ def _target(alteration: Alteration, made: Mapping[str, str], file: RulesetFile) 
     )
 
 
-def _altered(clause: Clause, alteration: Alteration, file: RulesetFile, below: str) -> Clause:
+def _altered(clause: Clause, alteration: Alteration, file: RulesetFile, below: str, tables: Mapping[str, Table]) -> Clause:
     params, changes = parameters.changed(clause.params, alteration.params)
+    changes = tuple(_weighed(change, clause.params, params, tables) for change in changes)
     looser = [(change.node, change.text) for change in changes if change.looser]
     level = clause.level
     if alteration.level is not None:

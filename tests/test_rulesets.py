@@ -623,3 +623,46 @@ def test_every_parameter_type_is_in_the_demonstration():
     assert list(parameters.types_of(Params)) == [field.name for field in fields(Params)]
     node = load_yaml(Blob("x.yaml", b"params: {ratio: 0.5}")).need("params")
     assert parameters.changed(Params(), node)[0] == Params(ratio=0.5)
+
+
+# a house's own table of distances in a mandatory clause
+
+DISTANCES = """\
+schema: withstand-ruleset/1
+id: house-distances
+based_on: iec-62368-1:2018
+sources: {HB: {title: House handbook}}
+tables:
+  creepage-house:
+    columns: {voltage: V rms, pd2_iiib: mm}
+    lookup: interpolate
+    round: up to 0.1 mm
+    source: HB table 3
+    verified: true
+    rows: [ROWS]
+change:
+  iec-62368-1/creepage: {params: {table: creepage-house}, because: our own figures}
+"""
+
+
+def test_a_table_that_asks_for_no_less_anywhere_tightens_a_mandatory_clause(tmp_path):
+    put(tmp_path, DISTANCES.replace("ROWS", "[250, 2.5], [320, 3.4]"), "own.yaml")
+    clause = next(clause for clause in rulesets.load(str(tmp_path / "own.yaml")).clauses if clause.id == "creepage")
+    assert (clause.params.table, clause.loosened) == ("creepage-house", "")
+
+
+@pytest.mark.parametrize(
+    "rows",
+    ["[250, 2.4], [320, 3.4]", "[250, 2.5], [320, 3.1]", "[200, 2.0], [320, 3.0]"],
+    ids=["the first row", "the last row", "between the rows of the standard"],
+)
+def test_a_table_that_asks_for_less_somewhere_loosens_and_is_refused(tmp_path, rows):
+    put(tmp_path, DISTANCES.replace("ROWS", rows), "own.yaml")
+    with pytest.raises(InputError, match="loosens a clause that is mandatory"):
+        rulesets.load(str(tmp_path / "own.yaml"))
+
+
+def test_a_table_without_a_column_to_compare_counts_as_looser(tmp_path):
+    put(tmp_path, DISTANCES.replace("ROWS", "[250, 2.5], [320, 3.4]").replace("pd2_iiib", "board"), "own.yaml")
+    with pytest.raises(InputError, match="loosens a clause that is mandatory"):
+        rulesets.load(str(tmp_path / "own.yaml"))

@@ -43,17 +43,17 @@ class Params:
     supply: which mains voltage chooses the row.
     """
 
-    impulse: Annotated[str, TableName()] = ""
-    temporary: Annotated[str, TableName()] = ""
+    impulse: Annotated[str, TableName(more=True)] = ""
+    temporary: Annotated[str, TableName(more=True)] = ""
     temporary_added: Annotated[float, AtLeast("V", "rms")] = 0.0
-    steady: Annotated[str, TableName()] = ""
-    withstand: Annotated[str, TableName()] = ""
-    high_frequency: Annotated[str, TableName()] = ""
-    pollution: Annotated[str, TableName()] = ""
+    steady: Annotated[str, TableName(more=True)] = ""
+    withstand: Annotated[str, TableName(more=True)] = ""
+    high_frequency: Annotated[str, TableName(more=True)] = ""
+    pollution: Annotated[str, TableName(more=True)] = ""
     frequency: Annotated[float, AtMost("Hz")] = 30000.0
     series: Annotated[str, TableName()] = ""
     reinforced_factor: Annotated[float, AtLeast("")] = 1.6
-    altitude: Annotated[str, TableName()] = ""
+    altitude: Annotated[str, TableName(more=True)] = ""
     supply: Annotated[str, Choice(("rated", "with-tolerance"))] = "rated"
 
 

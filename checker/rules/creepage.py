@@ -37,9 +37,9 @@ class Params:
     reinforced_factor: times basic. between_rows: as the table says, or always the higher row.
     """
 
-    table: Annotated[str, TableName()] = ""
-    high_frequency: Annotated[str, TableName()] = ""
-    pollution: Annotated[str, TableName()] = ""
+    table: Annotated[str, TableName(more=True)] = ""
+    high_frequency: Annotated[str, TableName(more=True)] = ""
+    pollution: Annotated[str, TableName(more=True)] = ""
     frequency: Annotated[float, AtMost("Hz")] = 30000.0
     reinforced_factor: Annotated[float, AtLeast("")] = 2.0
     between_rows: Annotated[str, Choice(("interpolate", "next-higher"))] = "interpolate"

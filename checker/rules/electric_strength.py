@@ -39,10 +39,10 @@ class Params:
     Tables of factors by grade: working on the peak working voltage, overvoltage on the temporary overvoltage.
     """
 
-    transient: Annotated[str, TableName()] = ""
-    temporary: Annotated[str, TableName()] = ""
-    working: Annotated[str, TableName()] = ""
-    overvoltage: Annotated[str, TableName()] = ""
+    transient: Annotated[str, TableName(more=True)] = ""
+    temporary: Annotated[str, TableName(more=True)] = ""
+    working: Annotated[str, TableName(more=True)] = ""
+    overvoltage: Annotated[str, TableName(more=True)] = ""
 
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:

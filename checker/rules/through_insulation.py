@@ -53,7 +53,7 @@ class Params:
     exempt: approvals of isolators that test the insulation itself.
     """
 
-    table: Annotated[str, TableName()] = ""
+    table: Annotated[str, TableName(more=True)] = ""
     above_dc: Annotated[float, AtMost("V", "dc")] = 120.0
     above_peak: Annotated[float, AtMost("V", "peak")] = 70.7
     exempt: Annotated[tuple[str, ...], TextSet()] = ("IEC 60747-5-5", "IEC 60747-17", "VDE 0884", "VDE 0884-10", "VDE 0884-11")
