@@ -84,8 +84,7 @@ def test_phases_several_entries_and_terminals_of_one_pole_have_names_of_their_ow
         "live 2|neutral",
         "live 3|neutral",
     ]
-    two = {"J1": Entry("J1", ("A", "B"), (), None, None), "J10": Entry("J10", ("D",), (), "D", None)}
-    two["J2"] = Entry("J2", ("C",), (), None, "C")
+    two = {"J1": Entry("J1", ("A", "B"), (), None, None), "J10": Entry("J10", ("D", "C"), (), "D", "C", ("D",), ("J2",))}
     parts = {ref: ("connector", dict(enumerate(map(str, entry.poles)))) for ref, entry in two.items()}
     made, stressed = board(parts, two, {net: net for net in "ABCD"}, mains="A B C D")
     assert [one.id for one in separations(made, stressed)] == ["J1 live|J1 neutral", "J2 and J10 live|J2 and J10 neutral"]

@@ -9,7 +9,8 @@ from dataclasses import dataclass
 class Entry:
     """A supply entry. poles: hazardous nets in pin order; line, neutral: where names tell them; earth: nets of earth contacts.
 
-    lines: every pole named as a line, in pin order, of which `line` is the last; phases have several.
+    lines: every pole named as a line, in pin order, of which `line` is the last; phases have several. also: further contacts of
+    one pole each that belong to it, such as the second pin of a plug.
     """
 
     ref: str
@@ -18,3 +19,4 @@ class Entry:
     line: str | None
     neutral: str | None
     lines: tuple[str, ...] = ()
+    also: tuple[str, ...] = ()

@@ -12,7 +12,6 @@ from collections.abc import Iterable, Iterator, Sequence
 from itertools import combinations
 
 from checker.model.domain import Domain
-from checker.model.entry import Entry
 from checker.model.order import natural
 from checker.model.requirement import Grade, Spacing
 from checker.model.rule import Board
@@ -87,18 +86,12 @@ def _poles(board: Board, stress: Stress) -> Iterator[Spacing]:
 
 
 def _entries(stress: Stress) -> list[tuple[str, tuple[str, ...], str | None]]:
-    """(label, poles, the neutral) of each mains entry; terminals of a single pole are one entry together."""
-    whole = [(entry.ref, entry.poles, entry.neutral) for entry in stress.entries.values() if len(entry.poles) > 1]
-    single = [entry for entry in stress.entries.values() if len(entry.poles) == 1]
-    if len({entry.poles for entry in single}) > 1:
-        whole.append(_together(single))
-    return whole
-
-
-def _together(single: Sequence[Entry]) -> tuple[str, tuple[str, ...], str | None]:
-    refs = sorted((entry.ref for entry in single), key=natural)
-    poles = tuple(dict.fromkeys(pole for entry in single for pole in entry.poles))
-    return " and ".join(refs), poles, next((entry.neutral for entry in single if entry.neutral), None)
+    """(label, poles, the neutral) of each mains entry with more than one pole."""
+    return [
+        (" and ".join(sorted((entry.ref, *entry.also), key=natural)), entry.poles, entry.neutral)
+        for entry in stress.entries.values()
+        if len(entry.poles) > 1
+    ]
 
 
 def _names(poles: Sequence[str], neutral: str | None) -> dict[str, str]:

@@ -38,7 +38,8 @@ class Params:
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict per connector that carries a net of known hazard or voltage."""
-    supply_entries = {*analysis.stress.entries, *analysis.stress.direct_entries}
+    found = {**analysis.stress.entries, **analysis.stress.direct_entries}
+    supply_entries = {*found, *(ref for entry in found.values() for ref in entry.also)}
     lines = analysis.stress.lines
     outputs = {output.net: output for output in analysis.declaration.outputs}
     for ref, candidate in analysis.choice.items():

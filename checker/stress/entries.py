@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from dataclasses import replace
 
 from checker.model.entry import Entry
 from checker.model.names import entry_like, role, supply_volts, tokens
@@ -40,7 +41,43 @@ def entries(board: Board, hazard: str = "mains") -> Mapping[str, Entry]:
             if score < best and alone and reached.isdisjoint(entry.poles):
                 found[ref] = entry
                 reached |= carried(board, (entry,))
-    return found
+        found.update(_other_pole(found, [entry for _, _, entry in scored]))
+    return _together(found)
+
+
+def _together(found: Mapping[str, Entry]) -> Mapping[str, Entry]:
+    """The entries; contacts of one pole each (a terminal for the line, one for the neutral) are one entry together."""
+    single = [entry for entry in found.values() if len(entry.poles) == 1]
+    poles = dict.fromkeys(pole for entry in single for pole in entry.poles)
+    if len(poles) < 2:
+        return found
+    lines = tuple(dict.fromkeys(line for entry in single for line in entry.lines))
+    first = replace(
+        single[0],
+        poles=tuple(poles),
+        earth=tuple(dict.fromkeys(net for entry in single for net in entry.earth)),
+        line=lines[-1] if lines else None,
+        neutral=next((entry.neutral for entry in single if entry.neutral), None),
+        lines=lines,
+        also=tuple(entry.ref for entry in single[1:]),
+    )
+    return {ref: first if entry is single[0] else entry for ref, entry in found.items() if entry not in single[1:]}
+
+
+def _other_pole(found: Mapping[str, Entry], every: Iterable[Entry]) -> Mapping[str, Entry]:
+    """Contacts of one pole each, such as the two pins of a plug: where an entry has one pole only, those with the other.
+
+    The other pole is the one whose name says so; without names, the only other contact of one pole that is no outlet.
+    """
+    poles = {pole for entry in found.values() for pole in entry.poles}
+    if len(poles) != 1:
+        return {}
+    first = next(iter(found.values()))
+    others = [entry for entry in every if len(entry.poles) == 1 and entry.poles[0] not in poles]
+    named = [entry for entry in others if (entry.neutral if first.neutral is None else entry.line) is not None]
+    chosen = named if first.line is not None or first.neutral is not None else others
+    nets = {entry.poles[0] for entry in chosen}
+    return {entry.ref: entry for entry in chosen} if len(nets) == 1 else {}
 
 
 def _names_supply(board: Board, entry: Entry) -> bool:

@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from collections import deque
 from collections.abc import Iterable, Iterator, Mapping
-from dataclasses import replace
 
 from checker.formulas.waveform import Wave, sine
 from checker.model.entry import Entry
@@ -89,7 +88,7 @@ def pole_potentials(board: Board, entries: Iterable[Entry], tolerance: bool) -> 
     if voltage is None or mains is None:
         return {}
     found: dict[str, Potential] = {}
-    for entry in _whole(entries):
+    for entry in entries:
         frame = board.isolation.domain_of[entry.poles[0]]
         waves = _waves(entry, voltage, mains.phases or 1)
         said = f"{mains.voltage.high:g} V" + (f" + {mains.tolerance.high:g} %" if tolerance and mains.tolerance else "")
@@ -100,20 +99,6 @@ def pole_potentials(board: Board, entries: Iterable[Entry], tolerance: bool) -> 
             )  # fmt: skip
             found.setdefault(net, Potential(frame, wave, wave, step, held=True))
     return found
-
-
-def _whole(entries: Iterable[Entry]) -> Iterator[Entry]:
-    """The entries, those of a single pole (a terminal for the line, one for the neutral) taken together as one."""
-    single = []
-    for entry in entries:
-        if len(entry.poles) > 1:
-            yield entry
-        else:
-            single.append(entry)
-    if single:
-        poles = tuple(dict.fromkeys(pole for entry in single for pole in entry.poles))
-        neutral = next((entry.neutral for entry in single if entry.neutral), None)
-        yield replace(single[0], poles=poles, neutral=neutral)
 
 
 def _waves(entry: Entry, voltage: float, phases: int) -> dict[str, tuple[Wave, str]]:
