@@ -20,7 +20,7 @@ from checker.model.separation import Separation
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
 from checker.stress.between import NONE, Voltages
-from checker.stress.potential import Potential
+from checker.stress.potential import Potential, Swing
 
 CITATION = "IEC 62368-1 5.4.1.8 (from memory)"
 PAIRS = 2500  # pairs of nets of a barrier that are looked at one by one; beyond that its bridging parts stand for it
@@ -46,7 +46,7 @@ class Across:
             for name, nets in earths.items()
         }
         self._numbers: dict[tuple[tuple[Wave, ...], ...], int] = {}
-        self._known: dict[tuple[Wave, Wave, Wave, Wave, int], _Extremes] = {}
+        self._known: dict[tuple[Wave, Wave, Swing | None, Wave, Wave, Swing | None, int], _Extremes] = {}
 
     def parts(self) -> Iterator[tuple[tuple[str, tuple[str, str]], Voltage]]:
         """((reference, pair of domains), voltage) of each bridging part on its own pins; a chain member has the whole of it."""
@@ -99,15 +99,10 @@ class Across:
 
     def _extremes(self, one: Potential, two: Potential, domains: tuple[str, str]) -> _Extremes:
         choices = tuple(self._earths.get(name) or (0.0,) for name in domains)
-        key = (one.low, one.high, two.low, two.high, self._numbers.setdefault(choices, len(self._numbers)))
+        number = self._numbers.setdefault(choices, len(self._numbers))
+        key = (one.low, one.high, one.swing, two.low, two.high, two.swing, number)
         if key not in self._known:
-            found = []
-            for earth, tied in product(*choices):
-                low = minus(minus(one.low, earth), minus(two.high, tied))
-                high = minus(minus(one.high, earth), minus(two.low, tied))
-                sure, most = least(low, high), largest(low, high)
-                bounded = math.isfinite(top(most))
-                found.append(_Extremes(rms(sure), top(sure), rms(most) if bounded else math.inf, top(most)))
+            found = [_at(one, two, earth, tied) for earth, tied in product(*choices)]
             self._known[key] = _Extremes(*(max(getattr(each, name) for each in found) for name in _Extremes.__slots__))
         return self._known[key]
 
@@ -127,3 +122,28 @@ class Across:
             )  # fmt: skip
             made.append(Bounds(surely, most if bounded else None, step, form=form))
         return Voltage(made[0], made[1], "mixed", self._frequency, (first, second))
+
+
+def _at(one: Potential, two: Potential, earth: Wave, tied: Wave) -> _Extremes:
+    """Between two nets with these points of theirs at earth."""
+    low = minus(minus(one.low, earth), minus(two.high, tied))
+    high = minus(minus(one.high, earth), minus(two.low, tied))
+    sure, most = least(low, high), largest(low, high)
+    if not math.isfinite(top(most)):
+        return _Extremes(rms(sure), top(sure), math.inf, top(most))
+    if one.swing is None and two.swing is None:
+        return _Extremes(rms(sure), top(sure), rms(most), top(most))
+    rest = [(swing.low, swing.high) if (swing := each.swing) is not None else (each.low, each.high) for each in (one, two)]
+    low = minus(minus(rest[0][0], earth), minus(rest[1][1], tied))
+    high = minus(minus(rest[0][1], earth), minus(rest[1][0], tied))
+    still = least(low, high)
+    return _Extremes(rms(still), top(still), math.hypot(rms(largest(low, high)), _swinging(one.swing, two.swing)), top(most))
+
+
+def _swinging(one: Swing | None, two: Swing | None) -> float:
+    """The highest r.m.s. value that windings add to a difference: |N| x sqrt(-e_low x e_high), for one core of its own N1 - N2."""
+    if one is not None and two is not None and one.core == two.core:
+        pairs = zip(one.ways, two.ways, strict=True)
+        return max(abs(first - second) * math.sqrt(max(0.0, -low * high)) for (first, low, high), (second, _, _) in pairs)
+    each = [max(abs(turns) * math.sqrt(max(0.0, -low * high)) for turns, low, high in swing.ways) for swing in (one, two) if swing]
+    return sum(each)

@@ -10,15 +10,31 @@ from checker.model.step import Step
 
 
 @dataclass(frozen=True, slots=True)
+class Swing:
+    """What a winding adds to a potential: turns x volts per turn, whose mean over a switching cycle is zero.
+
+    low, high: the potential without it. ways: (turns with their sign, least and highest volts per turn) for each set of
+    winding directions that the circuit allows; one core has the same sets for all its nets, in the same order.
+    """
+
+    core: str
+    low: Wave
+    high: Wave
+    ways: tuple[tuple[float, float, float], ...]
+
+
+@dataclass(frozen=True, slots=True)
 class Potential:
     """low <= potential <= high at every moment of the mains cycle, V against the reference of `frame`, in normal use at the
-    highest supply voltage. held: something holds the net at a steady potential (a supply, a smoothing capacitor)."""
+    highest supply voltage. held: something holds the net at a steady potential (a supply, a smoothing capacitor). swing: what a
+    winding has in low and high, None for a net on none."""
 
     frame: str
     low: Wave
     high: Wave
     step: Step
     held: bool = False
+    swing: Swing | None = None
 
     @property
     def bounded(self) -> bool:

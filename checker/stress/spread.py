@@ -11,6 +11,7 @@ import math
 from collections import deque
 from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import reduce
 
 from checker.formulas.waveform import Wave, bottom, higher, lower, plus, top
 from checker.model.step import Step
@@ -28,9 +29,15 @@ class Field:
     usual: dict[str, Potential] = field(default_factory=dict)
 
 
-def spread(sources: Mapping[str, Potential], line: Collection[str], pulls: Pulls, frame_of: Callable[[str], str | None]) -> Field:
+def spread(
+    sources: Mapping[str, Potential],
+    line: Collection[str],
+    pulls: Pulls,
+    frame_of: Callable[[str], str | None],
+    wound: Mapping[str, Potential],
+) -> Field:
     """The potential of every conductor of `pulls`. line: those sources that follow the line, which moves what a capacitor ties
-    to it. frame_of: conductor -> its frame, None for one without a domain."""
+    to it. frame_of: conductor -> its frame, None for one without a domain. wound: conductors on windings, in normal use."""
     moving = {net for net in pulls.agile if net not in sources} | set(line)
     swings = set(pulls.swings)
     for one, other in pulls.coupled:
@@ -49,6 +56,7 @@ def spread(sources: Mapping[str, Potential], line: Collection[str], pulls: Pulls
             continue
         step = _between(net, lowest, highest, ends)
         found.sure[net] = found.usual[net] = Potential(frame, below, above, step)
+    found.usual.update(wound)
     _by_ratings(found, pulls, sources, swings)
     return found
 
@@ -123,14 +131,15 @@ def _reached(
 
 
 def _by_ratings(found: Field, pulls: Pulls, sources: Mapping[str, Potential], swings: set[str]) -> None:
-    """Narrows every net by what the parts on it are rated for, then bounds by its neighbours what is not bounded yet."""
+    """Narrows what physics alone does not bound by its neighbours, and every net by what the parts on it are rated for."""
+    loose = [net for net, known in found.sure.items() if not (known.bounded or net in sources or net in swings)]
     for _ in range(ROUNDS):
         changed = False
+        for net in loose:
+            changed |= _pulled(found, pulls, net)
         for one, other, volts, back in pulls.usual:
             for net, far, up, down in ((one, other, volts, back), (other, one, back, volts)):
                 changed |= _narrowed(found, sources, net, far, up, down)
-        for net in [net for net, known in found.usual.items() if not (known.bounded or net in sources or net in swings)]:
-            changed |= _pulled(found, pulls, net)
         if not changed:
             return
 
@@ -151,30 +160,25 @@ def _narrowed(found: Field, sources: Mapping[str, Potential], net: str, far: str
     step = Step(
         f"in normal use {net} keeps within {max(up, down):g} V of {far}, for which a part between them is rated", (there.step,)
     )
-    found.usual[net] = Potential(known.frame, low, high, step)
+    found.usual[net] = Potential(known.frame, low, high, step, swing=known.swing)
     return True
 
 
 def _pulled(found: Field, pulls: Pulls, net: str) -> bool:
-    """Bounds a conductor anew by those that pull it, once these are bounded in normal use."""
+    """Bounds a conductor by those that pull it, where these are bounded nearer in normal use than it is itself."""
     known = found.usual[net]
-    pulling = {
-        "high": _neighbours(found, pulls.up, net, known.frame) if math.isinf(top(known.high)) else None,
-        "low": _neighbours(found, pulls.down, net, known.frame) if math.isinf(bottom(known.low)) else None,
-    }
-    high, low = known.high, known.low
-    ends: list[Potential] = []
-    if pulling["high"]:
-        ends += pulling["high"]
-        high = ends[0].high
-        for other in pulling["high"]:
-            high = higher(high, other.high)
-    if pulling["low"]:
-        ends += pulling["low"]
-        low = pulling["low"][0].low
-        for other in pulling["low"]:
-            low = lower(low, other.low)
-    if (high == known.high and low == known.low) or (math.isinf(top(high)) and math.isinf(bottom(low))):
+    high, low, ends = known.high, known.low, list[Potential]()
+    pulling = _neighbours(found, pulls.up, net, known.frame)
+    if pulling:
+        reached = reduce(higher, (other.high for other in pulling))
+        if top(reached) < top(high):
+            high, ends = reached, [*ends, *pulling]
+    pulling = _neighbours(found, pulls.down, net, known.frame)
+    if pulling:
+        reached = reduce(lower, (other.low for other in pulling))
+        if bottom(reached) > bottom(low):
+            low, ends = reached, [*ends, *pulling]
+    if not ends:
         return False
     step = Step(f"in normal use {net} lies between what it hangs on", tuple(end.step for end in ends[:2]))
     found.usual[net] = Potential(known.frame, low, high, step)

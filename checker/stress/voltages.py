@@ -17,6 +17,7 @@ from checker.stress.across import Across
 from checker.stress.between import Voltages
 from checker.stress.buses import buses
 from checker.stress.conductors import conductors
+from checker.stress.cores import cores
 from checker.stress.entries import carried, entries
 from checker.stress.lines import pole_potentials, poles
 from checker.stress.potential import Potential
@@ -91,7 +92,7 @@ def _voltages(
     def frame_of(net: str) -> str | None:
         return board.isolation.domain_of.get(net)
 
-    found = spread(sources, line, edges, frame_of)
+    found = spread(sources, line, edges, frame_of, cores(board, sources, same))
     return Voltages(board, found, same, strung, board.setting.mains_frequency)
 
 
