@@ -83,6 +83,8 @@ def _candidate(part: Part, facts: Sequence[Fact], declared: DeclaredPart | None,
             rated.setdefault(
                 name, Fact(f"rating:{name}", number, fact.source, Trust.CATALOGUE, unit, form, f"{found.type}: {found.source}")
             )
+    if kind == "transformer":
+        rated.update(_rated_voltages(texts, once))
     wound = declared.windings if declared is not None and declared.windings else _windings(facts, once)
     return Candidate(
         kind=kind,
@@ -305,6 +307,19 @@ def _generic(texts: Sequence[Fact], once: Callable[..., Any]) -> tuple[Fact, Any
         if fact.attribute in ("value", "type") and (found := once(catalogue.find, fact.value)) is not None:
             return fact, found
     return None
+
+
+def _rated_voltages(texts: Sequence[Fact], once: Callable[..., Any]) -> dict[str, Fact]:
+    """Ratings `primary` and `secondary` of a mains transformer, out of the first text that states both."""
+    for fact in texts:
+        volts = once(windings.rated_voltages, fact.value) if fact.attribute in ("value", "description") else None
+        if volts is not None:
+            names = ("primary", "secondary")
+            return {
+                name: Fact(f"rating:{name}", figure, fact.source, fact.trust, "V", "rms", str(fact.value))
+                for name, figure in zip(names, volts, strict=True)
+            }
+    return {}
 
 
 def _windings(facts: Sequence[Fact], once: Callable[..., Any]) -> tuple[Winding, ...]:

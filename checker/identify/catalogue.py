@@ -26,8 +26,9 @@ class Generic:
     """A generic type and what any maker promises of it.
 
     ratings: `voltage` is the repetitive reverse voltage of a diode, drain or collector voltage of a transistor, stand-off
-    voltage of a suppressor, highest cathode voltage of a shunt reference; `current` and `power` as usual; `zener_voltage`,
-    `reference`, `output` (of a fixed regulator) and `minimum_current` are nominal figures that only their kinds have.
+    voltage of a suppressor, highest cathode voltage of a shunt reference, highest input voltage of a regulator; `current` and
+    `power` as usual; `zener_voltage`, `reference`, `output` (of a fixed regulator) and `minimum_current` are nominal figures
+    that only their kinds have.
     source: where the figures are from.
     Insulation is not among them: what a coupler withstands is its maker's word alone.
     """
@@ -152,9 +153,10 @@ _LINEAR_REFERENCE = _generic("317", "regulator", reference=1.25)
 
 
 def _fixed_linear(match: re.Match[str]) -> Generic:
-    """7805, 78L12, 7905: the last two figures are the output, negative for the 79 series."""
+    """7805, 78L12, 7905: the last two figures are the output, negative for the 79 series; 35 V in, the small L types 30 V."""
     volts = float(match[2]) * (-1 if match[1] == "79" else 1)
-    return _generic(f"{match[1]}{match[2]}", "regulator", output=volts)
+    small = f"{match[1]}L" in match[0]
+    return _generic(f"{match[1]}{match[2]}", "regulator", LOWEST, output=volts, voltage=30.0 if small else 35.0)
 
 
 def _low_drop(match: re.Match[str]) -> Generic:
@@ -163,7 +165,7 @@ def _low_drop(match: re.Match[str]) -> Generic:
     if not said[0].isdigit():
         return _generic("1117 adjustable", "regulator", reference=1.25)
     volts = float(said if "." in said else f"{said[0]}.{said[1:] or 0}")
-    return _generic(f"1117-{volts:g}", "regulator", output=volts)
+    return _generic(f"1117-{volts:g}", "regulator", LOWEST, output=volts, voltage=15.0)
 
 
 _SERIES: list[tuple[re.Pattern[str], Callable[[re.Match[str]], Generic]]] = [

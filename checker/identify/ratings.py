@@ -67,6 +67,10 @@ _VOLTAGE = re.compile(
     rf"{_TOUCHING}(?P<number>{_NUMBER})(?:(?P<gap>\s{{1,2}})|)(?P<prefix>[kKm]?)W?(?P<volt>[Vv])(?:[\s(-]?(?P<form>(?i:{_FORM}))\)?)?"
     rf"{_END}(?!\s?/\s?(?:[num]?s|[mc]?m)(?![^\W_]))(?!-[0-2](?![0-9.]))"
 )
+# the stand-off voltage of a suppressor: `15VWM 24.4VC`, `VRWM 33V`
+_STANDOFF = re.compile(
+    rf"{_START}(?P<before>{_NUMBER})\s?VR?WM(?![^\W_])|(?<![^\W_])VR?WM[\s=:]{{0,2}}(?P<after>{_NUMBER})\s?V{_END}", re.IGNORECASE
+)
 _SPLIT_VOLTAGE = re.compile(rf"{_START}(?P<whole>[0-9]{{1,2}})V(?P<part>[0-9]){_END}")
 _CURRENT = re.compile(
     rf"{_START}(?P<number>{_NUMBER})\s{{0,2}}(?P<prefix>[mMk]?)(?:A|Amps?|AMPS?)[\s]?(?P<form>(?i:rms|dc|ac|pk|peak)?){_END}"
@@ -282,6 +286,8 @@ def _ordinary(found: Found, volts: list[_Volts], text: str, kind: str) -> None:
             rated.append(one)
     if (test := _lowest(tests)) is not None:
         found.ratings["isolation_test"] = test
+    if kind == "tvs" and (standoff := _STANDOFF.search(text)) is not None:
+        found.ratings["voltage"] = Rating(_float(standoff["before"] or standoff["after"]), "V", "dc", standoff[0].strip())
     if kind not in _WITH_VOLTAGE:
         return
     voltage = rated[0].rating if kind in _SEMICONDUCTORS and rated else _lowest(rated)

@@ -82,3 +82,19 @@ def _described(description: str) -> tuple[Winding, ...]:
         return ()
     found = [Winding(pins, (count,), name) for (name, pins), count in zip(named, turns, strict=True) if pins and len(pins) == 2]
     return tuple(found) if len(found) == len(turns) and _apart(found) else ()
+
+
+_RATED = re.compile(r"(?<![\w.,])(?:\d ?[xX*\u00d7] ?)?(?<![\d.,])(\d{1,3}(?:[.,]\d)?) ?V(?:AC|~| ?rms)?(?!\w)", re.IGNORECASE)
+_PRIMARY = ((100.0, 127.0), (200.0, 240.0), (380.0, 415.0))  # rated mains voltages of the world
+_SECONDARY = 60.0  # V; above it a figure may be either side's
+
+
+def rated_voltages(text: str) -> tuple[float, float] | None:
+    """(primary, highest secondary) rated voltage of one winding each, V r.m.s., of a mains transformer: `2x115V/2x15V 12VA`,
+    `230V 9V 3VA`. None unless there is one figure of a mains voltage and at least one of a low one, and no other."""
+    figures = {float(found[1].replace(",", ".")) for found in _RATED.finditer(text[: limits.CELL])}
+    primary = {volts for volts in figures if any(low <= volts <= high for low, high in _PRIMARY)}
+    secondary = {volts for volts in figures if 0 < volts <= _SECONDARY}
+    if len(primary) != 1 or not secondary or primary | secondary != figures:
+        return None
+    return primary.pop(), max(secondary)

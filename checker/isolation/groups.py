@@ -35,7 +35,7 @@ def groups(part: Part, candidate: Candidate, across_diode: Callable[[str, str], 
     if kind in TRANSFORMERS:
         return _windings(part, candidate) or (halves(part, candidate) if len(part.pins) >= MAGNETICS_PINS else ())
     if kind in HALVED:
-        return halves(part, candidate) or _by_suffix(part)
+        return _light_and_output(part) or halves(part, candidate) or _by_suffix(part)
     if kind == "isolated-module":
         return _module(part, candidate)
     if kind == "relay":
@@ -65,6 +65,23 @@ def halves(part: Part, candidate: Candidate) -> Groups:
 
 def _numbered(pin: Pin) -> bool:
     return pin.number.isdecimal() and pin.number.isascii() and 0 < len(pin.number) < 5 and int(pin.number) > 0
+
+
+_LIGHT = frozenset({"A", "K", "AN", "CA", "ANODE", "CATHODE", "LED+", "LED-"})
+_OUTPUT = frozenset(
+    {"E", "B", "C", "COL", "EM", "COLLECTOR", "EMITTER", "BASE", "VO", "VOUT", "VE", "MT1", "MT2", "T1", "T2", "D", "S"}
+)
+_NO_PIN = frozenset({"", "~", "NC", "N/C", "N.C."})
+
+
+def _light_and_output(part: Part) -> Groups:
+    """The light side and the output side of a coupler with one channel, by pin names: a body may have more places than pins
+    that the symbol shows, so its numbers alone mislead. () when the names do not tell every pin."""
+    names = {pin.number: pin.name.strip().upper() for pin in part.pins if pin.net is not None}
+    light = tuple(number for number, name in names.items() if name in _LIGHT)
+    output = tuple(number for number, name in names.items() if name in _OUTPUT)
+    told = len(light) + len(output) + sum(name in _NO_PIN for name in names.values())
+    return (light, output) if len(light) == 2 and len(output) >= 2 and told == len(names) else ()
 
 
 def _by_suffix(part: Part) -> Groups:

@@ -136,8 +136,10 @@ def _at(one: Potential, two: Potential, earth: Wave, tied: Wave) -> _Extremes:
     rest = [(swing.low, swing.high) if (swing := each.swing) is not None else (each.low, each.high) for each in (one, two)]
     low = minus(minus(rest[0][0], earth), minus(rest[1][1], tied))
     high = minus(minus(rest[0][1], earth), minus(rest[1][0], tied))
-    still = least(low, high)
-    return _Extremes(rms(still), top(still), math.hypot(rms(largest(low, high)), _swinging(one.swing, two.swing)), top(most))
+    still, swinging = least(low, high), _swinging(one.swing, two.swing)
+    apart = all(swing is None or swing.apart for swing in (one.swing, two.swing))
+    whole = math.hypot(rms(largest(low, high)), swinging) if apart else rms(largest(low, high)) + swinging
+    return _Extremes(rms(still), top(still), min(whole, top(most)), top(most))
 
 
 def _swinging(one: Swing | None, two: Swing | None) -> float:

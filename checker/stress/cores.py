@@ -17,11 +17,12 @@ rating is judged by what stands here.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from dataclasses import dataclass
-from itertools import product
+from itertools import pairwise, product
 
 from checker.formulas.waveform import bottom, higher, lower, minus, plus, top
+from checker.model.candidate import Winding
 from checker.model.fact import Fact
 from checker.model.rule import Board
 from checker.model.step import Step
@@ -29,6 +30,7 @@ from checker.model.terminals import GROUND, named
 from checker.stress.buses import diodes
 from checker.stress.potential import DROPS, SENSE, Potential, Swing
 
+NO_LOAD = 1.3  # a small mains transformer without load over its rated voltage, at most (from memory: 10 to 30 % above)
 WINDINGS = 8  # of one core; beyond, the sets of directions are too many to try
 SPIKE = 1.5  # peak over plateau of a winding's swing (usual default of clamp design, second hand)
 TOLERANCE = 0.1  # part by which two plateaus may miss one another and still be the same (common practice, no source)
@@ -64,10 +66,14 @@ class _Way:
     high: float
 
 
-def cores(board: Board, sources: Mapping[str, Potential], same: Mapping[str, str]) -> dict[str, Potential]:
-    """Conductor on a winding -> its potential in normal use, for every core whose turns are stated and whose e is bounded."""
+def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str], same: Mapping[str, str]) -> dict[str, Potential]:
+    """Conductor on a winding -> its potential in normal use, for every core whose turns are known and whose e is bounded.
+
+    line: the poles of the mains; a core with a winding between two of them swings with the line, not apart from it.
+    """
     near = _near(board, sources, same)
     valves = list(_valves(board, same, near))
+    sources = {**_railed(valves, sources), **sources}
     found: dict[str, Potential] = {}
     for ref, candidate in board.choice.items():
         if candidate.kind == "transformer" and board.design.parts[ref].fitted:
@@ -79,22 +85,44 @@ def cores(board: Board, sources: Mapping[str, Potential], same: Mapping[str, str
                     if math.isfinite(way.low) and math.isfinite(way.high)
                 ]
                 if ways:
-                    found.update(_potentials(board, ref, ways, valves, sources))
-    return {net: known for net, known in found.items() if net not in sources}
+                    apart = not any(section.one in line and section.two in line for section in sections)
+                    found.update(_potentials(board, ref, ways, valves, sources, apart))
+    return {net: known for net, known in found.items() if not (net in sources and sources[net].held)}
 
 
 def _sections(board: Board, ref: str, same: Mapping[str, str]) -> list[_Section]:
-    """The sections of a core; empty when the turns of one winding are not stated."""
+    """The sections of a core; empty when the turns of one winding are neither stated nor follow from rated voltages."""
     at = {pin.number: pin.net for pin in board.design.parts[ref].pins}
     found = []
-    for number, winding in enumerate(board.choice[ref].windings):
-        if len(winding.turns) != len(winding.pins) - 1:
+    for number, winding in enumerate(board.choice[ref].windings or _by_sides(board, ref)):
+        turns = winding.turns or (_rated_turns(board, ref, at.get(winding.pins[0])),) * (len(winding.pins) - 1)
+        if len(turns) != len(winding.pins) - 1 or not all(turns):
             return []
-        for turns, (first, second) in zip(winding.turns, zip(winding.pins, winding.pins[1:], strict=False), strict=True):
+        for count, (first, second) in zip(turns, pairwise(winding.pins), strict=True):
             one, two = at.get(first), at.get(second)
-            if one is not None and two is not None and turns > 0:
-                found.append(_Section(same.get(one, one), same.get(two, two), turns, number))
+            if one is not None and two is not None:
+                found.append(_Section(same.get(one, one), same.get(two, two), count, number))
     return found
+
+
+def _rated_turns(board: Board, ref: str, net: str | None) -> float:
+    """For a mains transformer the rated voltage of the winding stands for its turns, that of a secondary without load."""
+    primary, secondary = (board.choice[ref].ratings.get(name) for name in ("primary", "secondary"))
+    domain = board.isolation.domain_of.get(net or "")
+    if primary is None or secondary is None or domain is None:
+        return 0.0
+    on_mains = board.isolation.domains[domain].hazard == "mains"
+    return float(primary.value) if on_mains else NO_LOAD * float(secondary.value)
+
+
+def _by_sides(board: Board, ref: str) -> tuple[Winding, ...]:
+    """The windings of a transformer of which none is stated, with two or three pins on each side: one a side, else none."""
+    sides: dict[str, list[str]] = {}
+    for pin in board.design.parts[ref].pins:
+        domain = board.isolation.domain_of.get(pin.net or "")
+        if domain is not None:
+            sides.setdefault(domain, []).append(pin.number)
+    return tuple(Winding(tuple(pins)) for pins in sides.values()) if all(len(pins) in (2, 3) for pins in sides.values()) else ()
 
 
 def _near(board: Board, sources: Mapping[str, Potential], same: Mapping[str, str]) -> dict[str, str]:
@@ -133,6 +161,25 @@ def _valves(board: Board, same: Mapping[str, str], near: Mapping[str, str]) -> I
                 yield _Valve(conductor(grounds[0]), conductor(drains[0]), True)
 
 
+def _railed(valves: list[_Valve], sources: Mapping[str, Potential]) -> dict[str, Potential]:
+    """Switching nodes that valves keep between two held conductors, such as the middle of a half bridge."""
+    up: dict[str, Potential] = {}
+    down: dict[str, Potential] = {}
+    for valve in valves:
+        if valve.anode not in sources and valve.cathode in sources:
+            up.setdefault(valve.anode, sources[valve.cathode])
+        if valve.cathode not in sources and valve.anode in sources:
+            down.setdefault(valve.cathode, sources[valve.anode])
+    return {
+        net: Potential(
+            high.frame, plus(low.low, -DROPS.forward), plus(high.high, DROPS.forward),
+            Step(f"{net} is kept between two rails by the switches or diodes on it", (low.step, high.step)),
+        )
+        for net, high in up.items()
+        if (low := down.get(net)) is not None and low.frame == high.frame
+    }  # fmt: skip
+
+
 def _ways(
     board: Board, ref: str, sections: list[_Section], valves: list[_Valve], sources: Mapping[str, Potential]
 ) -> Iterator[_Way]:
@@ -147,10 +194,21 @@ def _ways(
             continue
         here = [valve for valve in valves if valve.anode in tied or valve.cathode in tied]
         bounds = [_bound(valve, tied, sources) for valve in here]
-        low = max((bound[1] for bound in bounds if bound is not None and bound[0] < 0), default=-math.inf)
-        high = min((bound[1] for bound in bounds if bound is not None and bound[0] > 0), default=math.inf)
+        ends = [_spanned(section, direction, sources) for section in sections]
+        low = max([bound[1] for bound in bounds if bound is not None and bound[0] < 0] + [end[0] for end in ends])
+        high = min([bound[1] for bound in bounds if bound is not None and bound[0] > 0] + [end[1] for end in ends])
         if _can_close(here, tied, sources):
             yield _Way(tied, low, high)
+
+
+def _spanned(section: _Section, direction: Mapping[int, int], sources: Mapping[str, Potential]) -> tuple[float, float]:
+    """Bounds of e that a section gives whose two ends are both bounded; without bounds when they are not."""
+    one, two = sources.get(section.one), sources.get(section.two)
+    if one is None or two is None or one.frame != two.frame or section.one == section.two:
+        return -math.inf, math.inf
+    volts = bottom(minus(one.low, two.high)), top(minus(one.high, two.low))
+    low, high = sorted(volt / section.turns / direction[section.winding] for volt in volts)
+    return low, high
 
 
 def _tied(
@@ -207,10 +265,10 @@ def _can_close(valves: list[_Valve], tied: Mapping[str, tuple[str, float]], sour
 
 
 def _potentials(
-    board: Board, ref: str, ways: list[_Way], valves: list[_Valve], sources: Mapping[str, Potential]
+    board: Board, ref: str, ways: list[_Way], valves: list[_Valve], sources: Mapping[str, Potential], apart: bool
 ) -> Iterator[tuple[str, Potential]]:
     """The potential of each conductor on a core over all its ways; a valve into a held conductor stops its spikes."""
-    said = Fact("turns", _said(board, ref), board.design.parts[ref].fact.source)
+    said = board.choice[ref].ratings.get("secondary") or Fact("turns", _said(board, ref), board.design.parts[ref].fact.source)
     for net in ways[0].tied:
         held = {way.tied[net][0] for way in ways if net in way.tied}
         if len(held) != 1 or not all(net in way.tied for way in ways):
@@ -233,7 +291,7 @@ def _potentials(
             f"V per turn, spikes are allowed for as {SPIKE:g} times that",
             (base.step, said), formula="V_held + N x e", result=top(high), unit="V", form="peak", citation=CITATION,
         )  # fmt: skip
-        yield net, Potential(base.frame, low, high, step, swing=Swing(ref, base.low, base.high, sets))
+        yield net, Potential(base.frame, low, high, step, swing=Swing(ref, base.low, base.high, sets, apart and base.held))
 
 
 def _said(board: Board, ref: str) -> str:

@@ -15,6 +15,7 @@ from checker.stress.potential import SERIES, Potential
 _TWO_ENDS = frozenset(
     "switch jumper net-tie thermistor inductor ferrite fuse resettable-fuse current-transformer hall-sensor".split()
 )
+DOUBLED = 150.0  # V r.m.s.; below it a selector doubles, above it rectifies (common practice, no source)
 _FOR_BOTH = frozenset({"common-mode-choke", "filter", "switch"})
 _CONTACTS = frozenset({"relay", "solid-state-relay", "triac"})
 _SWITCHES = frozenset("mosfet igbt bipolar controller regulator ic module unknown".split())
@@ -48,8 +49,18 @@ def _beyond(board: Board, ref: str, net: str) -> Iterator[str]:
     part, kind = board.design.parts[ref], board.kind(ref)
     nets = [other for other in part.nets() if other != net and _on_mains(board, other)]
     if len(nets) == 1 and (kind in _CONTACTS or (len(part.nets()) == 2 and (kind in _TWO_ENDS or _in_series(board, ref)))):
-        if kind != "inductor" or not any(board.kind(other) in _SWITCHES for other in board.fitted_on(nets[0])):
+        if kind == "inductor" and any(board.kind(other) in _SWITCHES for other in board.fitted_on(nets[0])):
+            return
+        if kind not in ("switch", "jumper") or not _selects(board, ref, nets[0]):
             yield nets[0]
+
+
+def _selects(board: Board, ref: str, net: str) -> bool:
+    """Whether a contact ties a pole to the middle of two capacitors: the selector of a doubler, open where the supply is high."""
+    voltage = board.setting.mains_voltage(tolerance=False)
+    others = [board.kind(other) for other in board.fitted_on(net) if other != ref]
+    middle = others.count("capacitor") >= 2 and set(others) <= {"capacitor", "resistor", "test-point"}
+    return middle and voltage is not None and voltage > DOUBLED
 
 
 def _through(board: Board, ref: str, found: Mapping[str, str]) -> Iterator[tuple[str, str]]:

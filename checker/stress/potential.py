@@ -14,13 +14,15 @@ class Swing:
     """What a winding adds to a potential: turns x volts per turn, whose mean over a switching cycle is zero.
 
     low, high: the potential without it. ways: (turns with their sign, least and highest volts per turn) for each set of
-    winding directions that the circuit allows; one core has the same sets for all its nets, in the same order.
+    winding directions that the circuit allows; one core has the same sets for all its nets, in the same order. apart: what it
+    is added to is held, so that the two go their own ways and their mean squares add; else only their r.m.s. values do.
     """
 
     core: str
     low: Wave
     high: Wave
     ways: tuple[tuple[float, float, float], ...]
+    apart: bool = True
 
 
 @dataclass(frozen=True, slots=True)

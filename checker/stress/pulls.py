@@ -26,6 +26,7 @@ _CHIPS = frozenset(
 )
 _HIGH = frozenset("HV DRAIN D SW LX BST BOOT VB HO HS HB PHASE VSW CB HVIN".split())
 _SWINGING = _HIGH | frozenset("DR LO OUT OUTA OUTB GATE DRV DRIVE G CP CN C1+ C1- C2+ C2-".split())
+COUPLER = 80.0  # V; the most that usual couplers with a transistor output are rated for (common practice, no source)
 ZENER_MOST = 1.1  # of the nominal voltage while it clamps, tolerance and heat included (common practice, no source)
 
 
@@ -164,6 +165,9 @@ def _ordinary(board: Board, ref: str, kind: str, nets: list[str], same: Mapping[
     if kind in ("mosfet", "igbt", "jfet"):
         gate = {same.get(net, net) for net in named(part, ("G", "GATE"))}
         ways = [net for net in nets if net not in gate] if gate else nets
+        drain, source = named(part, ("D", "DRAIN")), named(part, ("S", "SOURCE"))
+        if kind == "mosfet" and len(drain) == len(source) == 1:
+            found.clamp(same.get(source[0], source[0]), same.get(drain[0], drain[0]), DROPS.forward)  # its body diode
         found.agile.update(dict.fromkeys(ways))
         found.both(ways, ref)
         return
@@ -208,7 +212,7 @@ def _usual(board: Board, ref: str, kind: str, same: Mapping[str, str], found: Pu
         if pins_of is not None:
             anode, cathode, collector, emitter = (same.get(net, net) for net in pins_of)
             pair(anode, cathode, DROPS.light)
-            pair(collector, emitter, rated, DROPS.light)
+            pair(collector, emitter, rated if math.isfinite(rated) else COUPLER, DROPS.light)
     elif kind == "led":
         pair(one(ANODE), one(CATHODE), DROPS.light)
     elif kind in ("mosfet", "bipolar", "igbt"):

@@ -92,7 +92,7 @@ def _voltages(
     def frame_of(net: str) -> str | None:
         return board.isolation.domain_of.get(net)
 
-    found = spread(sources, line, edges, frame_of, cores(board, sources, same))
+    found = spread(sources, line, edges, frame_of, cores(board, sources, line, same))
     return Voltages(board, found, same, strung, board.setting.mains_frequency)
 
 
