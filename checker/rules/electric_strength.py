@@ -45,6 +45,9 @@ class Params:
     overvoltage: Annotated[str, TableName(more=True)] = ""
 
 
+AT_LIMIT = 0.015  # part of a test voltage below which two figures differ by rounding alone (common practice, no source)
+
+
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict per insulating part that needs a test voltage."""
     yield from judged(analysis, clause, lambda across: _judge(across, clause))
@@ -72,6 +75,8 @@ def _compared(across: Across, clause: Clause, fact: Fact, required: Required, rm
     """A figure without a form is at least itself and, as r.m.s., at most the square root of two times itself, in peak volts."""
     volts = float(fact.value)
     remedy = _stronger(across.ref, rms)
+    if fact.form == "rms" and required.at_least * (1 - AT_LIMIT) <= volts < required.at_least:
+        return _at_limit(across, clause, fact, required)
     if fact.form:
         return compared(across, clause, WHAT, fact, required, remedy)
     span = (Number(volts, "V", "peak"), Number(volts * math.sqrt(2), "V", "peak"))
@@ -79,6 +84,15 @@ def _compared(across: Across, clause: Clause, fact: Fact, required: Required, rm
     then = (("r.m.s.", alternating), ("d.c. or peak", "fail"))
     doubt = Missing("form of the stated test voltage", SUPPLY_AS, then, across.ref)
     return compared(across, clause, WHAT, fact, required, remedy, span, doubt)
+
+
+def _at_limit(across: Across, clause: Clause, fact: Fact, required: Required) -> Verdict:
+    """A stated figure is rounded, and so is the r.m.s. value of a test voltage that the table gives as a peak: too near to fail."""
+    text = f"{across.ref} states {figure(float(fact.value), 'V', 'rms')}; {across.where} needs {needed(required)}, nearly the same"
+    step = Step(text, (across.crossing.step, fact, required.step))
+    missing = Missing("exact isolation test voltage, r.m.s. or peak", SUPPLY_AS, answers(required), across.ref)
+    found = Number(float(fact.value), "V", "rms")
+    return clause.opens(across.subject, WHAT, text, step, missing, found=found, limit=limit_of(required), level="warning")
 
 
 def _stronger(ref: str, rms: Required) -> Remedy | None:

@@ -63,7 +63,9 @@ class Voltages:
         string = self._ends.get((one, other)) or self._strings.get(one) or self._strings.get(other)
         if string is not None and one in string.nets and other in string.nets:
             whole = self._of_ends(string)
-            return None if whole is None else self._shared(string, one, other, whole)
+            if whole is None or (string.steady and whole.shape != "dc"):
+                return None
+            return self._shared(string, one, other, whole)
         return self._of_potentials(one, other)
 
     def _of_ends(self, string: String) -> Voltage | None:

@@ -16,12 +16,14 @@ from dataclasses import dataclass, field
 from functools import reduce
 
 from checker.formulas.waveform import Wave, bottom, higher, lower, minus, plus, top
+from checker.model.candidate import Candidate
 from checker.model.fact import Fact
 from checker.model.rule import Board
 from checker.model.step import Step
 from checker.model.terminals import anode_and_cathode, bridge
 from checker.stress.potential import DROPS, SMOOTHING, Potential
 
+DROPPER = 4.7e-6  # F; a larger capacitor in the line is none that drops its voltage (common practice, no source)
 CITATION = "crest of the line, capacitor input (application notes; recomputed)"
 
 
@@ -39,8 +41,9 @@ def buses(board: Board, same: Mapping[str, str], line: Mapping[str, Potential]) 
     fed = _fed(board, same, line)
     joined = _capacitors(board, same)
     found: dict[str, Potential] = {}
-    low = {net: what for net, what in fed.items() if what.down and not what.up}
-    high = {net: what for net, what in fed.items() if what.up and not what.down}
+    pumped = _pumped(board, same, line)
+    low = {net: what for net, what in fed.items() if what.down and not what.up and net not in pumped}
+    high = {net: what for net, what in fed.items() if what.up and not what.down and net not in pumped}
     for net, what in low.items():
         found[net] = _low_side(board, net, what, line, joined.get(net, {}))
     for net, what in high.items():
@@ -64,6 +67,34 @@ def _fed(board: Board, same: Mapping[str, str], line: Mapping[str, Potential]) -
                 fed = found.setdefault(one, _Fed())
                 fed.down[other], fed.parts[ref] = None, None
     return found
+
+
+def _pumped(board: Board, same: Mapping[str, str], line: Mapping[str, Potential]) -> frozenset[str]:
+    """Nets behind a series capacitor in the line from which a diode or zener leads on: a dropper, which no capacitor holds."""
+    behind: set[str] = set()
+    leads: set[str] = set()
+    for ref, candidate in board.choice.items():
+        part = board.design.parts[ref]
+        if not part.fitted:
+            continue
+        nets = [same.get(net, net) for net in part.nets()]
+        if candidate.kind == "capacitor" and len(nets) == 2 and (nets[0] in line) != (nets[1] in line) and _may_drop(candidate):
+            behind.update(net for net in nets if net not in line)
+        elif candidate.kind in ("zener", "tvs", "led"):
+            leads.update(nets)
+        elif candidate.kind in ("diode", "bridge"):
+            for ends in diodes(board, ref):
+                anode, cathode = (same.get(net, net) for net in ends)
+                if anode not in line and cathode not in line:
+                    leads.update((anode, cathode))
+    return frozenset(behind & leads)
+
+
+def _may_drop(candidate: Candidate) -> bool:
+    """Whether a capacitor can carry the line to a circuit: no electrolytic, and small."""
+    technology, value = candidate.attributes.get("technology"), candidate.value
+    small = value is not None and float(value.value) <= DROPPER
+    return small and (technology is None or technology.value not in ("aluminium", "tantalum", "polymer"))
 
 
 def diodes(board: Board, ref: str) -> list[tuple[str, str]]:

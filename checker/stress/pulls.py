@@ -16,6 +16,7 @@ from checker.model.rule import Board
 from checker.model.terminals import ANODE, CATHODE, GROUND, SUPPLY, anode_and_cathode, coupler, named
 from checker.stress.buses import diodes
 from checker.stress.potential import DROPS
+from checker.stress.rails import ZENER_MOST, zener_voltage
 from checker.stress.strings import String
 
 _OPEN = frozenset("capacitor varistor gas-tube spark-gap test-point hole fiducial logo heatsink shield antenna crystal".split())
@@ -27,7 +28,6 @@ _CHIPS = frozenset(
 _HIGH = frozenset("HV DRAIN D SW LX BST BOOT VB HO HS HB PHASE VSW CB HVIN".split())
 _SWINGING = _HIGH | frozenset("DR LO OUT OUTA OUTB GATE DRV DRIVE G CP CN C1+ C1- C2+ C2-".split())
 COUPLER = 80.0  # V; the most that usual couplers with a transistor output are rated for (common practice, no source)
-ZENER_MOST = 1.1  # of the nominal voltage while it clamps, tolerance and heat included (common practice, no source)
 
 
 @dataclass(slots=True)
@@ -176,11 +176,8 @@ def _ordinary(board: Board, ref: str, kind: str, nets: list[str], same: Mapping[
 
 
 def _clamping(board: Board, ref: str) -> float | None:
-    candidate = board.choice[ref]
-    if candidate.kind == "tvs":
-        return None  # clamping is an event, not a steady voltage
-    value = candidate.value or candidate.ratings.get("zener_voltage")
-    return float(value.value) * ZENER_MOST if value is not None and value.unit == "V" else None
+    volts = zener_voltage(board, ref) if board.kind(ref) == "zener" else None  # a suppressor clamps events, no steady voltage
+    return float(volts.value) * ZENER_MOST if volts is not None else None
 
 
 def _usual(board: Board, ref: str, kind: str, same: Mapping[str, str], found: Pulls) -> None:

@@ -20,6 +20,7 @@ from checker.model.terminals import ANODE, CATHODE, anode_and_cathode, coupler, 
 
 NAMED = 0.10  # tolerance of a voltage that only a name states (common practice, no source)
 RESISTORS, REFERENCE, ZENER = 0.05, 0.02, 0.05  # tolerances when none is stated (common practice, no source)
+ZENER_MOST = 1.1  # of the nominal voltage while it clamps, tolerance and heat included (common practice, no source)
 LED = (1.0, 1.3)  # V, forward drop of a coupler's diode (common practice, no source)
 _BESIDE_VOLTS = frozenset("ISO OUT SEC A B C D P AUX MAIN DC VCC VDD VOUT V SYS LOGIC REG STBY SB DIG ANA EXT USB RAIL".split())
 _PLAIN_FIGURE = re.compile(r"[+-]?(\d{1,3}V\d{0,2}|V\d{1,2}V?\d?)")
@@ -27,7 +28,10 @@ _PLAIN_FIGURE = re.compile(r"[+-]?(\d{1,3}V\d{0,2}|V\d{1,2}V?\d?)")
 
 @dataclass(frozen=True, slots=True)
 class Rail:
-    """`low` to `high` volts from `back` to `net`; negative below it. trust: how much it is believed, the higher wins."""
+    """`low` to `high` volts from `back` to `net`; negative below it. trust: how much it is believed, the higher wins.
+
+    both: either net follows from the other; False for what only keeps `net` near `back`.
+    """
 
     net: str
     back: str
@@ -35,6 +39,7 @@ class Rail:
     high: float
     step: Step
     trust: int
+    both: bool = True
 
 
 def _rail(net: str, back: str, volts: float, spread: float, step: Step, trust: int) -> Rail:
@@ -54,6 +59,8 @@ def rails(board: Board, grounds: Mapping[str, str]) -> Iterator[Rail]:
             yield from _regulator(board, ref)
         elif candidate.kind == "shunt-reference":
             yield from _shunt_reference(board, ref)
+        elif candidate.kind == "zener":
+            yield from _zener(board, ref)
         elif candidate.kind == "optocoupler":
             yield from _zener_and_led(board, ref, grounds)
     for name, domain in board.isolation.domains.items():
@@ -229,6 +236,24 @@ def resistor_tolerance(board: Board, ref: str) -> float:
     """The stated tolerance of a resistor as a ratio, else RESISTORS."""
     tolerance = board.choice[ref].tolerance
     return float(tolerance.value) / 100 if tolerance is not None and tolerance.unit == "%" else RESISTORS
+
+
+def _zener(board: Board, ref: str) -> Iterator[Rail]:
+    """A zener across a net keeps it from nothing to its voltage above the other, whatever feeds it."""
+    pins, volts = anode_and_cathode(board.design.parts[ref]), zener_voltage(board, ref)
+    if pins is not None and volts is not None:
+        anode, cathode = pins
+        high = volts.value if isinstance(volts.value, float) else 0.0
+        step = Step(
+            f"{ref} keeps {cathode} at most {high:g} V above {anode}", (volts, board.design.parts[ref].fact), result=high, unit="V"
+        )
+        yield Rail(cathode, anode, 0.0, high * ZENER_MOST, step, 0, both=False)
+
+
+def zener_voltage(board: Board, ref: str) -> Fact | None:
+    """The nominal voltage of a zener, V: its value, else what its type says."""
+    found = board.choice[ref].value or board.choice[ref].ratings.get("zener_voltage")
+    return found if found is not None and found.unit == "V" else None
 
 
 def _zener_and_led(board: Board, ref: str, grounds: Mapping[str, str]) -> Iterator[Rail]:

@@ -14,12 +14,14 @@ from checker.stress.rails import resistor_tolerance
 class String:
     """nets: from one end to the other, the ends included; members: the resistor between each two of them.
 
-    ohms: (least, most) of each member with its tolerance; (0, inf) where no value was read.
+    ohms: (least, most) of each member with its tolerance; (0, inf) where no value was read. steady: a capacitor hangs on an
+    inner net, so that only direct voltage divides so.
     """
 
     nets: tuple[str, ...]
     members: tuple[str, ...]
     ohms: tuple[tuple[float, float], ...]
+    steady: bool = False
 
     def share(self, one: int, other: int) -> tuple[float, float]:
         """The least and the largest part of the whole voltage between the nets at these positions: R / (R + rest)."""
@@ -49,10 +51,10 @@ def strings(board: Board) -> dict[str, String]:
 
 
 def _meeting(board: Board, net: str) -> tuple[str, str] | None:
-    """The two resistors that meet on a net where nothing else does."""
-    if len(board.design.nets[net].pins) > 4 or net not in board.isolation.domain_of:
+    """The two resistors that meet on a net where nothing else does but capacitors."""
+    if len(board.design.nets[net].pins) > 8 or net not in board.isolation.domain_of:
         return None
-    refs = [ref for ref in board.fitted_on(net) if board.kind(ref) != "test-point"]
+    refs = [ref for ref in board.fitted_on(net) if board.kind(ref) not in ("test-point", "capacitor")]
     if len(refs) == 2 and all(board.kind(ref) == "resistor" and len(board.design.parts[ref].nets()) == 2 for ref in refs):
         return refs[0], refs[1]
     return None
@@ -74,7 +76,8 @@ def _walked(board: Board, ref: str, inner: Mapping[str, tuple[str, str]]) -> Str
         if not backwards:
             members.reverse()
             nets.reverse()
-    return String(tuple(nets), tuple(members), tuple(_ohms(board, member) for member in members))
+    steady = any(board.kind(other) == "capacitor" for net in nets[1:-1] for other in board.fitted_on(net))
+    return String(tuple(nets), tuple(members), tuple(_ohms(board, member) for member in members), steady)
 
 
 def _ohms(board: Board, ref: str) -> tuple[float, float]:

@@ -108,7 +108,7 @@ def _fix(sources: dict[str, Potential], fixed: list[Rail], same: Mapping[str, st
             if back in sources:
                 base = sources[back]
                 sources[net] = Potential(base.frame, plus(base.low, rail.low), plus(base.high, rail.high), rail.step, held=True)
-            elif net in sources:
+            elif net in sources and rail.both:
                 base = sources[net]
                 sources[back] = Potential(base.frame, plus(base.low, -rail.high), plus(base.high, -rail.low), rail.step, held=True)
             else:
