@@ -35,8 +35,8 @@ def _listed(text: str) -> tuple[Winding, ...]:
     if len(pieces) > MOST or not any(pieces):
         return ()
     found = [_winding(piece) for piece in pieces if piece]
-    whole = [winding for winding in found if winding is not None]
-    return tuple(whole) if len(whole) == len(found) and _apart(whole) else ()
+    whole = _tapped([winding for winding in found if winding is not None])
+    return tuple(whole) if all(winding is not None for winding in found) and _apart(whole) else ()
 
 
 def _winding(piece: str) -> Winding | None:
@@ -67,12 +67,24 @@ def _apart(windings: list[Winding]) -> bool:
     return len(set(pins)) == len(pins)
 
 
+def _tapped(windings: list[Winding]) -> list[Winding]:
+    """Windings with the two halves of a tapped one joined: `7-8:7, 8-9:7` has its tap at 8. Both halves state their turns."""
+    found: list[Winding] = []
+    for winding in windings:
+        before = found[-1] if found else None
+        if before is not None and before.turns and winding.turns and before.pins[-1] == winding.pins[0]:
+            found[-1] = Winding((*before.pins, *winding.pins[1:]), before.turns + winding.turns)
+        else:
+            found.append(winding)
+    return found
+
+
 def _described(description: str) -> tuple[Winding, ...]:
     text = description[: limits.CELL]
     spelled = [_winding(re.sub(r"\s", "", match[0])) for match in _IN_WORDS.finditer(text)]
-    whole = [winding for winding in spelled if winding is not None]
+    whole = _tapped([winding for winding in spelled if winding is not None])
     if whole:
-        return tuple(whole) if len(whole) == len(spelled) and len(whole) <= MOST and _apart(whole) else ()
+        return tuple(whole) if all(winding is not None for winding in spelled) and len(whole) <= MOST and _apart(whole) else ()
     ratio = _RATIO.search(text)
     if ratio is None:
         return ()

@@ -31,6 +31,17 @@ def anode_and_cathode(part: Part) -> tuple[str, str] | None:
     return (anodes[0], cathodes[0]) if len(anodes) == 1 and len(cathodes) == 1 and anodes != cathodes else None
 
 
+def junctions(part: Part) -> tuple[tuple[str, str], ...]:
+    """(net of the anode, net of the cathode) of each diode of a part: one, or several with a common anode or cathode."""
+    single = anode_and_cathode(part)
+    if single is not None:
+        return (single,)
+    anodes, cathodes = named(part, ANODE | {"A2", "A3"}), named(part, CATHODE | {"K1", "K2", "C1", "C2"})
+    if min(len(anodes), len(cathodes)) != 1:
+        return ()
+    return tuple((anode, cathode) for anode in anodes for cathode in cathodes if anode != cathode)
+
+
 def bridge(part: Part) -> tuple[str, str, tuple[str, ...]] | None:
     """(net of +, net of -, nets of the a.c. pins) of a rectifier bridge."""
     plus, minus = named(part, _PLUS), named(part, _MINUS)

@@ -20,7 +20,7 @@ from checker.model.candidate import Candidate
 from checker.model.fact import Fact
 from checker.model.rule import Board
 from checker.model.step import Step
-from checker.model.terminals import anode_and_cathode, bridge
+from checker.model.terminals import bridge, junctions
 from checker.stress.potential import DROPS, SMOOTHING, Potential
 
 DROPPER = 4.7e-6  # F; a larger capacitor in the line is none that drops its voltage (common practice, no source)
@@ -106,8 +106,7 @@ def diodes(board: Board, ref: str) -> list[tuple[str, str]]:
             return []
         high, low, alternating = pins
         return [(net, high) for net in alternating] + [(low, net) for net in alternating]
-    pins_of_diode = anode_and_cathode(part)
-    return [pins_of_diode] if pins_of_diode is not None else []
+    return list(junctions(part))
 
 
 def _capacitors(board: Board, same: Mapping[str, str]) -> dict[str, dict[str, list[str]]]:

@@ -14,7 +14,7 @@ def conductors(board: Board, poles: Mapping[str, str]) -> dict[str, str]:
     """Net -> representative of its conductor, for every net that is not alone; a line conductor's is its pole."""
     held = _held(board)
     pairs = [*poles.items(), *_joined(board, held)]
-    return _united(pairs, dict.fromkeys(poles.values()))
+    return _united(board, pairs, dict.fromkeys(poles.values()))
 
 
 def _joined(board: Board, held: frozenset[str]) -> Iterator[tuple[str, str]]:
@@ -58,8 +58,11 @@ def _held(board: Board) -> frozenset[str]:
     return frozenset(found)
 
 
-def _united(pairs: Iterable[tuple[str, str]], names: Iterable[str]) -> dict[str, str]:
-    """Net -> representative, for nets joined by `pairs`; `names` go before others as representatives and are never joined."""
+def _united(board: Board, pairs: Iterable[tuple[str, str]], names: Iterable[str]) -> dict[str, str]:
+    """Net -> representative, for nets joined by `pairs`; `names` go before others as representatives and are never joined.
+
+    Among others the net that a person named goes first, then the one with most pins: it is the name in derivations.
+    """
     parent: dict[str, str] = {}
     first = {name: at for at, name in enumerate(names)}
 
@@ -69,8 +72,12 @@ def _united(pairs: Iterable[tuple[str, str]], names: Iterable[str]) -> dict[str,
             net = parent[net]
         return net
 
+    def rank(net: str) -> tuple[int, bool, int, str]:
+        there = board.design.nets[net]
+        return first.get(net, len(first)), there.automatic, -len(there.pins), net
+
     for one, other in pairs:
-        kept, joined = sorted((find(one), find(other)), key=lambda net: (first.get(net, len(first)), net))
+        kept, joined = sorted((find(one), find(other)), key=rank)
         if kept != joined and not (kept in first and joined in first):
             parent[joined] = kept
     return {net: find(net) for net in parent}

@@ -17,7 +17,7 @@ rating is judged by what stands here.
 from __future__ import annotations
 
 import math
-from collections.abc import Collection, Iterator, Mapping
+from collections.abc import Collection, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from itertools import pairwise, product
 
@@ -85,7 +85,7 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str],
                     if math.isfinite(way.low) and math.isfinite(way.high)
                 ]
                 if ways:
-                    apart = not any(section.one in line and section.two in line for section in sections)
+                    apart = len({held for way in ways for held, _ in way.tied.values()} & set(line)) < 2
                     found.update(_potentials(board, ref, ways, valves, sources, apart))
     return {net: known for net, known in found.items() if not (net in sources and sources[net].held)}
 
@@ -95,7 +95,7 @@ def _sections(board: Board, ref: str, same: Mapping[str, str]) -> list[_Section]
     at = {pin.number: pin.net for pin in board.design.parts[ref].pins}
     found = []
     for number, winding in enumerate(board.choice[ref].windings or _by_sides(board, ref)):
-        turns = winding.turns or (_rated_turns(board, ref, at.get(winding.pins[0])),) * (len(winding.pins) - 1)
+        turns = winding.turns or (_rated_turns(board, ref, [at.get(pin) for pin in winding.pins]),) * (len(winding.pins) - 1)
         if len(turns) != len(winding.pins) - 1 or not all(turns):
             return []
         for count, (first, second) in zip(turns, pairwise(winding.pins), strict=True):
@@ -105,10 +105,10 @@ def _sections(board: Board, ref: str, same: Mapping[str, str]) -> list[_Section]
     return found
 
 
-def _rated_turns(board: Board, ref: str, net: str | None) -> float:
+def _rated_turns(board: Board, ref: str, nets: Iterable[str | None]) -> float:
     """For a mains transformer the rated voltage of the winding stands for its turns, that of a secondary without load."""
     primary, secondary = (board.choice[ref].ratings.get(name) for name in ("primary", "secondary"))
-    domain = board.isolation.domain_of.get(net or "")
+    domain = next((name for net in nets if (name := board.isolation.domain_of.get(net or "")) is not None), None)
     if primary is None or secondary is None or domain is None:
         return 0.0
     on_mains = board.isolation.domains[domain].hazard == "mains"
@@ -194,20 +194,24 @@ def _ways(
             continue
         here = [valve for valve in valves if valve.anode in tied or valve.cathode in tied]
         bounds = [_bound(valve, tied, sources) for valve in here]
-        ends = [_spanned(section, direction, sources) for section in sections]
+        ends = [_spanned(section, direction, tied, sources) for section in sections]
         low = max([bound[1] for bound in bounds if bound is not None and bound[0] < 0] + [end[0] for end in ends])
         high = min([bound[1] for bound in bounds if bound is not None and bound[0] > 0] + [end[1] for end in ends])
         if _can_close(here, tied, sources):
             yield _Way(tied, low, high)
 
 
-def _spanned(section: _Section, direction: Mapping[int, int], sources: Mapping[str, Potential]) -> tuple[float, float]:
-    """Bounds of e that a section gives whose two ends are both bounded; without bounds when they are not."""
-    one, two = sources.get(section.one), sources.get(section.two)
-    if one is None or two is None or one.frame != two.frame or section.one == section.two:
+def _spanned(
+    section: _Section, direction: Mapping[int, int], tied: Mapping[str, tuple[str, float]], sources: Mapping[str, Potential]
+) -> tuple[float, float]:
+    """Bounds of e that a section gives between two conductors that are both tied to bounded ones; without bounds else."""
+    one, two = _place(section.one, tied, sources), _place(section.two, tied, sources)
+    if one is None or two is None or one[0].frame != two[0].frame or section.one == section.two:
         return -math.inf, math.inf
-    volts = bottom(minus(one.low, two.high)), top(minus(one.high, two.low))
-    low, high = sorted(volt / section.turns / direction[section.winding] for volt in volts)
+    turns = section.turns * direction[section.winding] - one[1] + two[1]
+    if not turns:
+        return -math.inf, math.inf
+    low, high = sorted(volts / turns for volts in (bottom(minus(one[0].low, two[0].high)), top(minus(one[0].high, two[0].low))))
     return low, high
 
 
