@@ -14,12 +14,13 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import product
 
-from checker.formulas.waveform import Wave, largest, least, minus, rms, top
+from checker.formulas.waveform import Wave, bottom, largest, least, minus, plus, rms, top
 from checker.model.rule import Board
 from checker.model.separation import Separation
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
 from checker.stress.between import NONE, Voltages
+from checker.stress.cores import SPIKE
 from checker.stress.potential import Potential, Swing
 
 CITATION = "IEC 62368-1 5.4.1.8 (from memory)"
@@ -139,7 +140,19 @@ def _at(one: Potential, two: Potential, earth: Wave, tied: Wave) -> _Extremes:
     still, swinging = least(low, high), _swinging(one.swing, two.swing)
     apart = all(swing is None or swing.apart for swing in (one.swing, two.swing))
     whole = math.hypot(rms(largest(low, high)), swinging) if apart else rms(largest(low, high)) + swinging
-    return _Extremes(rms(still), top(still), min(whole, top(most)), top(most))
+    peak = min(top(most), _together(low, high, one.swing, two.swing))
+    return _Extremes(rms(still), top(still), min(whole, peak), peak)
+
+
+def _together(low: Wave, high: Wave, one: Swing | None, two: Swing | None) -> float:
+    """The highest peak of two nets of one core, which swing together: base + (N1 - N2) x e, with its spikes; else no bound."""
+    if one is None or two is None or one.core != two.core:
+        return math.inf
+    found = 0.0
+    for (first, least_e, most_e), (second, _, _) in zip(one.ways, two.ways, strict=True):
+        for volts in (SPIKE * (first - second) * least_e, SPIKE * (first - second) * most_e):
+            found = max(found, top(plus(high, volts)), -bottom(plus(low, volts)))
+    return found
 
 
 def _swinging(one: Swing | None, two: Swing | None) -> float:

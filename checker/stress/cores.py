@@ -87,6 +87,7 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str],
                 if ways:
                     apart = len({held for way in ways for held, _ in way.tied.values()} & set(line)) < 2
                     found.update(_potentials(board, ref, ways, valves, sources, apart))
+                    found.update(_floating(ref, sections, ways, valves, sources))
     return {net: known for net, known in found.items() if not (net in sources and sources[net].held)}
 
 
@@ -190,8 +191,6 @@ def _ways(
     for signs in [(1,) * len(windings)] if dotted else product(*([(1,)] + [(1, -1)] * (len(windings) - 1))):
         direction = dict(zip(windings, signs, strict=True))
         tied = _tied(sections, direction, sources)
-        if tied is None:
-            continue
         here = [valve for valve in valves if valve.anode in tied or valve.cathode in tied]
         bounds = [_bound(valve, tied, sources) for valve in here]
         ends = [_spanned(section, direction, tied, sources) for section in sections]
@@ -215,10 +214,8 @@ def _spanned(
     return low, high
 
 
-def _tied(
-    sections: list[_Section], direction: Mapping[int, int], sources: Mapping[str, Potential]
-) -> dict[str, tuple[str, float]] | None:
-    """Conductor -> (held conductor, turns) for all that sections reach from held ones; None when nothing is free."""
+def _tied(sections: list[_Section], direction: Mapping[int, int], sources: Mapping[str, Potential]) -> dict[str, tuple[str, float]]:
+    """Conductor -> (held conductor, turns) for all that sections reach from held ones."""
     tied: dict[str, tuple[str, float]] = {
         end: (end, 0.0) for section in sections for end in (section.one, section.two) if end in sources
     }
@@ -231,7 +228,7 @@ def _tied(
                 if near in tied and far not in tied:
                     tied[far] = tied[near][0], tied[near][1] + step
                     changed = True
-    return tied if any(turns for _, turns in tied.values()) else None
+    return tied
 
 
 def _place(net: str, tied: Mapping[str, tuple[str, float]], sources: Mapping[str, Potential]) -> tuple[Potential, float] | None:
@@ -296,6 +293,33 @@ def _potentials(
             (base.step, said), formula="V_held + N x e", result=top(high), unit="V", form="peak", citation=CITATION,
         )  # fmt: skip
         yield net, Potential(base.frame, low, high, step, swing=Swing(ref, base.low, base.high, sets, apart and base.held))
+
+
+def _floating(
+    ref: str, sections: list[_Section], ways: list[_Way], valves: list[_Valve], sources: Mapping[str, Potential]
+) -> Iterator[tuple[str, Potential]]:
+    """A winding with a bridge: neither end is tied, and a diode keeps each above the same held conductor.
+
+    One end rests on it while the other is as far above as the whole winding gives.
+    """
+    most = max(max(abs(way.low), abs(way.high)) for way in ways)
+    for section in sections:
+        if any(section.one in way.tied or section.two in way.tied for way in ways):
+            continue
+        under = [
+            {valve.anode for valve in valves if valve.cathode == end and valve.anode in sources}
+            for end in (section.one, section.two)
+        ]
+        for held in sorted(under[0] & under[1])[:1]:
+            base, volts = sources[held], section.turns * most
+            step = Step(
+                f"{section.one} and {section.two} are a winding of {ref} with a bridge above {held}, of at most {volts:.4g} V",
+                (base.step,),
+                formula="N x e", result=volts, unit="V", form="peak", citation=CITATION,
+            )  # fmt: skip
+            low, high = plus(base.low, -DROPS.forward), plus(base.high, volts * SPIKE)
+            for end in (section.one, section.two):
+                yield end, Potential(base.frame, low, high, step)
 
 
 def _said(board: Board, ref: str) -> str:
