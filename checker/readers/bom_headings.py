@@ -13,17 +13,17 @@ from checker import limits
 
 _ALIASES = {
     "ref": "ref refs reference references refdes refdesignator refname designator designators referencedesignator "
-    "referencedesignators schematicreference componentreference partreference referenz referenzen",
+    "referencedesignators schematicreference componentreference partreference referenz referenzen bauteil bauteile bauteilbezeichner bezeichner",
     "row": "item itemno id index row rowno sno lineno line lineitem pos posno no",
     "quantity": "qty qnty quantity quantityperpcb quantityperboard qtyboard qtyperboard qtyperpcb qtypcb qtypcs count orderqty "
-    "anzahl menge stk stück amount pcs",
+    "anzahl menge stk stück stückzahl amount pcs",
     "value": "value val values comment designation displayvalue descriptionvalue name partname componentvalue wert",
     "footprint": "footprint package packagecase case casepackage pcbfootprint pattern packagetype footprintname landpattern "
     "gehäuse bauform",
     "type": "mpn manufacturerpartno manufacturerpart manufacturerpn manufacturerno manufacturingpartno manufacturerpartid "
     "manufacturertype manufacturertypeno mfrpart mfrpartno mfrpn mfrno mfgpart mfgpartno mfgpn mfgno manfpart manfpartno manfpn "
     "manfno manpn manpartno manufacturercode makerpartno makerpart originalmpn typeno pn partno part# partcode type parttype "
-    "herstellernummer herstellerteilenummer typ",
+    "herstellernummer herstellerno herstellernr herstellerteilenummer typ",
     "maker": "manufacturer manufacturername mfr mfrname mfg mfgname manf manfname maker make vendor hersteller brand",
     "distributor": "lcsc lcscpart lcscpartno lcscpartnooptional lcscstockcode jlcpcbpart jlcpcbpartno "
     "mouser mouserpartno mouserno mouserpn "
@@ -32,15 +32,15 @@ _ALIASES = {
     "supplierandref supplierpn supplierno distributorpn distributorpartno distributorpart distributorno orderno ordercode "
     "catno catalogno vendorpartno vendorpn vendorno stockcode sku bestellnummer",
     "description": "description desc partdescription kidescription details longdescription rating ratings part parts component "
-    "components specification specifications spec specs bezeichnung beschreibung",
+    "components specification specifications spec specs bezeichnung beschreibung bemerkung bemerkungen",
     "datasheet": "datasheet datasheeturl datasheetlink datenblatt",
     "kind": "kind",
     "mark": "class safetyclass safetyapproval safetyapprovals approval approvals mark marks standard standards certification "
-    "certifications safetystandard safetymark",
+    "certifications safetystandard safetymark klasse sicherheitsklasse",
     "windings": "windings winding",
     "turns": "turns turn windingturns",
     "rating:voltage": "voltage ratedvoltage voltagerating voltagerated workingvoltage capratedvoltage maxvoltage nominalvoltage "
-    "dcvoltage acvoltage spannung nennspannung",
+    "dcvoltage acvoltage spannung nennspannung bemessungsspannung",
     "rating:current": "current ratedcurrent currentrating maxcurrent nominalcurrent strom nennstrom",
     "rating:power": "power ratedpower powerrating maxpower wattage powerdissipation leistung",
     "rating:temperature": "temperature operatingtemperature temperaturerating temperaturerange maxtemperature tempmax "
@@ -66,7 +66,7 @@ _ALIASES = {
 _MEANING = {alias.replace("#", "no"): name for name, aliases in _ALIASES.items() for alias in aliases.split()}
 
 # Headings that hold references in one file and something else in the next; the cells decide.
-_PERHAPS = "part parts component components location locations position positions designation customerreference pos id item"
+_PERHAPS = "part parts component components location locations position positions designation customerreference pos id item bauteil bauteile"
 _PERHAPS_REFERENCES = frozenset(_PERHAPS.split())
 # Headings that mean `attribute` only while no plainer heading of that attribute stands beside them -> what they are then.
 _WEAK: dict[str, str | None] = {
