@@ -56,6 +56,7 @@ class Stress:
     between: two nets -> the voltage between them at the highest supply voltage *with* tolerance, None when they are not
     bounded against one another (also: nets of two circuits that nothing ties, unknown nets). For the ratings of parts.
     rated: the same at the highest *rated* supply voltage, without tolerance.
+    mean_sign: the same for the means over a switching cycle, which winding ends have even where nothing bounds them.
     sign: two nets -> 1 when the first is surely above the second all the time, -1 when below, 0 when that is not known.
     across: (part, pair of domains) -> working voltage across that bridging part on its own pins, at the rated supply,
     without tolerance, the far side taken as earthed where that is worse, as insulation is judged.
@@ -70,5 +71,6 @@ class Stress:
     between: Callable[[str, str], Voltage | None] = lambda one, other: None
     rated: Callable[[str, str], Voltage | None] = lambda one, other: None
     sign: Callable[[str, str], int] = lambda one, other: 0
+    mean_sign: Callable[[str, str], int] = lambda one, other: 0
     across: Mapping[tuple[str, tuple[str, str]], Voltage] = field(default_factory=dict)
     barriers: Mapping[str, Voltage] = field(default_factory=dict)

@@ -4,7 +4,8 @@ Judged where the stress stage knows which of two nets is surely above the other 
 
 - an electrolytic capacitor: pin + above pin -, by the names of its pins, or by the symbol of a polarised capacitor, whose pin 1
   is + (from memory);
-- a rectifier diode whose anode is always more than 2 V above its cathode conducts all the time or dies;
+- a rectifier diode whose anode is always more than 2 V above its cathode conducts all the time or dies; so does one whose
+  cathode is a winding end: a winding has no mean voltage, so the diode feeds the rail into the winding's other end;
 - a zener diode or a suppressor with anode and cathode: the cathode above the anode, else it conducts like any diode;
 - the diode of a coupler: the anode above the cathode, else the coupler never switches;
 - a rectifier bridge: + above -.
@@ -46,7 +47,7 @@ class _Way:
     """How a part has to stand: net `above` over net `below`. wrong: what happens when it does not.
 
     least: volts that must be sure before it counts as wrong. numbered: the symbol's name whose numbers alone tell the polarity.
-    proof: whether standing right is worth a verdict.
+    proof: whether standing right is worth a verdict. mean: its mean voltage tells as well.
     """
 
     above: str
@@ -56,17 +57,19 @@ class _Way:
     least: float = 0.0
     numbered: str = ""
     proof: bool = True
+    mean: bool = False
 
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
     """One verdict per part whose polarity and voltage are both known."""
     ways = {ref: way for ref in analysis.choice if analysis.design.parts[ref].fitted and (way := _way(analysis, ref)) is not None}
     signs = {ref: analysis.stress.sign(way.above, way.below) for ref, way in ways.items()}
-    doubted = _doubted(ways, signs)
+    means = {ref: signs[ref] or analysis.stress.mean_sign(way.above, way.below) for ref, way in ways.items() if way.mean}
+    doubted = _doubted(ways, {**signs, **means})
     for ref, way in ways.items():
         if signs[ref] > 0 and way.proof:
             yield _told(analysis, clause, ref, way, "pass")
-        elif signs[ref] < 0 and _surely(analysis, way) > way.least:
+        elif (signs[ref] < 0 and _surely(analysis, way) > way.least) or (not signs[ref] and means.get(ref, 0) < 0):
             yield _told(analysis, clause, ref, way, "open" if way.numbered in doubted else "fail")
 
 
@@ -94,7 +97,7 @@ def _way(analysis: Analysis, ref: str) -> _Way | None:
         if ends is None or len(part.nets()) != 2 or _both_ways(part):
             return None
         how, wrong = "its cathode above its anode", "its anode is above its cathode, it conducts all the time"
-        return _Way(ends[1], ends[0], how, wrong, least=FORWARD)
+        return _Way(ends[1], ends[0], how, wrong, least=FORWARD, mean=kind == "diode")
     if kind == "bridge" and (poles := bridge(part)) is not None:
         return _Way(poles[0], poles[1], "its + above its -", "its + is below its -, it shorts the supply", FORWARD, proof=False)
     if kind == "optocoupler" and not _both_ways(part) and (pins := coupler(part)) is not None:
@@ -106,12 +109,12 @@ def _of_capacitor(analysis: Analysis, part: Part) -> _Way | None:
     plus, minus = named(part, _PLUS), named(part, _MINUS)
     how, wrong = "its + above its -", "its + is below its -"
     if len(plus) == len(minus) == 1 and plus != minus:
-        return _Way(plus[0], minus[0], how, wrong)
+        return _Way(plus[0], minus[0], how, wrong, mean=True)
     at = {pin.number: pin.net for pin in part.pins}
     one, two = at.get("1"), at.get("2")
     if plus or minus or set(at) != {"1", "2"} or one is None or two is None or not is_polarised(analysis, part.ref):
         return None
-    return _Way(one, two, "pin 1, its +, above pin 2", "pin 1, its +, is below pin 2", numbered=part.text("symbol"))
+    return _Way(one, two, "pin 1, its +, above pin 2", "pin 1, its +, is below pin 2", numbered=part.text("symbol"), mean=True)
 
 
 def _both_ways(part: Part) -> bool:
@@ -130,7 +133,8 @@ def _told(analysis: Analysis, clause: Clause, ref: str, way: _Way, outcome: str)
     if outcome == "pass":
         because = f"{ref} stands with {way.how}: {way.above} is always above {way.below}"
         return clause.passes(subject, _WHAT, because, Step(because, inputs), found=Words(f"{way.above} above {way.below}"))
-    because = f"{way.below} is always above {way.above}, and {ref} needs {way.how}: {way.wrong}"
+    when = "always" if analysis.stress.sign(way.above, way.below) else "on the mean of a cycle"
+    because = f"{way.below} is {when} above {way.above}, and {ref} needs {way.how}: {way.wrong}"
     found = Words(f"{way.below} above {way.above}")
     if outcome == "fail":
         return clause.fails(subject, "A part stands the wrong way round.", because, Step(because, inputs), found=found)

@@ -192,7 +192,8 @@ def _rated(analysis: Analysis, ref: str) -> Rated | None:
     nothing but a voltage may be a zener."""
     candidate = analysis.choice[ref]
     rating = candidate.ratings.get("voltage")
-    if candidate.kind == "diode" and rating is not None and _ONLY_VOLTS.fullmatch(rating.text):
+    said = analysis.design.parts[ref].text("value")
+    if candidate.kind == "diode" and rating is not None and rating.text == said and _ONLY_VOLTS.fullmatch(said):
         return None
     if rating is not None and (candidate.kind not in _CIRCUITS or rating.trust not in (Trust.NETLIST, Trust.BOM, Trust.GUESSED)):
         low = float(rating.value)

@@ -19,8 +19,18 @@ NONE = 0.5  # V; what is surely less than this is no voltage worth telling
 class Voltages:
     """Answers `voltage between two nets` for one choice of supply voltage; answers are kept."""
 
-    def __init__(self, board: Board, found: Field, same: Mapping[str, str], strung: Mapping[str, String], frequency: float):
-        self._board, self._found, self._same, self._frequency = board, found, same, frequency
+    def __init__(
+        self,
+        board: Board,
+        found: Field,
+        same: Mapping[str, str],
+        strung: Mapping[str, String],
+        means: Mapping[str, str],
+        rectified: Mapping[str, tuple[int, str]],
+        frequency: float,
+    ):
+        self._board, self._found, self._same, self._means, self._frequency = board, found, same, means, frequency
+        self._rectified = rectified
         self._strings = {net: string for string in strung.values() for net in string.nets[1:-1]}
         self._ends: dict[tuple[str, str], String] = {}
         for string in strung.values():
@@ -43,6 +53,18 @@ class Voltages:
         if bottom(minus(a.low, b.high)) > NONE:
             return 1
         return -1 if bottom(minus(b.low, a.high)) > NONE else 0
+
+    def mean_sign(self, one: str, other: str) -> int:
+        """As `sign`, for the means over a switching cycle: a winding end has that of the held net at the winding's other end,
+        and what a rectifier feeds from the winding lies above or below that."""
+        ends = [self._same.get(net, net) for net in (one, other)]
+        tied = [self._means.get(end, end) for end in ends]
+        known = self.sign(tied[0], tied[1])
+        for at, way in ((0, 1), (1, -1)):
+            sign, held = self._rectified.get(ends[at], (0, ""))
+            if not known and held == tied[1 - at]:
+                known = sign * way
+        return known
 
     def potential(self, net: str, usual: bool) -> Potential | None:
         """The potential of a net; inside a resistor string by its share of the voltage between the ends."""

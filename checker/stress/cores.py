@@ -91,6 +91,37 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str],
     return {net: known for net, known in found.items() if not (net in sources and sources[net].held)}
 
 
+def means(board: Board, sources: Mapping[str, Potential], same: Mapping[str, str]) -> dict[str, str]:
+    """Conductor on a winding -> the held conductor at whose potential it lies on the mean of a cycle: a winding has no direct
+    voltage, whatever its turns."""
+    found: dict[str, str] = {}
+    for ref, candidate in board.choice.items():
+        if candidate.kind not in ("transformer", "inductor") or not board.design.parts[ref].fitted:
+            continue
+        at = {pin.number: same.get(pin.net, pin.net) for pin in board.design.parts[ref].pins if pin.net is not None}
+        for winding in candidate.windings or _by_sides(board, ref):
+            ends = dict.fromkeys(at[pin] for pin in winding.pins if pin in at)
+            held = [end for end in ends if end in sources]
+            if len(held) == 1:
+                found.update({end: held[0] for end in ends if end not in sources})
+    return found
+
+
+def rectified(board: Board, means: Mapping[str, str], same: Mapping[str, str]) -> dict[str, tuple[int, str]]:
+    """Conductor that a diode ties to a winding end -> (1 above or -1 below, the held conductor of that winding's mean)."""
+    found: dict[str, tuple[int, str]] = {}
+    both: set[str] = set()
+    for ref, candidate in board.choice.items():
+        if candidate.kind not in ("diode", "bridge") or not board.design.parts[ref].fitted:
+            continue
+        for ends in diodes(board, ref):
+            anode, cathode = (same.get(net, net) for net in ends)
+            for net, end, sign in ((cathode, anode, 1), (anode, cathode, -1)):
+                if end in means and net not in means and found.setdefault(net, (sign, means[end])) != (sign, means[end]):
+                    both.add(net)
+    return {net: told for net, told in found.items() if net not in both}
+
+
 def _sections(board: Board, ref: str, same: Mapping[str, str]) -> list[_Section]:
     """The sections of a core; empty when the turns of one winding are neither stated nor follow from rated voltages."""
     at = {pin.number: pin.net for pin in board.design.parts[ref].pins}

@@ -17,7 +17,7 @@ from checker.stress.across import Across
 from checker.stress.between import Voltages
 from checker.stress.buses import buses
 from checker.stress.conductors import conductors
-from checker.stress.cores import cores
+from checker.stress.cores import cores, means, rectified
 from checker.stress.entries import carried, entries
 from checker.stress.lines import pole_potentials, poles
 from checker.stress.potential import Potential
@@ -68,6 +68,7 @@ def stressed(board: Board) -> Stress:
         between=between.between,
         rated=rated.between,
         sign=between.sign,
+        mean_sign=between.mean_sign,
         across=parts,
         barriers=barriers,
     )
@@ -93,7 +94,8 @@ def _voltages(
         return board.isolation.domain_of.get(net)
 
     found = spread(sources, line, edges, frame_of, cores(board, sources, line, same))
-    return Voltages(board, found, same, strung, board.setting.mains_frequency)
+    mean = means(board, sources, same)
+    return Voltages(board, found, same, strung, mean, rectified(board, mean, same), board.setting.mains_frequency)
 
 
 def _fix(sources: dict[str, Potential], fixed: list[Rail], same: Mapping[str, str]) -> None:
