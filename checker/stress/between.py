@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from dataclasses import dataclass
 
 from checker.formulas.waveform import Wave, bottom, higher, largest, least, lower, mean, minus, plus, rms, times, top
 from checker.model.rule import Board
@@ -37,6 +38,7 @@ class Voltages:
             for one, other in zip(string.nets, string.nets[1:], strict=False):
                 self._ends[one, other] = self._ends[other, one] = string
         self._known: dict[tuple[str, str], Voltage | None] = {}
+        self._figures: dict[tuple[tuple[Wave, Wave] | None, ...], _Figures | None] = {}
 
     def between(self, one: str, other: str) -> Voltage | None:
         """The voltage between two nets, None when nothing bounds it and nothing of it is sure."""
@@ -116,9 +118,13 @@ class Voltages:
         if soft[0] is None or soft[1] is None or soft[0].frame != soft[1].frame:
             return None
         hard = self.potential(one, usual=False), self.potential(other, usual=False)
-        sure = minus(soft[0].low, soft[1].high), minus(soft[0].high, soft[1].low)
-        never = (-math.inf, math.inf) if hard[0] is None or hard[1] is None else _decisive(hard[0], hard[1], sure)
-        return voltage(f"between {one} and {other}", never, sure, (soft[0].step, soft[1].step), self._frequency)
+        waves = tuple((known.low, known.high) if known is not None else None for known in (*soft, *hard))
+        if waves not in self._figures:
+            sure = minus(soft[0].low, soft[1].high), minus(soft[0].high, soft[1].low)
+            never = (-math.inf, math.inf) if hard[0] is None or hard[1] is None else _decisive(hard[0], hard[1], sure)
+            self._figures[waves] = _figures(never, sure)
+        figures = self._figures[waves]
+        return None if figures is None else _told(one, other, figures, (soft[0].step, soft[1].step), self._frequency)
 
 
 def _decisive(one: Potential, other: Potential, sure: tuple[Wave, Wave]) -> tuple[Wave, Wave]:
@@ -140,10 +146,17 @@ def _at(one: Wave, other: Wave, share: float) -> Wave:
     return one if share <= 0 else other if share >= 1 else plus(times(one, 1 - share), times(other, share))
 
 
-def voltage(
-    what: str, upper: tuple[Wave, Wave], sure: tuple[Wave, Wave], steps: tuple[Step, ...], frequency: float
-) -> Voltage | None:
-    """A Voltage from the interval that a difference never leaves and the one it has in normal use, lower and upper wave each.
+@dataclass(frozen=True, slots=True)
+class _Figures:
+    """(surely, never above) of peak and r.m.s., never above None where nothing bounds it."""
+
+    shape: str
+    peak: tuple[float, float | None]
+    rms: tuple[float, float | None]
+
+
+def _figures(upper: tuple[Wave, Wave], sure: tuple[Wave, Wave]) -> _Figures | None:
+    """What a difference never leaves and what it has in normal use, lower and upper wave each, as figures.
 
     None when nothing bounds it and nothing of it is sure.
     """
@@ -151,18 +164,22 @@ def voltage(
     bounded = math.isfinite(top(most))
     if not bounded and top(surely) < NONE:
         return None
-    shape = _shape(upper if bounded else sure)
-    figures = {"peak": (top(surely) + 0.0, top(most) + 0.0), "rms": (rms(surely), rms(most) if bounded else math.inf)}
-    made = {}
-    for name, (least_of, most_of) in figures.items():
-        form = "dc" if shape == "dc" else name
-        highest = most_of if bounded else None
-        text = f"the voltage {what} is at most {most_of:.4g} V" if bounded else f"nothing bounds the voltage {what}"
-        if least_of >= NONE:
-            text += f", surely {least_of:.4g} V"
-        step = Step(f"{text} ({'direct' if form == 'dc' else name})", steps, result=highest, unit="V", form=form)
-        made[name] = Bounds(least_of, highest, step, form=form)
-    return Voltage(made["rms"], made["peak"], shape, 0.0 if shape == "dc" else frequency)
+    peak, whole = (top(most) + 0.0, rms(most)) if bounded else (None, None)
+    return _Figures(_shape(upper if bounded else sure), (top(surely) + 0.0, peak), (rms(surely), whole))
+
+
+def _told(one: str, other: str, figures: _Figures, steps: tuple[Step, ...], frequency: float) -> Voltage:
+    """The figures as a Voltage with its derivation."""
+    made = []
+    for name, (surely, most) in (("rms", figures.rms), ("peak", figures.peak)):
+        form = "dc" if figures.shape == "dc" else name
+        between = f"the voltage between {one} and {other}"
+        text = f"nothing bounds {between}" if most is None else f"{between} is at most {most:.4g} V"
+        if surely >= NONE:
+            text += f", surely {surely:.4g} V"
+        step = Step(f"{text} ({'direct' if form == 'dc' else name})", steps, result=most, unit="V", form=form)
+        made.append(Bounds(surely, most, step, form=form))
+    return Voltage(made[0], made[1], figures.shape, 0.0 if figures.shape == "dc" else frequency)
 
 
 def _shape(band: tuple[Wave, Wave]) -> str:
