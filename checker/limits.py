@@ -14,6 +14,7 @@ PARTS = 250_000
 NETS = 500_000
 PINS_PER_NET = 500_000
 PINS_PER_PART = 20_000
+PADS = 500_000  # lands and holes of one layout; the largest real board looked at has 5,763
 BOM_ROWS = 250_000
 BOM_COLUMNS = 512
 CELL = 1024  # characters of a BOM cell that are looked at for values and ratings

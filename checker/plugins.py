@@ -29,6 +29,7 @@ BUILT_IN: Mapping[str, Mapping[str, str]] = {
     "readers": {
         "sexpr": "checker.readers.sexpr_netlist:READER",
         "xml": "checker.readers.xml_netlist:READER",
+        "ipcd356": "checker.readers.ipcd356:READER",
         "bom": "checker.readers.bom_table:READER",
         "parts": "checker.readers.parts_file:READER",
     },
@@ -47,6 +48,7 @@ BUILT_IN: Mapping[str, Mapping[str, str]] = {
         "through-insulation": "checker.rules.through_insulation:RULE",
         "electric-strength": "checker.rules.electric_strength:RULE",
         "pad-span": "checker.rules.pad_span:RULE",
+        "pad-distance": "checker.rules.pad_distance:RULE",
         "touch-current": "checker.rules.touch_current:RULE",
         "earth-current": "checker.rules.earth_current:RULE",
         "line-capacitor": "checker.rules.line_capacitor:RULE",

@@ -19,8 +19,10 @@ A part takes `value`, `symbol`, `library`, `footprint`, `description`, `type`, `
 `windings`, `fitted`, `kind`; `pins` maps pin numbers to nets, `names` pin numbers to pin names. `bom: true` puts its facts
 into a bill of materials instead of the netlist, `bom: {description: ...}` adds a row of its own to them, `bom: false` keeps the
 part out of the bill that the other parts are then in. `rows: {R7: {value: 1k}}` of a case are rows for parts that the netlist
-lacks. `circuits:` is a map of named circuits, or the name of a file beside this one that holds them. `never: {fail: why}`
-says which outcomes the rule cannot have.
+lacks. `pads: {U2.1: [0, 10, 1.6, 2, top]}` says where copper lies as a layout file does: x, y, width and height in mm, then the
+side and the angle in degrees where it is not on both sides and upright; a name that is a net stands for a via. `circuits:` is a
+map of named circuits, or the name of a file beside this one that holds them. `never: {fail: why}` says which outcomes the rule
+cannot have.
 """
 
 from __future__ import annotations
@@ -34,7 +36,7 @@ from checker import files, limits, pipeline, rulesets
 from checker.model.clause import LEVELS
 from checker.model.declaration import Declaration
 from checker.model.fact import ATTRIBUTES, Fact, Source, Trust
-from checker.model.reading import NetRecord, Node, PartRecord, Reading, Row, SymbolPin
+from checker.model.reading import NetRecord, Node, PadRecord, PartRecord, Reading, Row, SymbolPin
 from checker.model.report import Report
 from checker.model.verdict import OUTCOMES
 from checker.strict_yaml import Map, load, suggestion
@@ -75,6 +77,7 @@ class Case:
     expect: tuple[Expected, ...]
     rows: tuple[Row, ...] = ()
     line: int = 0
+    pads: tuple[PadRecord, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,7 +123,7 @@ def _case(rule: str, keys: Map, bases: dict[str, dict[str, Described]], path: st
         parts.pop(node.one_of(parts))
     own = keys.take("parts")
     parts.update(_parts(own.map()) if own is not None else {})
-    declared, extra = keys.take("declaration"), keys.take("rows")
+    declared, extra, pads = keys.take("declaration"), keys.take("rows"), keys.take("pads")
     chosen = keys.take("rulesets")
     case = Case(
         rule,
@@ -132,6 +135,7 @@ def _case(rule: str, keys: Map, bases: dict[str, dict[str, Described]], path: st
         tuple(_expected(node) for node in keys.need("expect").items()),
         tuple(_row(key, node.map()) for key, node in extra.entries()) if extra is not None else (),
         keys.node.line,
+        tuple(_pad(key, node, parts) for key, node in pads.entries()) if pads is not None else (),
     )
     keys.done()
     return case
@@ -176,11 +180,26 @@ def _row(key: YamlNode, keys: Map) -> Row:
     return Row((key.text(),), _facts(keys, Trust.BOM), Source(key.path, key.line, key.column))
 
 
+def _pad(key: YamlNode, node: YamlNode, parts: Mapping[str, Described]) -> PadRecord:
+    """The copper of one pin, or of a via on a net of the case."""
+    items = node.items()
+    if not 4 <= len(items) <= 6:
+        raise node.error("is not a pad", found=f"{len(items)} items", expected="[x, y, width, height] and then side, angle")
+    ref, _, pin = key.text().rpartition(".")
+    nets = dict(parts[ref].pins) if ref in parts else {}
+    if pin not in nets:
+        ref, pin, nets = "", "", {"": key.one_of({net for part in parts.values() for _, net in part.pins})}
+    x, y, width, height = (item.number() for item in items[:4])
+    side = items[4].one_of(("top", "bottom", "both")) if len(items) > 4 else "both"
+    turned = items[5].number() if len(items) > 5 else 0.0
+    return PadRecord(ref, pin, nets[pin], x, y, width, height, turned, 0.0, side, Source(key.path, key.line, key.column))
+
+
 def _pairs(node: YamlNode | None) -> tuple[tuple[str, str], ...]:
     return tuple((key.text(), value.text()) for key, value in node.entries()) if node is not None else ()
 
 
-def readings(parts: tuple[Described, ...], rows: tuple[Row, ...] = ()) -> list[Reading]:
+def readings(parts: tuple[Described, ...], rows: tuple[Row, ...] = (), pads: tuple[PadRecord, ...] = ()) -> list[Reading]:
     """A netlist reading of the described parts, and a BOM reading when some have their facts there or `rows` are given."""
     nets: dict[str, list[Node]] = {}
     records = []
@@ -192,7 +211,7 @@ def readings(parts: tuple[Described, ...], rows: tuple[Row, ...] = ()) -> list[R
         records.append(PartRecord(part.ref, part.facts, part.source, symbol))
     listed = tuple(NetRecord(name, name, tuple(nodes), nodes[0].source) for name, nodes in nets.items())
     path = parts[0].source.path if parts else ""
-    found = [Reading("netlist", "case", path, "", tuple(records), listed)]
+    found = [Reading("netlist", "case", path, "", tuple(records), listed, pads=pads)]
     if rows or any(part.row is not None or not part.listed for part in parts):
         bill = tuple(Row((part.ref,), part.row or (), part.source) for part in parts if part.listed)
         found.append(Reading("bom", "case", path, "", rows=(*bill, *rows)))
@@ -201,7 +220,9 @@ def readings(parts: tuple[Described, ...], rows: tuple[Row, ...] = ()) -> list[R
 
 def report_of(case: Case) -> Report:
     """The report of a case, judged by its rulesets. A rule that raises fails the case."""
-    judged = pipeline.judge(case.name, readings(case.parts, case.rows), case.declaration, rulesets.load_all(case.rulesets), ())
+    judged = pipeline.judge(
+        case.name, readings(case.parts, case.rows, case.pads), case.declaration, rulesets.load_all(case.rulesets), ()
+    )
     if judged.raised:
         raise AssertionError("\n".join(judged.raised))
     return judged.report

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from functools import lru_cache
 
 from checker import limits
@@ -35,17 +35,20 @@ _UNLISTED = (
     "mouse bite",
     "mousebite",
 )
+CUT = {"IPC-D-356 netlist": 6}  # netlist forms that cut references, and how many characters they keep
 _WORDS = re.compile(r"[A-Z]+(?![a-z])|[A-Z]?[a-z]+|[0-9]+")
 
 
-def match_bom(book: Book, reading: Reading, variant: str | None) -> list[Note]:
+def match_bom(book: Book, reading: Reading, variant: str | None, cut: int = 0) -> list[Note]:
     """Put the facts of every row on the parts it names; notes in row order.
 
     Of several tables of one file that list a reference, the one whose caption is `variant` counts, else the first.
+    cut: how many characters of a reference the netlist keeps, 0 for all of them.
     Raises InputError when a part has more than limits.ALTERNATES choices.
     """
     notes: list[Note] = []
-    resolved = [(row, list(_resolved(book, row, notes))) for row in reading.rows]
+    short, unclear = _shortened(book, reading, cut, notes) if cut else ({}, frozenset())
+    resolved = [(row, list(_resolved(book, row, short, notes))) for row in reading.rows]
     counts: dict[str, str] = {}  # reference -> the table that is used for it
     if len({row.table for row in reading.rows}) > 1:
         for row, refs in resolved:
@@ -56,6 +59,8 @@ def match_bom(book: Book, reading: Reading, variant: str | None) -> list[Note]:
     for row, refs in resolved:
         flag = row_fitted(row.facts)
         for ref in refs:
+            if ref in unclear:
+                continue
             if counts.get(ref, row.table) != row.table:
                 passed.setdefault(row.table, {}).setdefault(ref, row.source)
                 continue
@@ -72,7 +77,35 @@ def match_bom(book: Book, reading: Reading, variant: str | None) -> list[Note]:
     return notes
 
 
-def _resolved(book: Book, row: Row, notes: list[Note]) -> Iterator[str]:
+def _shortened(book: Book, reading: Reading, cut: int, notes: list[Note]) -> tuple[dict[str, str], frozenset[str]]:
+    """(reference of the BOM -> what the netlist has cut it to, references that could be several parts); adds notes on both.
+
+    A cut reference is joined only where a single longer one begins with it and none equals it.
+    """
+    places = {ref: row.source for row in reading.rows for ref in row.refs}
+    begun: dict[str, list[str]] = {}
+    for ref in places:
+        stem = ref[:cut]
+        if len(ref) > cut and stem in book.copies and stem not in places and not book.find(ref):
+            begun.setdefault(stem, []).append(ref)
+    short: dict[str, str] = {}
+    unclear: list[str] = []
+    for stem, refs in begun.items():
+        kept = neutral(stem, 40)
+        alike = [ref for ref in book.drafts if ref == stem or ref.startswith(f"{stem} (")]
+        if len(refs) == len(alike) == 1:
+            short[refs[0]] = stem
+            text = f"the netlist keeps {cut} characters of a reference: its {kept} was taken for {neutral(refs[0], 80)} of the BOM"
+            notes.append(Note("case-differs", text, (places[refs[0]],), (stem,)))
+            continue
+        unclear += refs
+        names = ", ".join(neutral(ref, 40) for ref in refs[:5]) + (", ..." if len(refs) > 5 else "")
+        text = f"the netlist keeps {cut} characters of a reference: {kept} may be any of {names}: nothing of them was used"
+        notes.append(Note("reference-unread", text, tuple(places[ref] for ref in refs[:5]), (*alike, *refs)))
+    return short, frozenset(unclear)
+
+
+def _resolved(book: Book, row: Row, short: Mapping[str, str], notes: list[Note]) -> Iterator[str]:
     """The references of a row as the netlist writes them, where it has them; adds notes on those it writes differently."""
     refs = list(book.unexpanded(row.refs))
     words = row.unread.split()
@@ -80,7 +113,7 @@ def _resolved(book: Book, row: Row, notes: list[Note]) -> Iterator[str]:
     unread = " ".join(word for word in words if not book.find(word))
     seen: set[str] = set()
     for ref in refs:
-        known = ref if book.find(ref) else book.like(ref)
+        known = ref if book.find(ref) else short.get(ref) or book.like(ref)
         if known and known != ref and known.casefold() == ref.casefold():
             text = f"the BOM writes {neutral(ref, 80)}, the netlist {neutral(known, 80)}"
             notes.append(Note("case-differs", text, (row.source,), (known,)))
@@ -161,10 +194,10 @@ def _other_table(table: str, places: dict[str, Source], counts: dict[str, str]) 
     return Note("skipped", text, (places[refs[0]],), tuple(refs))
 
 
-def not_in_bom(book: Book) -> Iterator[Note]:
-    """Every fitted part that no BOM lists, but for parts kept out on purpose and things nobody buys."""
+def not_in_bom(book: Book, told: frozenset[str] = frozenset()) -> Iterator[Note]:
+    """Every fitted part that no BOM lists, but for parts kept out on purpose, things nobody buys and those a note tells of."""
     for draft in book.drafts.values():
-        if draft.rows or not draft.fitted() or any(fact.value is False for fact in draft.says("in_bom")):
+        if draft.ref in told or draft.rows or not draft.fitted() or any(fact.value is False for fact in draft.says("in_bom")):
             continue
         if any(_nothing_to_buy(str(fact.value)) for name in ("footprint", "symbol", "value") for fact in draft.says(name)):
             continue

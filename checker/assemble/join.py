@@ -6,10 +6,11 @@ import unicodedata
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 
-from checker.assemble.bom_match import match_bom, match_parts, not_in_bom
+from checker.assemble.bom_match import CUT, match_bom, match_parts, not_in_bom
 from checker.assemble.declared import apply_declared, unused
 from checker.assemble.draft import Book, Draft, statement
 from checker.assemble.nets import merged
+from checker.assemble.pads import placed
 from checker.assemble.variants import apply_variant, check_variant, known_variants
 from checker.errors import ArgumentError
 from checker.model.circuit import Design, Input, Net, Pin
@@ -40,7 +41,7 @@ def assemble(name: str, readings: Sequence[Reading], declaration: Declaration, v
     notes = [*netlists[0].notes, *circuit.notes, *notes]
     boms = [reading for reading in readings if reading.role == "bom"]
     for reading in boms:
-        notes += (*reading.notes, *match_bom(book, reading, variant))
+        notes += (*reading.notes, *match_bom(book, reading, variant, CUT.get(netlists[0].form, 0)))
     for reading in readings:
         if reading.role == "parts":
             notes += (*reading.notes, *match_parts(book, reading))
@@ -48,7 +49,7 @@ def assemble(name: str, readings: Sequence[Reading], declaration: Declaration, v
     apply_variant(book, variant, netlists, declaration)
     notes += _flags(book)
     if boms:
-        notes += not_in_bom(book)
+        notes += not_in_bom(book, frozenset(ref for note in notes if note.kind == "reference-unread" for ref in note.parts))
     notes += unused(book, circuit.nets, circuit.joined, declaration)
     return Design(
         name,
@@ -59,6 +60,7 @@ def assemble(name: str, readings: Sequence[Reading], declaration: Declaration, v
         variant,
         bool(boms),
         known,
+        placed(netlists[0].pads, circuit.nets, circuit.joined),
     )
 
 
