@@ -110,7 +110,17 @@ def analyse(
         grades.update({(ruleset.id, separation): grade for separation, grade in found.items()})
         asked.update(needs(board, every, stress, grades, basis(ruleset)))
     return Analysis(
-        design, declaration, identity, choice, isolation, set_up, grades=grades, stress=stress, needs=asked, further=further
+        design,
+        declaration,
+        identity,
+        choice,
+        isolation,
+        set_up,
+        grades=grades,
+        stress=stress,
+        needs=asked,
+        further=further,
+        tables={ruleset.id: ruleset.tables for ruleset in rulesets},
     )
 
 

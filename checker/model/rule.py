@@ -15,6 +15,7 @@ from checker.model.fact import Fact
 from checker.model.requirement import Grade, Need
 from checker.model.separation import Separation
 from checker.model.stress import Stress
+from checker.model.table import Table
 from checker.model.verdict import Verdict
 
 LINK = 1.0  # ohm; a resistor below this in the line is a link or a shunt, not a load (common practice, no source)
@@ -88,7 +89,7 @@ class Board:
 class Analysis(Board):
     """All stages' results for one design under one condition; the only thing a rule sees.
 
-    grades: (ruleset id, separation id) -> needed grade. needs: (ruleset id, separation id, "" or the part on its own pins).
+    tables: ruleset id -> its tables. grades: (ruleset id, separation id) -> needed grade. needs: (ruleset id, separation id, "" or the part on its own pins).
     further: what must be kept apart besides the barriers, for the layout; its grades, voltages and needs stand beside theirs.
     """
 
@@ -96,6 +97,12 @@ class Analysis(Board):
     stress: Stress = field(default_factory=Stress)
     needs: Mapping[tuple[str, str, str], Need] = field(default_factory=dict)
     condition: Condition = NORMAL
+    tables: Mapping[str, Mapping[str, Table]] = field(default_factory=dict)
+
+    def table(self, ruleset: str, name: str) -> Table | None:
+        """A table of a ruleset, None when it has none of that name."""
+        return self.tables.get(ruleset, {}).get(name)
+
     further: tuple[Separation, ...] = ()
 
 

@@ -1,4 +1,4 @@
-"""Are the capacitors across a barrier of the right class, enough of them, and on a quiet node?
+"""Are the capacitors across a barrier of the right class and voltage, enough of them, and on a quiet node?
 
 A capacitor across insulation is part of it: when it fails short, the barrier is gone. IEC 60384-14 classes say what a
 capacitor may bridge: Y1 double or reinforced insulation, Y2 (and Y1) basic or supplementary; class X is for places where a
@@ -10,7 +10,13 @@ no class is stated by anything that was read and the part is described completel
 switch or rectifier), where it would carry the switching voltage across. Open when the grade is not known, when nothing but a
 value is stated about the part, or when it is rated for a.c. as safety capacitors are and only the class is missing.
 
-To settle it: BOM column `Class`, or `marks: [Y1]` in a parts file or the declaration.
+Where the mains is on one side, every capacitor with a class Y must be rated, in a.c. r.m.s., for the whole rated mains voltage
+without tolerance, also in a series, where either may fail short. A d.c. figure proves nothing about a.c., and a class
+alone only that Y2 is good for 150 V: open then, once per chain. Two in series that are accepted only because they are two
+must have the same capacitance, so that they share the voltage.
+
+To settle it: BOM columns `Class` and `Voltage`, or `marks: [Y1]` and `ratings: {voltage: 250 V rms}` in a parts file or the
+declaration.
 """
 
 from __future__ import annotations
@@ -26,7 +32,8 @@ from checker.model.fact import Fact
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Verdict, Words
-from checker.parameters import TextSet
+from checker.parameters import Flag, TextSet
+from checker.rules.bridging_voltage import of_split, of_voltage
 
 _CLASSES = ("Y1", "Y2", "Y3", "Y4", "X1", "X2", "X3")
 _RANK = {"Y1": 3, "Y2": 2, "Y4": 1, "Y3": 1}
@@ -35,21 +42,42 @@ BULK = 0.9e-6  # F; a node with this much capacitance to its own circuit is quie
 
 @dataclass(frozen=True, slots=True)
 class Params:
-    """Accepted arrangements by grade: a class, or classes in series joined by `+`; any order, better classes count too."""
+    """Accepted arrangements by grade: a class, or classes in series joined by `+`; any order, better classes count too.
+
+    equal: whether capacitors that are accepted only as a series must have the same capacitance.
+    """
 
     reinforced: Annotated[tuple[str, ...], TextSet()] = ("Y1", "Y2+Y2")
     basic: Annotated[tuple[str, ...], TextSet()] = ("Y1", "Y2")
+    equal: Annotated[bool, Flag()] = True
 
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
-    """One verdict per chain of capacitors, and one more where it hangs on a switching node."""
+    """Per chain of capacitors: its class, the node it hangs on, its rated voltage, and how a series divides it."""
     seen: set[tuple[tuple[str, ...], tuple[str, str]]] = set()
     for crossing in analysis.isolation.crossings:
         if crossing.how != "capacitor" or (crossing.chain, crossing.between) in seen:
             continue
         seen.add((crossing.chain, crossing.between))
-        yield _of_class(analysis, clause, crossing)
+        classed = _of_class(analysis, clause, crossing)
+        yield classed
         yield from _of_node(analysis, clause, crossing)
+        nets = _end_nets(analysis, crossing)
+        classes = ((ref, _class_of(analysis.choice[ref])) for ref in crossing.chain)
+        members = [(ref, name) for ref, name in classes if name is not None and _rank(name)]
+        for verdict in of_voltage(analysis, clause, crossing, members, nets):
+            if verdict.outcome != "open" or classed.outcome != "fail":  # a part that must go need not be asked about
+                yield verdict
+        if clause.params.equal and _needs_series(analysis, clause, crossing, members):
+            yield from of_split(analysis, clause, crossing, members, nets)
+
+
+def _needs_series(analysis: Analysis, clause: Clause, crossing: Crossing, members: list[tuple[str, str]]) -> bool:
+    """Whether the chain is accepted as a series and none of its members would be alone."""
+    grade = analysis.grades[(clause.ruleset, "|".join(crossing.between))].grade
+    wanted = {"basic": clause.params.basic, "supplementary": clause.params.basic}.get(grade, clause.params.reinforced)
+    alone = any(_satisfies([name], arrangement) for _, name in members for arrangement in wanted)
+    return not alone and any(_satisfies([name for _, name in members], arrangement) for arrangement in wanted)
 
 
 def _of_class(analysis: Analysis, clause: Clause, crossing: Crossing) -> Verdict:
