@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 import re
+from collections import Counter
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 
@@ -136,9 +137,20 @@ def _plug(analysis: Analysis, entry: Entry, one: Mapping[str, str], text: str, o
                 windings.append(ref)
             elif candidate.kind in _LOADS:
                 loads.append(ref)
-        if candidate.kind in ("ic", "controller", "module", "unknown", "regulator") and _DISCHARGER.search(_texts(analysis, ref)):
+        if _DISCHARGER.search(_texts(analysis, ref)):
             dischargers.append(ref)
-    return Plug(text, pins, tuple(capacitors), tuple(resistors), tuple(windings), tuple(loads), tuple(dischargers), opened)
+    return Plug(text, pins, tuple(capacitors), _ways(resistors, pins), tuple(windings), tuple(loads), tuple(dischargers), opened)
+
+
+def _ways(resistors: list[Element], pins: tuple[str, str]) -> tuple[Element, ...]:
+    """Those resistors that lead from pin to pin: what ends on a net of its own is taken off, end by end."""
+    found = list(resistors)
+    while True:
+        ends = Counter(end for one in found for end in one.ends)
+        kept = [one for one in found if all(end in pins or ends[end] > 1 for end in one.ends)]
+        if len(kept) == len(found):
+            return tuple(kept)
+        found = kept
 
 
 def _charged(analysis: Analysis, ref: str, nets: tuple[str, ...], one: Mapping[str, str]) -> bool:
