@@ -18,6 +18,8 @@ from checker.model.fact import Fact
 from checker.model.names import entry_like, supply_volts
 from checker.model.step import Step
 
+HARMLESS = 60.0  # V d.c., class ES1 (IEC 62368-1:2018 table 4)
+
 
 @dataclass(frozen=True, slots=True)
 class Side:
@@ -120,8 +122,11 @@ def _hazards(
             found.setdefault(island, ("mains", "mains: " + _reasons(gathered[island].mains.values())))
     if "mains" in supplies and not any(hazard == "mains" for hazard, _ in found.values()):
         _locate_mains(isle, members, gathered, allowed, supplies["mains"], found, sides)
-    if "dc" in supplies and not any(hazard == "dc" for hazard, _ in found.values()):
-        _locate_direct(isle, members, allowed, supplies["dc"], declaration, found, sides)
+    # beside the mains a low d.c. supply feeds a side of its own, which is no hazard: where it enters decides nothing
+    harmless = "mains" in supplies and "dc" in supplies and supplies["dc"].voltage.high <= HARMLESS
+    if "dc" in supplies and not harmless and not any(hazard == "dc" for hazard, _ in found.values()):
+        free = [island for island in allowed if island not in found]
+        _locate_direct(isle, members, free, supplies["dc"], declaration, found, sides)
     if not supplies and not found:
         for island in allowed:
             if gathered[island].voltage:

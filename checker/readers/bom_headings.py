@@ -32,7 +32,7 @@ _ALIASES = {
     "supplierandref supplierpn supplierno distributorpn distributorpartno distributorpart distributorno orderno ordercode "
     "catno catalogno vendorpartno vendorpn vendorno stockcode sku bestellnummer",
     "description": "description desc partdescription kidescription details longdescription rating ratings part parts component "
-    "components specification specifications spec specs bezeichnung beschreibung bemerkung bemerkungen",
+    "components specification specifications spec specs bezeichnung beschreibung bemerkung bemerkungen text produktbezeichnung",
     "datasheet": "datasheet datasheeturl datasheetlink datenblatt",
     "kind": "kind",
     "mark": "class safetyclass safetyapproval safetyapprovals approval approvals mark marks standard standards certification "

@@ -14,6 +14,7 @@ from checker.stress.potential import Potential
 from checker.stress.spread import Field
 from checker.stress.strings import String, facts
 
+MINOR = 1.25  # how much larger a voltage may be by what parts keep in normal use than by what physics alone tells
 NONE = 0.5  # V; what is surely less than this is no voltage worth telling
 
 
@@ -131,12 +132,13 @@ def _decisive(one: Potential, other: Potential, sure: tuple[Wave, Wave]) -> tupl
     """The interval that the difference of two potentials never leaves.
 
     Where physics bounds it one way only, the other way is taken as in normal use, so long as that is not what decides its
-    size: a start-up string sees at most the bus, whatever its far end is rated for. Otherwise ratings would prove themselves.
+    size, by more than the part MINOR: a start-up string sees at most the bus, whatever its far end is rated for. Otherwise
+    ratings would prove themselves.
     """
     low, high = minus(one.low, other.high), minus(one.high, other.low)
-    if math.isinf(bottom(low)) and math.isfinite(top(high)) and -bottom(sure[0]) <= top(high):
+    if math.isinf(bottom(low)) and math.isfinite(top(high)) and -bottom(sure[0]) <= MINOR * top(high):
         return sure[0], high
-    if math.isinf(top(high)) and math.isfinite(bottom(low)) and top(sure[1]) <= -bottom(low):
+    if math.isinf(top(high)) and math.isfinite(bottom(low)) and top(sure[1]) <= -MINOR * bottom(low):
         return low, sure[1]
     return low, high
 

@@ -27,6 +27,7 @@ _CHIPS = frozenset(
 )
 _HIGH = frozenset("HV DRAIN D SW LX BST BOOT VB HO HS HB PHASE VSW CB HVIN".split())
 _SWINGING = _HIGH | frozenset("DR LO OUT OUTA OUTB GATE DRV DRIVE G CP CN C1+ C1- C2+ C2-".split())
+TOUCHABLE = 60.0  # V; class ES1, d.c. (IEC 62368-1:2018 table 4)
 COUPLER = 80.0  # V; the most that usual couplers with a transistor output are rated for (common practice, no source)
 
 
@@ -80,8 +81,9 @@ class Pulls:
             self.usual.append((one, other, volts, volts if back is None else back))
 
 
-def pulls(board: Board, same: Mapping[str, str], strung: Mapping[str, String]) -> Pulls:
-    """The edges of every fitted part. same: net -> conductor. strung: resistor -> its string, taken as one edge."""
+def pulls(board: Board, same: Mapping[str, str], strung: Mapping[str, String], grounds: Mapping[str, str]) -> Pulls:
+    """The edges of every fitted part. same: net -> conductor. strung: resistor -> its string, taken as one edge. grounds: domain
+    -> its reference net."""
     found = Pulls()
     for ref, candidate in board.choice.items():
         part = board.design.parts[ref]
@@ -102,12 +104,21 @@ def pulls(board: Board, same: Mapping[str, str], strung: Mapping[str, String]) -
                 found.agile.update(dict.fromkeys(nets))
         elif kind in CONNECTORS - {"test-point"}:
             found.swings.update(nets)  # what is plugged in drives it, nobody knows with what
+            _touched(board, ref, same, grounds, found)
         elif kind in _CHIPS:
             _chip(board, ref, same, found)
         elif kind not in _OPEN:
             _ordinary(board, ref, kind, nets, same, found)
         _usual(board, ref, kind, same, found)
     return found
+
+
+def _touched(board: Board, ref: str, same: Mapping[str, str], grounds: Mapping[str, str], found: Pulls) -> None:
+    """In normal use a contact of a side without a hazard stays within what a person may touch."""
+    for net in board.design.parts[ref].nets():
+        name = board.isolation.domain_of.get(net)
+        if name is not None and name in grounds and net != grounds[name] and board.isolation.domains[name].side == "secondary":
+            found.keeps(same.get(net, net), same.get(grounds[name], grounds[name]), TOUCHABLE)
 
 
 def _by_domain(board: Board, ref: str, same: Mapping[str, str]) -> dict[str, list[str]]:

@@ -35,8 +35,8 @@ def stressed(board: Board) -> Stress:
     on_pole = poles(board, mains.values())
     same = conductors(board, on_pole)
     strung = strings(board)
-    edges = pulls(board, same, strung)
     references = grounds(board)
+    edges = pulls(board, same, strung, references)
     fixed = sorted(rails(board, references), key=lambda rail: -rail.trust)
 
     def voltages(tolerance: bool) -> Voltages:
