@@ -46,6 +46,46 @@ ZENERS |= {"BZX55C5V1": 5.1, "BZT52C3V3": 3.3, "BZX84-C12": 12, "BZX55-B6V8": 6.
 SWITCHES = {"2N7002": 60, "BSS138": 50, "2N3904": 40, "MMBT3904": 40, "2N2222A": 40, "2N2222": 30, "BC847B": 45, "BC817-40": 45}
 
 
+# highest continuous a.c. voltage of varistors by type code, and the voltage at 1 mA
+VARISTORS = {
+    "10D471K": (300, 470),
+    "MOV-10D471K": (300, 470),
+    "MOV-14D471KTR": (300, 470),
+    "471KD10": (300, 470),
+    "TVR10471": (300, 470),
+    "14D511K": (320, 510),
+    "07D431K": (275, 430),
+    "10D391K": (250, 390),
+    "10D561K": (350, 560),
+    "14D621K": (385, 620),
+    "20D201K": (130, 200),
+    "20D102K": (625, 1000),
+    "S14K275": (275, 430),
+    "S10K300": (300, 470),
+    "S20K250": (250, 390),
+    "B72214S0271K101": (275, 430),
+    "B72210S0301K101": (300, 470),
+    "V275LA20AP": (275, 430),
+}
+SURGES = {"1N4007": 30, "UF4007": 30, "FR107": 30, "RS1M": 30, "MB6S": 30, "DB107": 30, "KBP210": 60}
+
+
+@pytest.mark.parametrize("name", VARISTORS)
+def test_varistor_voltage(name: str) -> None:
+    found = catalogue.find(name)
+    assert found is not None
+    assert (found.kind, found.ratings["voltage"]) == ("varistor", (VARISTORS[name][0], "V", "rms"))
+    assert found.ratings["varistor_voltage"] == (VARISTORS[name][1], "V", "dc")
+    assert "memory" in found.source
+
+
+@pytest.mark.parametrize("name", SURGES)
+def test_surge_current(name: str) -> None:
+    found = catalogue.find(name)
+    assert found is not None
+    assert found.ratings["surge_current"] == (SURGES[name], "A", "peak")
+
+
 @pytest.mark.parametrize("name", REVERSE)
 def test_reverse_voltage_and_current(name: str) -> None:
     found = catalogue.find(name)
@@ -99,7 +139,26 @@ def test_types_in_longer_texts_are_found() -> None:
 
 
 @pytest.mark.parametrize(
-    "text", ["", "10k", "1N40077", "SS8050", "SS345", "1N4765", "100n/50V", "LM4315", "BC8471", "R1206", "MB5S", "S1"]
+    "text",
+    [
+        "",
+        "10k",
+        "1N40077",
+        "SS8050",
+        "SS345",
+        "1N4765",
+        "100n/50V",
+        "LM4315",
+        "BC8471",
+        "R1206",
+        "MB5S",
+        "S1",
+        "10D-9",
+        "NTC10D-11",
+        "5D-11",
+        "10D999K",
+        "S14K999",
+    ],
 )
 def test_other_texts_name_no_generic_type(text: str) -> None:
     assert catalogue.find(text) is None

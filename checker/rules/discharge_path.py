@@ -8,19 +8,21 @@ from __future__ import annotations
 import math
 import re
 from collections import Counter
-from collections.abc import Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field
 
 from checker.formulas.nodal import star_mesh
 from checker.model.entry import Entry
 from checker.model.fact import Fact
 from checker.model.rule import Analysis
+from checker.model.terminals import anode_and_cathode, coupler
 
 _CONTACTS = frozenset({"switch", "relay", "solid-state-relay", "triac"})
 _FUSES = frozenset({"fuse", "resettable-fuse"})
 _WIRES = frozenset("jumper net-tie thermistor inductor ferrite common-mode-choke filter current-transformer hall-sensor".split())
 _LOADS = frozenset({"lamp", "motor"})
-_LIGHTLY = frozenset({"capacitor", "test-point", "controller", "ic", "optocoupler", "led", "diode", "zener"})
+_LIGHTLY = frozenset({"capacitor", "test-point", "controller", "ic", "optocoupler", "led", "diode", "zener", "bridge"})
+_BOTH_WAYS = re.compile(r"bi-?dir|ac[ -]?input|ac[ -]?eingang|(?<![0-9])814(?![0-9])|h11aa|(?<![0-9])620(?![0-9])", re.IGNORECASE)
 _DISCHARGER = re.compile(
     r"x[\s-]?cap(?:acitor)?s?\s+discharg|discharg\w*\s+(?:of\s+)?(?:the\s+)?x[\s-]?cap|active discharge", re.IGNORECASE
 )
@@ -47,6 +49,7 @@ class Plug:
     """The pins of an entry in one state. capacitors: those with charge on the pins; resistors: of the ways between them.
 
     windings, loads: what else takes the charge away; dischargers: circuits made for it; text: the state, "" for all closed.
+    one_way: diodes in the ways, which take the charge of one polarity only.
     """
 
     text: str
@@ -57,6 +60,7 @@ class Plug:
     loads: tuple[str, ...] = ()
     dischargers: tuple[str, ...] = ()
     opened: tuple[str, ...] = field(default=())
+    one_way: tuple[str, ...] = ()
 
     def capacitance(self, sign: int) -> float:
         """F between the pins, every capacitor at that end of its tolerance; those that meet elsewhere in series."""
@@ -116,8 +120,10 @@ def _carries(analysis: Analysis, ref: str) -> bool:
 def _plug(analysis: Analysis, entry: Entry, one: Mapping[str, str], text: str, opened: tuple[str, ...]) -> Plug:
     pins = (entry.poles[0], entry.poles[1])
 
+    lit, half = _lights(analysis, one)
+
     def node(net: str) -> str:
-        return one.get(net, net)
+        return lit.get(one.get(net, net), one.get(net, net))
 
     capacitors, resistors, windings, loads, dischargers = [], [], [], [], []
     inner = _inner(analysis, one)
@@ -139,7 +145,27 @@ def _plug(analysis: Analysis, entry: Entry, one: Mapping[str, str], text: str, o
                 loads.append(ref)
         if _DISCHARGER.search(_texts(analysis, ref)):
             dischargers.append(ref)
-    return Plug(text, pins, tuple(capacitors), _ways(resistors, pins), tuple(windings), tuple(loads), tuple(dischargers), opened)
+    return Plug(
+        text=text,
+        pins=pins,
+        capacitors=tuple(capacitors),
+        resistors=_ways(resistors, pins),
+        windings=tuple(windings),
+        loads=tuple(loads),
+        dischargers=tuple(dischargers),
+        opened=opened,
+        one_way=_one_way(resistors, pins, half, node),
+    )
+
+
+def _one_way(
+    resistors: list[Element], pins: tuple[str, str], half: Mapping[tuple[str, str], list[str]], node: Callable[[str], str]
+) -> tuple[str, ...]:
+    """The diodes that would complete a way from pin to pin if they conducted both ways."""
+    links = [Element(refs[0], (node(low), node(high)), 1.0, 0.0, ()) for (low, high), refs in half.items()]
+    whole = _ways([*resistors, *links], pins)
+    through = tuple(one.ref for one in whole if one in links)
+    return through if any(one in resistors for one in whole) else ()
 
 
 def _ways(resistors: list[Element], pins: tuple[str, str]) -> tuple[Element, ...]:
@@ -166,9 +192,46 @@ def _inner(analysis: Analysis, one: Mapping[str, str]) -> frozenset[str]:
     for net in analysis.design.nets:
         refs = analysis.fitted_on(net)
         resistors = [ref for ref in refs if analysis.kind(ref) == "resistor"]
-        if net not in one and len(resistors) >= 2 and all(analysis.kind(ref) in _LIGHTLY for ref in refs if ref not in resistors):
+        rest = [analysis.kind(ref) for ref in refs if ref not in resistors]
+        joined = len(resistors) + sum(kind in ("optocoupler", "led", "diode") for kind in rest)
+        if net not in one and resistors and joined >= 2 and all(kind in _LIGHTLY for kind in rest):
             found.add(net)
     return frozenset(found)
+
+
+def _lights(analysis: Analysis, one: Mapping[str, str]) -> tuple[dict[str, str], dict[tuple[str, str], list[str]]]:
+    """Diodes of couplers and lamps: (net -> the net it is taken as one with, ends -> those that conduct one way only).
+
+    Next to a crest of hundreds of volts such a diode is a wire, once its pair or its own make lets it conduct both ways.
+    """
+    ways: dict[tuple[str, str], set[bool]] = {}
+    refs: dict[tuple[str, str], list[str]] = {}
+    for ref, candidate in analysis.choice.items():
+        part = analysis.design.parts[ref]
+        if not part.fitted or candidate.kind not in ("optocoupler", "led", "diode"):
+            continue
+        ends = _light_ends(analysis, ref)
+        if ends is None or all(end in one for end in ends):
+            continue
+        key = (min(ends), max(ends))
+        refs.setdefault(key, []).append(ref)
+        ways.setdefault(key, set()).update({True, False} if _BOTH_WAYS.search(_texts(analysis, ref)) else {ends == key})
+    lit = {one.get(high, high): one.get(low, low) for (low, high), found in ways.items() if len(found) == 2 and high not in one}
+    lit |= {low: one[high] for (low, high), found in ways.items() if len(found) == 2 and high in one}
+    return lit, {key: refs[key] for key, found in ways.items() if len(found) == 1}
+
+
+def _light_ends(analysis: Analysis, ref: str) -> tuple[str, str] | None:
+    """(anode, cathode) net of a diode, or of the light side of a coupler; of an a.c. input in any order."""
+    part = analysis.design.parts[ref]
+    if analysis.kind(ref) != "optocoupler":
+        return anode_and_cathode(part)
+    pins = coupler(part)
+    if pins is not None:
+        return pins[:2]
+    at = {pin.number: pin.net for pin in part.pins}
+    one, two = at.get("1"), at.get("2")
+    return (one, two) if one is not None and two is not None and one != two else None
 
 
 def _element(analysis: Analysis, ref: str, ends: tuple[str, str], usual: float) -> Element:

@@ -110,6 +110,24 @@ class _Judge:
         if unread is not None:
             return self._unread(subject, plug, unread)
         after = self._left(plug, 1)
+        modules = self._modules(plug)
+        if not math.isfinite(plug.ohms(1)) and modules:
+            because = (
+                f"{self._names(plug)} and {', '.join(modules)} lie across the pins; whether the module takes the charge is not said"
+            )
+            then = (("it does within the time", "pass"), ("it does not", "fail"))
+            supply_as = f"its data sheet: a resistor beside it, or parts: {{{modules[0]}: {{marks: [G.10]}}}} in the declaration"
+            missing = Missing("whether the module discharges its input", supply_as, then, modules[0])
+            if self.analysis.choice[modules[0]].marked(*self.clause.params.tested) is not None:
+                return self.clause.passes(subject, _WHAT, f"{modules[0]} discharges its input", self._step(plug, because))
+            return self.clause.opens(subject, _WHAT, because, self._step(plug, because), missing)
+        if not math.isfinite(plug.ohms(1)) and plug.one_way:
+            because = f"{', '.join(plug.one_way)} lets the charge of {self._names(plug)} go one way only"
+            missing = Missing(
+                "a way for either polarity", "a resistor from pole to pole, or a diode the other way round beside it",
+                (("there is one", "pass"), ("there is none", "fail")), plug.one_way[0],
+            )  # fmt: skip
+            return self.clause.opens(subject, _WHAT, because, self._step(plug, because), missing)
         if not math.isfinite(plug.ohms(1)):
             because = f"nothing discharges {self._names(plug)}{self._state(plug)}: {after:.4g} V stay on the pins"
             return self._compared("fail", subject, _WHAT, because, plug, after, limit)
@@ -128,6 +146,16 @@ class _Judge:
             plug.resistors[0].ref,
         )  # fmt: skip
         return self.clause.opens(subject, _WHAT, told, self._step(plug, told, after), missing, found=self._number(after))
+
+    def _modules(self, plug: Plug) -> tuple[str, ...]:
+        """Converter modules with both poles on the line behind the pins."""
+        poles = self.analysis.stress.poles
+        return tuple(
+            ref
+            for ref, candidate in self.analysis.choice.items()
+            if candidate.kind == "isolated-module"
+            and {poles.get(net) for net in self.analysis.design.parts[ref].nets()} >= {*plug.pins}
+        )
 
     def one_open(self, plug: Plug) -> Verdict | None:
         """The plug with each resistor open in turn; None when resistors are not the way."""
@@ -181,7 +209,7 @@ class _Judge:
         return self.clause.opens(subject, _WHAT, because, self._step(plug, because), missing)
 
     def _subject(self, plug: Plug, question: str, condition: str = "") -> Subject:
-        parts = (self.entry.ref, *(one.ref for one in (*plug.capacitors, *plug.resistors)), *plug.opened)
+        parts = (*(one.ref for one in (*plug.capacitors, *plug.resistors)), *plug.opened)
         return Subject(tuple(dict.fromkeys(parts)), plug.pins, (self.entry.ref, question), condition or plug.text)
 
     def _names(self, plug: Plug) -> str:
