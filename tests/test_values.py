@@ -131,7 +131,8 @@ def test_a_value_never_starts_inside_a_word(text: str, kind: str) -> None:
         is None
     )
     decoded = decode(text, kind)
-    assert decoded is None or len(decoded.rest) < max(1, len(text.strip()))
+    left = "" if decoded is None else decoded.rest.replace(" ", "")  # pieces of the rest are set apart by blanks
+    assert decoded is None or len(left) < max(1, len(text.replace(" ", "")))
 
 
 @pytest.mark.parametrize("unit", ["1", "1.", "k", "1k", "4x", "R", "10 ", "1,", "±", "a.b/", "B", "T2A", "+-", "1k ohm "])

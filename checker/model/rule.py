@@ -89,8 +89,8 @@ class Board:
 class Analysis(Board):
     """All stages' results for one design under one condition; the only thing a rule sees.
 
-    tables: ruleset id -> its tables. grades: (ruleset id, separation id) -> needed grade. needs: (ruleset id, separation id, "" or the part on its own pins).
-    further: what must be kept apart besides the barriers, for the layout; its grades, voltages and needs stand beside theirs.
+    grades: (ruleset id, separation id) -> needed grade. needs: (ruleset id, separation id, "" or the part on its own pins).
+    further: what must be kept apart beside the barriers. tables: ruleset id -> its tables.
     """
 
     grades: Mapping[tuple[str, str], Grade] = field(default_factory=dict)

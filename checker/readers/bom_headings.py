@@ -13,7 +13,8 @@ from checker import limits
 
 _ALIASES = {
     "ref": "ref refs reference references refdes refdesignator refname designator designators referencedesignator "
-    "referencedesignators schematicreference componentreference partreference referenz referenzen bauteil bauteile bauteilbezeichner bezeichner",
+    "referencedesignators schematicreference componentreference partreference referenz referenzen "
+    "bauteil bauteile bauteilbezeichner bezeichner",
     "row": "item itemno id index row rowno sno lineno line lineitem pos posno no",
     "quantity": "qty qnty quantity quantityperpcb quantityperboard qtyboard qtyperboard qtyperpcb qtypcb qtypcs count orderqty "
     "anzahl menge stk stück stückzahl amount pcs",
@@ -66,7 +67,10 @@ _ALIASES = {
 _MEANING = {alias.replace("#", "no"): name for name, aliases in _ALIASES.items() for alias in aliases.split()}
 
 # Headings that hold references in one file and something else in the next; the cells decide.
-_PERHAPS = "part parts component components location locations position positions designation customerreference pos id item bauteil bauteile"
+_PERHAPS = (
+    "part parts component components location locations position positions designation customerreference pos id item bauteil "
+    "bauteile"
+)
 _PERHAPS_REFERENCES = frozenset(_PERHAPS.split())
 # Headings that mean `attribute` only while no plainer heading of that attribute stands beside them -> what they are then.
 _WEAK: dict[str, str | None] = {

@@ -39,6 +39,7 @@ RATINGS = {
     "through_insulation": "mm",
     "breaking_capacity": "A",
     "melting_integral": "A2s",
+    "surge_current": "A",
 }
 MATERIAL_GROUPS = ("I", "II", "IIIa", "IIIb")
 

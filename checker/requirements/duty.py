@@ -1,8 +1,8 @@
 """What one piece of insulation has to withstand, and where: the inputs that the four requirements share.
 
 The working voltage is the declared one, else what the stress stage found. Across a barrier with the mains on one side no
-pair is taken below the rated mains voltage. Transients come with the mains; where there is none, from the declaration, else
-from what is said of the origin of the d.c. supply.
+pair is taken below the rated mains voltage. Transients come with the mains; where there is none, the declaration tells them,
+else the origin of the d.c. supply.
 """
 
 from __future__ import annotations
