@@ -13,12 +13,15 @@ from functools import lru_cache
 from types import MappingProxyType
 
 from checker import limits
+from checker.formulas import surge
 
 Rating = tuple[float, str, str]
 """(value in SI, unit, form): (1000.0, "V", "peak")."""
 
 AGREED = "generic type; makers' data sheets agree (from memory)"
 LOWEST = "generic type; the lowest of makers' data sheets (from memory)"
+RECTIFIER = "generic type; makers' data sheets agree, of surge currents the smallest (from memory)"
+VARISTOR = "type code of several makers, whose data sheets agree (from memory)"
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,9 +29,10 @@ class Generic:
     """A generic type and what any maker promises of it.
 
     ratings: `voltage` is the repetitive reverse voltage of a diode, drain or collector voltage of a transistor, stand-off
-    voltage of a suppressor, highest cathode voltage of a shunt reference, highest input voltage of a regulator; `current` and
-    `power` as usual; `zener_voltage`, `reference`, `output` (of a fixed regulator) and `minimum_current` are nominal figures
-    that only their kinds have.
+    voltage of a suppressor, highest cathode voltage of a shunt reference, highest input voltage of a regulator, highest
+    continuous a.c. voltage of a varistor; `surge_current` is the peak of one half wave that a rectifier stands; `current` and
+    `power` as usual; `varistor_voltage` (at 1 mA), `zener_voltage`, `reference`, `output` (of a fixed regulator) and
+    `minimum_current` are nominal figures that only their kinds have.
     source: where the figures are from.
     Insulation is not among them: what a coupler withstands is its maker's word alone.
     """
@@ -57,34 +61,40 @@ def _of_word(word: str) -> Generic | None:
     return None
 
 
-_FORMS = {"diode": "peak", "bridge": "peak", "mosfet": "peak", "bipolar": "peak"}
-_UNITS = {"current": "A", "minimum_current": "A", "power": "W"}
+_FORMS = {"diode": "peak", "bridge": "peak", "mosfet": "peak", "bipolar": "peak", "varistor": "rms"}
+_UNITS = {"current": "A", "minimum_current": "A", "surge_current": "A", "power": "W"}
+_FIGURE_FORMS = {"power": "", "surge_current": "peak"}
 
 
 def _generic(name: str, kind: str, source: str = AGREED, **figures: float) -> Generic:
     ratings: dict[str, Rating] = {}
     for key, value in figures.items():
-        form = _FORMS.get(kind, "dc") if key == "voltage" else "" if key == "power" else "dc"
+        form = _FORMS.get(kind, "dc") if key == "voltage" else _FIGURE_FORMS.get(key, "dc")
         ratings[key] = (value, _UNITS.get(key, "V"), form)
     return Generic(name, kind, MappingProxyType(ratings), source)
 
 
-# diodes and bridges: repetitive reverse voltage and mean forward current
+# diodes and bridges: repetitive reverse voltage, mean forward current, surge current of rectifiers
 
 _STEPS = (50.0, 100.0, 200.0, 400.0, 600.0, 800.0, 1000.0)
 _LETTERS = {"A": 50.0, "B": 100.0, "C": 150.0, "D": 200.0, "E": 300.0, "G": 400.0, "J": 600.0, "K": 800.0, "M": 1000.0}
 _HER = (50.0, 100.0, 200.0, 300.0, 400.0, 600.0, 800.0, 1000.0)
 _BRIDGE_STEPS = {"005": 50.0, "01": 100.0, "02": 200.0, "04": 400.0, "06": 600.0, "08": 800.0, "10": 1000.0}
+_SURGE = 30.0  # A; of 1 A rectifiers
 _SCHOTTKY = {"17": (20.0, 1.0), "18": (30.0, 1.0), "19": (40.0, 1.0), "20": (20.0, 3.0), "21": (30.0, 3.0), "22": (40.0, 3.0)}
 
 
 def _stepped(name: str, current: float, steps: tuple[float, ...]) -> Callable[[re.Match[str]], Generic]:
     """The last digit counts the steps of reverse voltage from 1."""
-    return lambda match: _generic(f"{name}{match[1]}", "diode", voltage=steps[int(match[1]) - 1], current=current)
+    return lambda match: _generic(
+        f"{name}{match[1]}", "diode", RECTIFIER, voltage=steps[int(match[1]) - 1], current=current, surge_current=_SURGE
+    )
 
 
 def _lettered(current: float) -> Callable[[re.Match[str]], Generic]:
-    return lambda match: _generic(match[1] + match[2], "diode", voltage=_LETTERS[match[2]], current=current)
+    return lambda match: _generic(
+        match[1] + match[2], "diode", RECTIFIER, voltage=_LETTERS[match[2]], current=current, surge_current=_SURGE
+    )
 
 
 def _schottky(match: re.Match[str]) -> Generic:
@@ -96,8 +106,38 @@ def _ss(match: re.Match[str]) -> Generic:
     return _generic(match[0], "diode", voltage=10.0 * int(match[2]), current=float(match[1]))
 
 
-def _bridge(current: float, steps: Mapping[str, float]) -> Callable[[re.Match[str]], Generic]:
-    return lambda match: _generic(match[0], "bridge", voltage=steps[match[1]], current=current)
+def _bridge(current: float, surge_current: float, steps: Mapping[str, float]) -> Callable[[re.Match[str]], Generic]:
+    return lambda match: _generic(
+        match[0], "bridge", RECTIFIER, voltage=steps[match[1]], current=current, surge_current=surge_current
+    )
+
+
+# varistors: highest continuous a.c. voltage
+
+
+def _varistor_at_1_ma(match: re.Match[str]) -> Generic | None:
+    """10D471K: 10 mm, 47 x 10^1 V at 1 mA."""
+    volts = float(int(match[1]) * 10 ** int(match[2]))
+    return _varistor(f"varistor of {volts:g} V at 1 mA", surge.continuous(volts))
+
+
+def _varistor_rated(match: re.Match[str]) -> Generic | None:
+    """S14K275: 14 mm, 275 V a.c."""
+    return _varistor(f"varistor of {match[1]} V a.c.", float(match[1]))
+
+
+def _varistor_coded(match: re.Match[str]) -> Generic | None:
+    """B72214S0271K101: 27 x 10^1 V a.c., the last figure of the voltage left out."""
+    rounded = int(match[1]) * 10 ** int(match[2])
+    whole = (volts for volts in surge.VARISTORS.values() if rounded <= volts < rounded + 10 ** int(match[2]))
+    return _varistor(f"varistor of {match[1]}{match[2]}", next(whole, None))
+
+
+def _varistor(name: str, volts: float | None) -> Generic | None:
+    at_1_ma = next((one for one, other in surge.VARISTORS.items() if other == volts), None)
+    if volts is None or at_1_ma is None:
+        return None
+    return _generic(name, "varistor", VARISTOR, voltage=volts, varistor_voltage=float(at_1_ma))
 
 
 # zener diodes and suppressors
@@ -168,7 +208,8 @@ def _low_drop(match: re.Match[str]) -> Generic:
     return _generic(f"1117-{volts:g}", "regulator", LOWEST, output=volts, voltage=15.0)
 
 
-_SERIES: list[tuple[re.Pattern[str], Callable[[re.Match[str]], Generic]]] = [
+_DISC = "(?:05|07|10|14|20|25)"  # mm
+_SERIES: list[tuple[re.Pattern[str], Callable[[re.Match[str]], Generic | None]]] = [
     (re.compile(pattern + r"(?![0-9])"), read)
     for pattern, read in (
         (r"(?:1N|LL|SM)400([1-7])", _stepped("1N400", 1.0, _STEPS)),
@@ -181,10 +222,19 @@ _SERIES: list[tuple[re.Pattern[str], Callable[[re.Match[str]], Generic]]] = [
         (r"SS([1235])([2-6])", _ss),
         (r"(ES1)([A-EGJ])", _lettered(1.0)),
         (r"([UR]S1)([ABDGJKM])", _lettered(1.0)),
-        (r"MB([124678]|10)S", _bridge(0.5, {"1": 100.0, "2": 200.0, "4": 400.0, "6": 600.0, "7": 800.0, "8": 800.0, "10": 1000.0})),
-        (r"DB10([1-7])", _bridge(1.0, {str(at + 1): volts for at, volts in enumerate(_STEPS)})),
-        (r"KBP2(005|01|02|04|06|08|10)", _bridge(2.0, _BRIDGE_STEPS)),
-        (r"DF(005|01|02|04|06|08|10)[MS]?", _bridge(1.0, _BRIDGE_STEPS)),
+        (
+            r"MB([124678]|10)S",
+            _bridge(0.5, 30.0, {"1": 100.0, "2": 200.0, "4": 400.0, "6": 600.0, "7": 800.0, "8": 800.0, "10": 1000.0}),
+        ),
+        (r"DB10([1-7])", _bridge(1.0, 30.0, {str(at + 1): volts for at, volts in enumerate(_STEPS)})),
+        (r"KBP2(005|01|02|04|06|08|10)", _bridge(2.0, 60.0, _BRIDGE_STEPS)),
+        (r"DF(005|01|02|04|06|08|10)[MS]?", _bridge(1.0, 30.0, _BRIDGE_STEPS)),
+        (rf"(?:(?:MOV|ZOV|VDR)-?)?{_DISC}D-?([1-9]\d)([0-3])", _varistor_at_1_ma),
+        (rf"(?:TVR{_DISC}|ERZ-?[VE]{_DISC}D|(?:FNR|CNR)-?{_DISC}[KD]|JVR-?{_DISC}N)([1-9]\d)([0-3])", _varistor_at_1_ma),
+        (rf"([1-9]\d)([0-3])KD{_DISC}", _varistor_at_1_ma),
+        (rf"(?:SIOV-?)?S{_DISC}K(\d{{2,3}})", _varistor_rated),
+        (r"V(\d{2,3})LA\d{1,2}[AB]?P?(?![A-Z])", _varistor_rated),
+        (r"B722\d\dS\d([1-9]\d)([01])K\d{3}", _varistor_coded),
         (r"1N47(2[89]|[345]\d|6[0-4])", _zener_1n47),
         (r"(BZX55|BZX79|BZX84|BZX85|BZX384|BZT52|BZV55)-?[BC](\d{1,2}V\d|\d{1,2})", _zener_coded),
         (r"SM([ABC])J(\d{1,3}(?:\.\d)?)C?A?", _standoff),

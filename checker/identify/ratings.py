@@ -73,7 +73,7 @@ _STANDOFF = re.compile(
 )
 _SPLIT_VOLTAGE = re.compile(rf"{_START}(?P<whole>[0-9]{{1,2}})V(?P<part>[0-9]){_END}")
 _CURRENT = re.compile(
-    rf"{_START}(?P<number>{_NUMBER})\s{{0,2}}(?P<prefix>[mMk]?)(?:A|Amps?|AMPS?)[\s]?(?P<form>(?i:rms|dc|ac|pk|peak)?){_END}"
+    rf"{_START}(?P<number>{_NUMBER})\s{{0,2}}(?P<prefix>[mMkK]?)(?:A|Amps?|AMPS?)[\s]?(?P<form>(?i:rms|dc|ac|pk|peak)?){_END}"
 )
 _POWER = re.compile(
     rf"{_START}(?:1\s?/\s?(?P<share>[0-9]{{1,2}})|(?P<number>{_NUMBER}))\s{{0,2}}(?P<prefix>[mMk]?)(?:W|w|Watts?|WATTS?){_END}"
@@ -153,6 +153,8 @@ def read(text: str, kind: str) -> Found:
         steady = [rating for rating, _ in amperes if rating.form != "peak"]
         if steady:
             found.ratings["current"] = steady[0] if kind in _SEMICONDUCTORS else min(steady, key=_value)
+    if kind in ("diode", "bridge") and (surge := _SURGE.search(text)) is not None:
+        found.ratings["surge_current"] = Rating(_float(surge["before"] or surge["after"]), "A", "peak", surge[0].strip())
     _thermal(found, text, kind)
     if kind in _WITH_TOLERANCE and "%" in text and (tolerance := _tolerance(text)) is not None:
         found.ratings["tolerance"] = tolerance
@@ -290,6 +292,8 @@ def _ordinary(found: Found, volts: list[_Volts], text: str, kind: str) -> None:
         found.ratings["voltage"] = Rating(_float(standoff["before"] or standoff["after"]), "V", "dc", standoff[0].strip())
     if kind not in _WITH_VOLTAGE:
         return
+    if kind == "fuse":  # the voltage of a breaking capacity is not the rated one where another stands beside it
+        rated = [one for one in rated if not _BREAKS_BEFORE.search(text[max(0, one.start - 12) : one.start])] or rated
     voltage = rated[0].rating if kind in _SEMICONDUCTORS and rated else _lowest(rated)
     if voltage is None and kind == "capacitor" and (split := _SPLIT_VOLTAGE.search(text)) is not None:
         voltage = Rating(float(f"{split['whole']}.{split['part']}"), "V", "", split[0])
@@ -297,6 +301,11 @@ def _ordinary(found: Found, volts: list[_Volts], text: str, kind: str) -> None:
         found.ratings["voltage"] = voltage
 
 
+# the peak of one half wave that a rectifier stands: `IFSM 60A`, `30A surge`
+_SURGE = re.compile(
+    rf"(?<![^\W_])IFSM[\s=:]{{0,2}}(?P<after>{_NUMBER})\s?A{_END}|{_START}(?P<before>{_NUMBER})\s?A\s?(?:IFSM|surge)(?![^\W_])(?![\s=:]{{0,2}}[0-9])",
+    re.IGNORECASE,
+)
 _NOT_STEADY_BEFORE = re.compile(r"(?:IFSM|ITSM|IDM|ICM|IR|surge|peak|pulsed?|leakage|trip|@)[\s=:<]{0,2}\Z", re.IGNORECASE)
 _NOT_STEADY_AFTER = re.compile(r"\s?(?:surge|peak|pulse|trip|leak)", re.IGNORECASE)
 
@@ -308,7 +317,7 @@ def _currents(text: str) -> list[tuple[Rating, int]]:
         start, end = match.span()
         if _NOT_STEADY_BEFORE.search(text[max(0, start - 12) : start]) or _NOT_STEADY_AFTER.match(text, end):
             continue
-        power = {"": 0, "k": 3}.get(match["prefix"], -3)
+        power = {"": 0, "k": 3, "K": 3}.get(match["prefix"], -3)
         if match["number"].strip("0.,"):
             found.append((Rating(_float(match["number"], power), "A", _form(match["form"]), match[0].strip()), end))
     return found
@@ -318,6 +327,7 @@ _CHARACTERISTIC = re.compile(
     r"(?<![^\W_])(?P<before>TT|FF|[TFM])\s?(?=[0-9.][0-9.,]{0,5}\s?m?A)|[0-9]\s?m?A(?P<after>TT|FF|[TFM])(?=[HL]?(?:[0-9]|(?![^\W_])))"
     r"|(?<![^\W_])(?P<alone>TT|FF|[TFM])(?![^\W_])"
 )
+_BREAKS_BEFORE = re.compile(r"[0-9]\s?k?A\s?@\s?\Z", re.IGNORECASE)
 _SPEEDS = (
     ("FF", re.compile(r"(?:very|super|ultra)[\s-]?(?:fast|quick)", re.IGNORECASE)),
     ("T", re.compile(r"(?<![^\W_])(?:slow|time[\s-]?(?:lag|delay)|tr\u00e4ge)", re.IGNORECASE)),
@@ -325,9 +335,17 @@ _SPEEDS = (
     ("M", re.compile(r"(?<![^\W_])medium", re.IGNORECASE)),
 )
 _BREAKING_CLASS = re.compile(
-    r"[0-9]\s?m?A(?:TT|FF|[TFM])?(?P<joined>[HL])(?=[0-9]|(?![^\W_]))|(?<![^\W_])(?P<alone>[HL])(?![^\W_])"
+    r"[0-9]\s?m?A(?:TT|FF|[TFM])?(?P<joined>[HLE])(?=[0-9]|(?![^\W_]))|(?<![^\W_])(?P<alone>[HL])(?![^\W_])"
     r"|(?<![^\W_])(?P<high>HBC|HRC|high\sbreaking)|(?<![^\W_])(?P<low>LBC|low\sbreaking)"
 )
+_CERAMIC_TUBE = re.compile(r"ceramic|keramik|sand[\s-]?filled", re.IGNORECASE)
+_TUBE = re.compile(r"(?<![0-9.])(?:5\s?x\s?20|6[.,]3\d?\s?x\s?32)(?![0-9])", re.IGNORECASE)  # mm; the bodies of IEC 60127-2
+# what a fuse of IEC 60127 bears: T2AH250V, `T 3.15A L 250V`
+_FUSE_MARKING = re.compile(
+    r"(?<![^\W_])(?:TT|FF|[TFM])\s?(?P<number>[0-9]{1,2}(?:[.,][0-9]{1,3})?|[0-9]{2,3}(?=\s?m))\s?(?P<prefix>m?)A\s?(?P<letter>[HLE])"
+    r"\s?(?P<volts>[0-9]{2,3})(?:\s?V(?:AC)?)?(?![^\W_])"
+)
+_BREAKS_AT = re.compile(r"(?P<number>[0-9]{1,5}(?:[.,][0-9])?)\s?(?P<prefix>k?)A\s?@\s?(?P<volts>[0-9]{2,4})\s?V", re.IGNORECASE)
 _BREAKING_LEAST = 35.0  # IEC 60127-2: the low breaking class is 35 A or 10 x rated, whichever is greater (from memory)
 _BREAKING_ALONE = 100.0
 
@@ -343,7 +361,16 @@ def _fuse(found: Found, text: str, kind: str) -> None:
         rated = 0.0
     if kind != "fuse":
         return
+    marking = _FUSE_MARKING.search(text)
+    if marking is not None:
+        amperes, volts = _float(marking["number"], -3 if marking["prefix"] else 0), float(marking["volts"])
+        found.ratings.setdefault("current", Rating(amperes, "A", "", marking[0]))
+        found.ratings.setdefault("voltage", Rating(volts, "V", "", marking[0]))
+    at = max(_BREAKS_AT.finditer(text), key=lambda match: int(match["volts"]), default=None)
     breaking = max(all_currents, key=_value, default=None)
+    if at is not None:  # `10kA@125VAC, 100A@250VAC`: the one at the higher voltage; below the rated voltage it says nothing
+        below = "voltage" in found.ratings and float(at["volts"]) < found.ratings["voltage"].value
+        breaking = None if below else Rating(_float(at["number"], 3 if at["prefix"] else 0), "A", "", at[0])
     if breaking is not None and breaking.value >= max(_BREAKING_LEAST, 5 * rated, 0.0 if rated else _BREAKING_ALONE):
         found.ratings["breaking_capacity"] = breaking
     letter = _CHARACTERISTIC.search(text)
@@ -358,6 +385,9 @@ def _fuse(found: Found, text: str, kind: str) -> None:
     if breaks is not None:
         name = breaks["joined"] or breaks["alone"] or ("H" if breaks["high"] else "L")
         found.attributes["breaking_class"] = (name, breaks[0])
+    elif (body := _CERAMIC_TUBE.search(text)) is not None and (tube := _TUBE.search(text)) is not None:
+        # a ceramic body of that size is of the high breaking sheets of IEC 60127-2 (from memory)
+        found.attributes["breaking_class"] = ("H", f"{body[0]} {tube[0]}")
 
 
 HOTTEST = 300  # degC; a larger figure before a C is a type number, such as 817C
@@ -483,7 +513,7 @@ def _made_of(found: Found, text: str, kind: str) -> None:
 
 _NATURAL = {
     **dict.fromkeys(("voltage", "isolation_working", "isolation_test", "impulse"), "V"),
-    **dict.fromkeys(("current", "breaking_capacity"), "A"),
+    **dict.fromkeys(("current", "breaking_capacity", "surge_current"), "A"),
     **dict.fromkeys(("clearance", "creepage", "through_insulation"), "mm"),
     "power": "W",
     "temperature": "degC",

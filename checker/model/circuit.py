@@ -34,6 +34,10 @@ class Part:
     alternates: tuple[tuple[Fact, ...], ...] = ()
     units: tuple[tuple[str, tuple[str, ...]], ...] = ()
     fitted: bool = True
+    _nets: tuple[str, ...] = field(init=False, repr=False, compare=False)
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "_nets", tuple(dict.fromkeys(pin.net for pin in self.pins if pin.net is not None)))
 
     def say(self, attribute: str) -> Fact | None:
         """The most trusted fact of that attribute; among equals the first."""
@@ -50,7 +54,7 @@ class Part:
 
     def nets(self) -> tuple[str, ...]:
         """The nets its pins are on, each once, in pin order."""
-        return tuple(dict.fromkeys(pin.net for pin in self.pins if pin.net is not None))
+        return self._nets
 
     @property
     def fact(self) -> Fact:

@@ -83,6 +83,7 @@ ATTRIBUTES = (
     "rating:through_insulation",
     "rating:breaking_capacity",
     "rating:melting_integral",
+    "rating:surge_current",
     "tolerance",
     "technology",
     "material_group",

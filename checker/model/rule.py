@@ -97,13 +97,12 @@ class Analysis(Board):
     stress: Stress = field(default_factory=Stress)
     needs: Mapping[tuple[str, str, str], Need] = field(default_factory=dict)
     condition: Condition = NORMAL
+    further: tuple[Separation, ...] = ()
     tables: Mapping[str, Mapping[str, Table]] = field(default_factory=dict)
 
     def table(self, ruleset: str, name: str) -> Table | None:
         """A table of a ruleset, None when it has none of that name."""
         return self.tables.get(ruleset, {}).get(name)
-
-    further: tuple[Separation, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

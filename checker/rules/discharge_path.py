@@ -8,8 +8,10 @@ from __future__ import annotations
 import math
 import re
 from collections import Counter
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
+
+import networkx as nx
 
 from checker.formulas.nodal import star_mesh
 from checker.model.entry import Entry
@@ -45,35 +47,90 @@ class Element:
 
 
 @dataclass(frozen=True, slots=True)
-class Plug:
-    """The pins of an entry in one state. capacitors: those with charge on the pins; resistors: of the ways between them.
+class Way:
+    """Resistors that hang together between line conductors. ends: those conductors, as nets."""
 
-    windings, loads: what else takes the charge away; dischargers: circuits made for it; text: the state, "" for all closed.
-    one_way: diodes in the ways, which take the charge of one polarity only.
+    ends: frozenset[str]
+    resistors: tuple[Element, ...]
+
+    def branches(self, sign: int, without: str, node: Callable[[str], str]) -> Iterator[tuple[str, str, float]]:
+        """(node, node, conductance) of each resistor at that end of its tolerance."""
+        for one in self.resistors:
+            ohms = one.at(sign)
+            if one.ref != without and ohms > 0:
+                yield node(one.ends[0]), node(one.ends[1]), 1 / ohms
+
+
+@dataclass(frozen=True, slots=True)
+class Wiring:
+    """What hangs on the line conductors of an entry with every contact closed.
+
+    closed: net -> the pin it is one conductor with. windings, loads: with the two nets they lie between. known: conductances
+    that were worked out, by way and end of the tolerance; they are the same in every state that leaves the way whole.
+    """
+
+    pins: tuple[str, str]
+    closed: Mapping[str, str]
+    capacitors: tuple[Element, ...]
+    ways: tuple[Way, ...]
+    windings: Mapping[str, frozenset[str]]
+    loads: Mapping[str, frozenset[str]]
+    dischargers: tuple[str, ...]
+    one_way: tuple[str, ...]
+    known: dict[tuple[int, int], float] = field(default_factory=dict, compare=False)
+
+
+@dataclass(frozen=True, slots=True)
+class Plug:
+    """The pins of an entry in one state. text: the state, "" for all contacts closed; opened: what is open.
+
+    one: net -> pin, for the conductors still on the pins. The rest is what of the wiring is on them: capacitors with charge, ways
+    that take it, and what else does.
     """
 
     text: str
     pins: tuple[str, str]
+    one: Mapping[str, str]
     capacitors: tuple[Element, ...]
-    resistors: tuple[Element, ...]
+    ways: tuple[Way, ...]
     windings: tuple[str, ...] = ()
     loads: tuple[str, ...] = ()
     dischargers: tuple[str, ...] = ()
-    opened: tuple[str, ...] = field(default=())
+    opened: tuple[str, ...] = ()
     one_way: tuple[str, ...] = ()
+    known: dict[tuple[int, int], float] = field(default_factory=dict, compare=False)
+
+    @property
+    def resistors(self) -> tuple[Element, ...]:
+        return tuple(one for way in self.ways if all(end in self.one for end in way.ends) for one in way.resistors)
 
     def capacitance(self, sign: int) -> float:
         """F between the pins, every capacitor at that end of its tolerance; those that meet elsewhere in series."""
-        return _between(self.pins, ((c.ends[0], c.ends[1], c.at(sign)) for c in self.capacitors))
+        branches = [(self._node(c.ends[0]), self._node(c.ends[1]), c.at(sign)) for c in self.capacitors]
+        direct = sum(value for one, other, value in branches if {one, other} == set(self.pins))
+        return direct + _between(self.pins, (branch for branch in branches if not {branch[0], branch[1]} <= set(self.pins)))
 
     def ohms(self, sign: int, without: str = "") -> float:
         """ohm between the pins, every resistor at that end of its tolerance; inf without a way."""
-        ways = ((r.ends[0], r.ends[1], 1 / ohms) for r in self.resistors if r.ref != without and (ohms := r.at(sign)) > 0)
-        conductance = _between(self.pins, ways)
+        conductance, apart = 0.0, list[tuple[str, str, float]]()
+        for way in self.ways:
+            if not all(end in self.one for end in way.ends):  # it shares a conductor behind an open contact with others
+                apart += way.branches(sign, without, self._node)
+            elif any(one.ref == without for one in way.resistors):
+                conductance += _between(self.pins, way.branches(sign, without, self._node))
+            else:
+                key = id(way), sign
+                if key not in self.known:
+                    self.known[key] = _between(self.pins, way.branches(sign, "", self._node))
+                conductance += self.known[key]
+        conductance += _between(self.pins, apart) if apart else 0.0
         return 1 / conductance if conductance > 0 else math.inf
 
+    def _node(self, net: str) -> str:
+        return self.one.get(net, net)
 
-def _between(pins: tuple[str, str], branches: Iterator[tuple[str, str, float]]) -> float:
+
+def _between(pins: tuple[str, str], branches: Iterable[tuple[str, str, float]]) -> float:
     return star_mesh(branches, pins).get(pins[0], {}).get(pins[1], 0.0)
 
 
@@ -84,31 +141,123 @@ def plugs(analysis: Analysis, entry: Entry) -> Iterator[Plug]:
     """
     if len(entry.poles) != 2:
         return
-    closed = _conductors(analysis, entry, ())
-    yield _plug(analysis, entry, closed, "", ())
-    on_line = [ref for ref in analysis.choice if analysis.kind(ref) in _CONTACTS | _FUSES and analysis.design.parts[ref].fitted]
-    for ref in on_line:
-        if any(net in closed for net in analysis.design.parts[ref].nets()):
-            apart = _conductors(analysis, entry, (ref,))
-            if len(apart) < len(closed):
-                what = "open" if analysis.kind(ref) in _CONTACTS else "blown"
-                yield _plug(analysis, entry, apart, f"{ref} {what}", (ref,))
+    tree = _conductors(analysis, entry)
+    wiring = _wiring(analysis, entry, {net: pin for net, (pin, _, _) in tree.items()})
+    whole = _plug(wiring, wiring.closed, "", ())
+    yield whole
+    capacitance, conductance = whole.capacitance(1), 1 / whole.ohms(1)
+    held = _by_end((one.ends, one.at(1)) for one in wiring.capacitors)
+    taken = _by_end((way.ends, wiring.known.get((id(way), 1), 0.0)) for way in wiring.ways)
+    for ref in dict.fromkeys(through for _, _, through in tree.values()):
+        kind = analysis.kind(ref) if ref else ""
+        gone = _behind(analysis, tree, ref) if kind in _CONTACTS | _FUSES else frozenset()
+        lost, missed = (_sum_at(table, gone) for table in (taken, held))
+        # what goes with its own capacitors leaves the rest no slower than before
+        other = any(not nets.isdisjoint(gone) for nets in (*wiring.windings.values(), *wiring.loads.values()))
+        if gone and (other or lost * capacitance > missed * conductance):
+            apart = {net: pin for net, pin in wiring.closed.items() if net not in gone}
+            yield _plug(wiring, apart, f"{ref} {'open' if kind in _CONTACTS else 'blown'}", (ref,))
 
 
-def _conductors(analysis: Analysis, entry: Entry, opened: tuple[str, ...]) -> dict[str, str]:
-    """Net -> the pin of the entry it is one conductor with. A part for both poles carries each pole on to the nets of that pole."""
-    found = {pole: pole for pole in entry.poles}
+def _by_end(found: Iterable[tuple[Iterable[str], float]]) -> dict[str, list[tuple[int, float]]]:
+    """Net -> (number, figure) of everything that ends on it."""
+    table: dict[str, list[tuple[int, float]]] = {}
+    for number, (ends, figure) in enumerate(found):
+        for end in ends:
+            table.setdefault(end, []).append((number, figure))
+    return table
+
+
+def _sum_at(table: Mapping[str, list[tuple[int, float]]], nets: Iterable[str]) -> float:
+    """The sum of the figures that end on any of these nets, each once."""
+    return sum(dict(entry for net in nets for entry in table.get(net, ())).values())
+
+
+def _wiring(analysis: Analysis, entry: Entry, closed: Mapping[str, str]) -> Wiring:
+    lit, half = _lights(analysis, closed)
+    inner = _inner(analysis, closed)
+    capacitors, resistors, dischargers = [], [], []
+    across: dict[str, dict[str, frozenset[str]]] = {"transformer": {}, "load": {}}
+    for ref, candidate in analysis.choice.items():
+        part = analysis.design.parts[ref]
+        nets = part.nets()
+        if not part.fitted:
+            continue
+        if candidate.kind == "capacitor" and len(nets) == 2 and _charged(analysis, nets, closed):
+            capacitors.append(_element(analysis, ref, (nets[0], nets[1]), CAPACITOR))
+        elif candidate.kind == "resistor" and len(nets) == 2 and all(net in closed or net in inner for net in nets):
+            resistors.append(_element(analysis, ref, (lit.get(nets[0], nets[0]), lit.get(nets[1], nets[1])), RESISTOR))
+        elif candidate.kind == "transformer" or candidate.kind in _LOADS:
+            across["transformer" if candidate.kind == "transformer" else "load"][ref] = frozenset(
+                net for net in nets if net in closed
+            )
+        if _DISCHARGER.search(_texts(analysis, ref)):
+            dischargers.append(ref)
+    return Wiring(
+        pins=(entry.poles[0], entry.poles[1]),
+        closed=closed,
+        capacitors=tuple(capacitors),
+        ways=tuple(_ways(resistors, closed)),
+        windings=across["transformer"],
+        loads=across["load"],
+        dischargers=tuple(dischargers),
+        one_way=_one_way(resistors, closed, half),
+    )
+
+
+def _plug(wiring: Wiring, one: Mapping[str, str], text: str, opened: tuple[str, ...]) -> Plug:
+    def on_pins(nets: Iterable[str]) -> bool:
+        return {one[net] for net in nets if net in one} == set(wiring.pins)
+
+    return Plug(
+        text=text,
+        pins=wiring.pins,
+        one=one,
+        capacitors=tuple(c for c in wiring.capacitors if all(end in one or end not in wiring.closed for end in c.ends)),
+        ways=tuple(way for way in wiring.ways if any(end in one for end in way.ends)),
+        windings=tuple(ref for ref, nets in wiring.windings.items() if on_pins(nets)),
+        loads=tuple(ref for ref, nets in wiring.loads.items() if on_pins(nets)),
+        dischargers=wiring.dischargers,
+        opened=opened,
+        one_way=wiring.one_way,
+        known=wiring.known,
+    )
+
+
+def _conductors(analysis: Analysis, entry: Entry) -> dict[str, tuple[str, str, str]]:
+    """Net -> (the pin it is one conductor with, the net before it, the part that carries it on) with every contact closed.
+
+    A part for both poles carries each pole on to the nets of that pole.
+    """
+    found = {pole: (pole, "", "") for pole in entry.poles}
     queue = list(entry.poles)
     poles = analysis.stress.poles
     for net in queue:
         for ref in analysis.fitted_on(net):
-            if ref in opened or not _carries(analysis, ref):
-                continue
-            for other in analysis.design.parts[ref].nets():
-                if other not in found and poles.get(other) == poles.get(net) and other in poles:
-                    found[other] = found[net]
-                    queue.append(other)
+            if _carries(analysis, ref):
+                for other in analysis.design.parts[ref].nets():
+                    if other not in found and poles.get(other) == poles.get(net) and other in poles:
+                        found[other] = (found[net][0], net, ref)
+                        queue.append(other)
     return found
+
+
+def _behind(analysis: Analysis, tree: Mapping[str, tuple[str, str, str]], ref: str) -> frozenset[str]:
+    """The conductors that an open contact takes off the pins; none when another part still carries them."""
+    starts = [net for net in analysis.design.parts[ref].nets() if net in tree and tree[net][2] == ref]
+    gone = dict.fromkeys(starts)
+    queue = list(starts)
+    for net in queue:
+        for other_ref in analysis.fitted_on(net):
+            if other_ref == ref or not _carries(analysis, other_ref):
+                continue
+            for other in analysis.design.parts[other_ref].nets():
+                if other in tree and tree[other][0] == tree[net][0] and other not in gone:
+                    if tree[other][1] not in gone:  # reached from elsewhere: the contact is not the only way
+                        return frozenset()
+                    gone[other] = None
+                    queue.append(other)
+    return frozenset(gone)
 
 
 def _carries(analysis: Analysis, ref: str) -> bool:
@@ -117,73 +266,45 @@ def _carries(analysis: Analysis, ref: str) -> bool:
     return kind in _WIRES or kind in _CONTACTS or kind in _FUSES or small
 
 
-def _plug(analysis: Analysis, entry: Entry, one: Mapping[str, str], text: str, opened: tuple[str, ...]) -> Plug:
-    pins = (entry.poles[0], entry.poles[1])
-
-    lit, half = _lights(analysis, one)
-
-    def node(net: str) -> str:
-        return lit.get(one.get(net, net), one.get(net, net))
-
-    capacitors, resistors, windings, loads, dischargers = [], [], [], [], []
-    inner = _inner(analysis, one)
-    for ref, candidate in analysis.choice.items():
-        part = analysis.design.parts[ref]
-        nets = part.nets()
-        if not part.fitted or ref in opened:
-            continue
-        at = [node(net) for net in nets]
-        if candidate.kind == "capacitor" and len(at) == 2 and at[0] != at[1] and _charged(analysis, ref, nets, one):
-            capacitors.append(_element(analysis, ref, (at[0], at[1]), CAPACITOR))
-        elif candidate.kind == "resistor" and len(at) == 2 and at[0] != at[1]:
-            if all(net in one or net in inner for net in nets):
-                resistors.append(_element(analysis, ref, (at[0], at[1]), RESISTOR))
-        elif set(pins) <= set(at):
-            if candidate.kind == "transformer":
-                windings.append(ref)
-            elif candidate.kind in _LOADS:
-                loads.append(ref)
-        if _DISCHARGER.search(_texts(analysis, ref)):
-            dischargers.append(ref)
-    return Plug(
-        text=text,
-        pins=pins,
-        capacitors=tuple(capacitors),
-        resistors=_ways(resistors, pins),
-        windings=tuple(windings),
-        loads=tuple(loads),
-        dischargers=tuple(dischargers),
-        opened=opened,
-        one_way=_one_way(resistors, pins, half, node),
-    )
-
-
-def _one_way(
-    resistors: list[Element], pins: tuple[str, str], half: Mapping[tuple[str, str], list[str]], node: Callable[[str], str]
-) -> tuple[str, ...]:
+def _one_way(resistors: list[Element], closed: Mapping[str, str], half: Mapping[tuple[str, str], list[str]]) -> tuple[str, ...]:
     """The diodes that would complete a way from pin to pin if they conducted both ways."""
-    links = [Element(refs[0], (node(low), node(high)), 1.0, 0.0, ()) for (low, high), refs in half.items()]
-    whole = _ways([*resistors, *links], pins)
-    through = tuple(one.ref for one in whole if one in links)
-    return through if any(one in resistors for one in whole) else ()
+    links = [Element(refs[0], ends, 1.0, 0.0, ()) for ends, refs in half.items()]
+    diodes = {one.ref for one in links}
+    found = []
+    for way in _ways([*resistors, *links], closed):
+        there = [one.ref for one in way.resistors if one.ref in diodes]
+        if there and len(there) < len(way.resistors) and len({closed[end] for end in way.ends}) > 1:
+            found += there
+    return tuple(found)
 
 
-def _ways(resistors: list[Element], pins: tuple[str, str]) -> tuple[Element, ...]:
-    """Those resistors that lead from pin to pin: what ends on a net of its own is taken off, end by end."""
-    found = list(resistors)
+def _ways(resistors: list[Element], closed: Mapping[str, str]) -> Iterator[Way]:
+    """Resistors that hang together over inner nets and reach two line conductors; what ends on a net of its own is taken off."""
+    kept = list(resistors)
     while True:
-        ends = Counter(end for one in found for end in one.ends)
-        kept = [one for one in found if all(end in pins or ends[end] > 1 for end in one.ends)]
-        if len(kept) == len(found):
-            return tuple(kept)
-        found = kept
+        ends = Counter(end for one in kept for end in one.ends)
+        left = [one for one in kept if all(end in closed or ends[end] > 1 for end in one.ends)]
+        if len(left) == len(kept):
+            break
+        kept = left
+    group = nx.Graph()
+    for at, one in enumerate(kept):
+        group.add_edges_from((f" {at}", end) for end in one.ends if end not in closed)
+        group.add_node(f" {at}")
+    for piece in nx.connected_components(group):
+        members = tuple(kept[at] for at in sorted(int(node) for node in piece if node.startswith(" ")))
+        ends_of = frozenset(end for one in members for end in one.ends if end in closed)
+        if len(ends_of) > 1:
+            yield Way(ends_of, members)
 
 
-def _charged(analysis: Analysis, ref: str, nets: tuple[str, ...], one: Mapping[str, str]) -> bool:
+def _charged(analysis: Analysis, nets: tuple[str, ...], one: Mapping[str, str]) -> bool:
     """Whether a capacitor holds charge on the pins: between two line conductors, or from one to protective earth."""
     isolation = analysis.isolation
     earthed = [net in isolation.domain_of and isolation.domains[isolation.domain_of[net]].earthed for net in nets]
-    return all(net in one or grounded for net, grounded in zip(nets, earthed, strict=True)) and any(net in one for net in nets)
+    pins = [one.get(net) for net in nets]
+    told = all(pin is not None or grounded for pin, grounded in zip(pins, earthed, strict=True))
+    return told and any(pins) and pins[0] != pins[1]
 
 
 def _inner(analysis: Analysis, one: Mapping[str, str]) -> frozenset[str]:
