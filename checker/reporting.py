@@ -98,6 +98,7 @@ def report(
     named = [ruleset.id for ruleset in rulesets]
     barriers = reporting_barriers.barriers(analysis, named, steps)
     separations = reporting_barriers.separations(analysis, named, steps)
+    stress = reporting_barriers.stress(analysis, steps)
     ordered = sorted(verdicts, key=_order)
     shown = [_verdict(verdict, steps) for verdict in ordered]
     return Report(
@@ -114,7 +115,7 @@ def report(
         domains=domains,
         barriers=barriers,
         separations=separations,
-        stress=[],
+        stress=stress,
         verdicts=shown,
         steps=steps.shown,
         summary=summary(shown),

@@ -172,20 +172,27 @@ def _each_once(steps: Iterable[Step]) -> tuple[Step, ...]:
     return tuple({id(step): step for step in steps}.values())
 
 
-def stress(found: Iterable[tuple[str | None, str | None, str, str, Bounds]], steps: Steps) -> list[StressShown]:
-    """(part, net, quantity, condition, bounds) of each voltage, current or power that verdicts use."""
-    return [
-        StressShown(
-            part=part,
-            net=net,
-            quantity=quantity,
-            surely=significant(bounds.surely),
-            never_above=_highest(bounds),
-            unit=bounds.unit,
-            form=bounds.form,
-            kind=bounds.kind,
-            condition=condition,
-            step=steps.id(bounds.step),
+def stress(analysis: Analysis, steps: Steps) -> list[StressShown]:
+    """The highest voltage across every fitted part between two nets that the files bound, the supply at its upper limit."""
+    shown = []
+    for ref, part in analysis.design.parts.items():
+        nets = part.nets()
+        voltage = analysis.stress.between(*nets) if len(nets) == 2 else None
+        if voltage is None or not voltage.peak.never_above:  # 0 V: nets that a fuse or choke ties, whose own drop is not counted
+            continue
+        bounds = voltage.peak
+        shown.append(
+            StressShown(
+                part=ref,
+                net=None,
+                quantity="voltage",
+                surely=significant(bounds.surely),
+                never_above=_highest(bounds),
+                unit=bounds.unit,
+                form=bounds.form,
+                kind=bounds.kind,
+                condition="",
+                step=steps.id(bounds.step),
+            )
         )
-        for part, net, quantity, condition, bounds in found
-    ]
+    return shown

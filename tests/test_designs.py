@@ -57,6 +57,15 @@ def test_the_barrier_of_the_clean_demo(clean):
     assert barrier.chains == [["CY1"]]
 
 
+def test_the_report_shows_the_voltage_across_parts_with_its_derivation(clean):
+    steps = {step.id for step in clean.steps}
+    shown = {item.part: item for item in clean.stress}
+    assert all(item.step in steps and item.quantity == "voltage" and item.never_above >= item.surely for item in clean.stress)
+    assert shown["C1"].never_above == pytest.approx(2**0.5 * 264, rel=1e-5)
+    assert shown["C10"].never_above == shown["C10"].surely == 12.0
+    assert "F1" not in shown
+
+
 def test_both_netlist_forms_give_the_same_verdicts():
     def essence(report):
         return [(v.rule, v.clause, v.outcome, v.level, v.parts, v.nets, v.fingerprint) for v in report.verdicts]
@@ -75,6 +84,8 @@ def test_both_netlist_forms_give_the_same_verdicts():
         ("reachable-connector", {"J3"}),
         ("records", {"CY2"}),
         ("records", {"F2"}),
+        ("stored-charge", {"CX1"}),
+        ("capacitor-voltage", {"C1"}),
     ],
 )
 def test_the_planted_mistakes_fail(wrong, rule, parts):

@@ -9,7 +9,8 @@ Asked of every fitted fuse in the line, and of resettable fuses there as far as 
   6.3 x 32 mm made to IEC 60127 is one of 250 V (from memory).
 - Kind: a thermal link opens by heat, it is no fuse; as the only one it fails.
 - Breaking capacity: `breaking` or more; by its class (L 35 A, E 150 A, H 1500 A), by the words ceramic and the size, or listed to
-  UL 248-14. Less is a warning on a supply with a plug, whose socket is protected, and an error on others.
+  UL 248-14. Less is a warning on a supply with a plug, whose socket is protected, and an error on others. Where no plug is
+  declared, what lies between `breaking` and `fixed` is enough or not by the short-circuit current of the installation: open.
 - Current: asked when the power is known: declared, or the sum of outputs declared with current. What the supply draws at the
   lowest mains voltage lies between the power itself and the power at the assumed least efficiency and power factor
   (`efficiency`, `power_factor`). A fuse of IEC 60127 carries all of its rated current, one of UL 248 three quarters; where the
@@ -54,12 +55,14 @@ _WHAT_BREAKING = "Breaking capacity of the fuse."
 
 @dataclass(frozen=True, slots=True)
 class Params:
-    """breaking: least breaking capacity at the mains voltage. iec, ul: share of the rated current that may flow all the time.
+    """breaking: least breaking capacity at the mains voltage, fixed: that of a fuse on wired terminals.
 
+    iec, ul: share of the rated current that may flow all the time.
     efficiency, power_factor: assumed to be no less.
     """
 
     breaking: Annotated[float, AtLeast("A")] = 50.0
+    fixed: Annotated[float, AtLeast("A")] = 150.0
     iec: Annotated[float, Ratio()] = 1.0
     ul: Annotated[float, Ratio()] = 0.75
     efficiency: Annotated[float, Ratio()] = 0.7
@@ -223,12 +226,26 @@ def _breaking(analysis: Analysis, clause: Clause, ref: str) -> Verdict:
         step = Step(because, (*_texts(analysis, ref)[:4], part.fact))
         return clause.opens(subject, _WHAT_BREAKING, because, step, missing, level=level)
     found = Number(float(known.result or 0.0), "A")
+    if not plug and params.breaking <= found.value < params.fixed:
+        return _by_the_installation(analysis, clause, ref, known)
     because = f"{known.text}; {params.breaking:g} A or more are asked for"
     step = Step(because, (known, part.fact), formula="I_breaking >= I", result=found.value, unit="A", citation=clause.citation)
     return clause.at_least(
         subject, _WHAT_BREAKING, because, step, surely=None if at_least else found, never_below=found, limit=limit,
         missing=missing, level=level, remedy=None if at_least or found.value >= limit.value else _of_class_h(ref),
     )  # fmt: skip
+
+
+def _by_the_installation(analysis: Analysis, clause: Clause, ref: str, known: Step) -> Verdict:
+    """A fuse that is enough behind a plug, on a supply that may be wired to a strong network."""
+    part = analysis.design.parts[ref]
+    because = f"{known.text}; on wired terminals the current of a short circuit may be more"
+    step = Step(because, (known, part.fact), citation=clause.citation)
+    missing = Missing(
+        "short-circuit current at the supply terminals", "a fuse of class E or H; or supply: connection in the declaration",
+        ((f"pluggable-A, or a fuse of {clause.params.fixed:g} A or more", "pass"), ("wired to a stronger network", "fail")), ref,
+    )  # fmt: skip
+    return clause.opens(_subject(analysis, ref, "breaking"), _WHAT_BREAKING, because, step, missing, level="warning")
 
 
 def _of_class_h(ref: str) -> Remedy:
