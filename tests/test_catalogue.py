@@ -275,7 +275,16 @@ TAPPED = (Winding(("7", "8", "10"), (6.0, 6.0)),)
         ),
         ("", "", "turns 128:16 (primary 1-2, aux 3-4, secondary 5-6)", ()),
         ("", "", "XFMR GATE DRIVE 1:1:1 REINFORCED 4KV", ()),
+        (
+            "",
+            "",
+            "Printtrafo 3 VA, Wicklungen 1-5, 6-7, 8-9, 4000 Vrms",
+            (Winding(("1", "5")), Winding(("6", "7")), Winding(("8", "9"))),
+        ),
+        ("", "", "windings 1-2 / 3-4, 3 kV", (Winding(("1", "2")), Winding(("3", "4")))),
         ("", "", "0.1 to 0.2 A, 10-20 turns", ()),
+        ("", "", "0.1 to 0.2 A, windings 10-20", ()),
+        ("", "", "windings 1-2, 2-3", ()),
         ("1-1:4", "", "", ()),
         ("1-2:3, 2-4:5", "", "", (Winding(("1", "2", "4"), (3.0, 5.0)),)),  # a tap at 2
         ("1-2:3, 4-2:5", "", "", ()),

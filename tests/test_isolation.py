@@ -184,12 +184,27 @@ def test_several_secondaries_are_domains_of_their_own():
     assert set(found) == {"mains|VOUT", "mains|+5V", "VOUT|+5V"}
 
 
-def test_a_secondary_bonded_to_protective_earth_is_an_earthed_secondary():
-    parts = flyback(J1=("inlet", {"1": "L", "2": "N", "3": "PE"}), R7=("resistor", {"1": "PE", "2": "SGND"}))
-    found, isolation = barriers(parts)
+@pytest.mark.parametrize("joined", [("jumper", {}), ("resistor", {"value": 0.0}), ("inductor", {})])
+def test_a_secondary_bonded_to_protective_earth_is_an_earthed_secondary(joined):
+    kind, more = joined
+    parts = flyback(J1=("inlet", {"1": "L", "2": "N", "3": "PE"}), R7=(kind, {"1": "PE", "2": "SGND"}))
+    found, isolation = barriers(parts, R7=more)
     assert isolation.domains["VOUT"].earthed
     assert not isolation.shorts
     assert set(found) == {"mains|VOUT"}
+
+
+@pytest.mark.parametrize("values", [({"value": 1e6},), ({},), ({"value": 470e3}, {"value": 470e3})])
+def test_a_resistor_bleeds_to_protective_earth_and_bonds_nothing(values):
+    parts = flyback(J1=("inlet", {"1": "L", "2": "N", "3": "PE"}))
+    nets = ["PE", *(f"PE{number}" for number in range(1, len(values))), "SGND"]
+    for number in range(len(values)):
+        parts[f"R{number + 7}"] = ("resistor", {"1": nets[number], "2": nets[number + 1]})
+    found, isolation = barriers(parts, **{f"R{number + 7}": more for number, more in enumerate(values)})
+    assert not isolation.domains["VOUT"].earthed
+    assert isolation.domains["earth"].earthed
+    assert not isolation.shorts
+    assert found["earth|VOUT"] == ("R7",)
 
 
 def test_protective_earth_joined_to_the_primary_is_a_short():

@@ -17,6 +17,10 @@ _TURNS = re.compile(r"\d{1,5}(?:[.,]\d{1,3})?")
 _COUNT = r"\d{1,5}(?:\.\d{1,3})?T?"
 _IN_WORDS = re.compile(rf"(?<![\w.-]){_PIN}(?:-{_PIN}){{1,7}} ?: ?{_COUNT}(?:[+:]{_COUNT}){{0,6}}(?![\w.])")
 _RATIO = re.compile(r"turns\s*:?\s*(\d{1,5}(?:\.\d{1,3})?(?:\s*:\s*\d{1,5}(?:\.\d{1,3})?){1,15})", re.IGNORECASE)
+_WOUND = re.compile(
+    rf"(?<!\w)(?:windings?|coils?|wicklung(?:en)?|enroulements?)\s?:?\s({_PIN}(?:-{_PIN}){{1,7}}(?:\s?[,;/]\s?{_PIN}(?:-{_PIN}){{1,7}}){{1,15}})(?![\w:-])",
+    re.IGNORECASE,
+)
 _NAMED = re.compile(rf"(?<![\w-])([A-Za-z][A-Za-z ]{{0,30}}?)\s?({_PIN}(?:-{_PIN}){{1,7}})(?![\w-])")
 
 
@@ -85,6 +89,9 @@ def _described(description: str) -> tuple[Winding, ...]:
     whole = _tapped([winding for winding in spelled if winding is not None])
     if whole:
         return tuple(whole) if all(winding is not None for winding in spelled) and len(whole) <= MOST and _apart(whole) else ()
+    listed = _WOUND.search(text)
+    if listed is not None:
+        return _listed(re.sub(r"[;/]", ",", listed[1]))
     ratio = _RATIO.search(text)
     if ratio is None:
         return ()

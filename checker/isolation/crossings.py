@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from itertools import combinations
 
 from checker.errors import InputError
@@ -28,6 +28,7 @@ def crossings(
     domains: Mapping[str, Domain],
     suspects: Sequence[Unlisted],
     ordinary: Mapping[str, Short],
+    bleeders: Collection[str] = (),
 ) -> tuple[tuple[Crossing, ...], tuple[Crossing, ...]]:
     """(crossings, not-fitted parts that would cross), each in file order."""
     found: list[Crossing] = []
@@ -53,7 +54,9 @@ def crossings(
             by_domain = {name: pins for name, pins in by_domain.items() if len(pins) > 1}
         if len(by_domain) < 2:
             continue
-        if ref in ordinary:
+        if ref in bleeders:
+            how, step = "bleeder", Step(f"resistor {ref} between {' and '.join(by_domain)} bonds nothing", (part.fact,))
+        elif ref in ordinary:
             how, step = "ordinary", ordinary[ref].step
         elif candidate.insulating or ref in unlisted or kind in CONNECTORS:
             how, step = "insulating", Step(f"{ref} has pins in {' and '.join(by_domain)}: {candidate.because}", (part.fact,))

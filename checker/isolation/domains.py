@@ -7,7 +7,7 @@ from collections.abc import Mapping, Sequence
 from checker.isolation import evidence, shorts, unlisted
 from checker.isolation.crossings import crossings, separations
 from checker.isolation.groups import TRANSFORMERS, halves
-from checker.isolation.islands import Islands, build, settle_capacitors, settle_windings
+from checker.isolation.islands import Islands, build, is_stub, settle_capacitors, settle_windings
 from checker.isolation.naming import named
 from checker.isolation.shorts import Culprit
 from checker.isolation.sides import assign
@@ -20,6 +20,7 @@ from checker.model.step import Step
 
 DOUBTED = frozenset({"controller", "regulator", "ic", "module", "unknown", "sensor"})
 ROUNDS = 8  # independent shorts looked for in one design
+BOND = 10.0  # ohm; a resistor above it is no bond to protective earth (common practice, no source; a bond has 0.1 ohm)
 CHAIN_WEIGHED = 6  # links of a series chain that are tried one by one
 NETS_WEIGHED = 5_000  # nets of a design beyond which they are not
 WEIGHED = 24  # insulating parts that share one island for which the sides' evidence is compared
@@ -36,6 +37,7 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     hidden = unlisted.find_shorted(doubtful)
     halved = {suspect.ref: suspect.halves for suspect in suspects}
     opened = condition.removed
+    bleeders: frozenset[str] = frozenset()
     found: list[Short] = []
     while True:
         isle = build(design, choice, opened, halved)
@@ -51,6 +53,10 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
             suspects += tuple(unlisted.doubt(isle, ref) for ref in doubted)
             halved |= {suspect.ref: suspect.halves for suspect in suspects}
             continue
+        if short is None and (weak := _weak_bonds(isle) - opened):
+            bleeders |= weak
+            opened |= weak
+            continue
         if short is None or len(found) >= ROUNDS:
             break
         found.append(short)
@@ -63,7 +69,7 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     gathered = evidence.gather(isle, members)
     sides = assign(isle, members, gathered, declaration)
     domains, domain_of = named(isle, members, sides, declaration)
-    crossed, idle = crossings(isle, domain_of, domains, suspects, ordinary)
+    crossed, idle = crossings(isle, domain_of, domains, suspects, ordinary, bleeders)
     barriers = separations(design.name, domains, crossed)
     inactive = tuple(ref for ref in _inactive(isle) if not any(ref in short.parts for short in found))
     questions = (
@@ -72,6 +78,34 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
         *sides.questions,
     )
     return Isolation(domains, domain_of, crossed, barriers, tuple(found), questions, tuple(isle.links), inactive, idle)
+
+
+def _weak_bonds(isle: Islands) -> frozenset[str]:
+    """Resistors that alone tie a circuit to protective earth: they bleed charge and bond nothing, a fault current least of all."""
+    found: set[str] = set()
+    members = isle.members()
+    gathered = evidence.gather(isle, members)
+    mains = set(evidence.on_mains(gathered))
+    for island, piece in gathered.items():
+        if not piece.is_earth or island in mains:
+            continue
+        weak = {ref for net in members[island] for ref in isle.live[net] if _bonds_nothing(isle, ref)}
+        if not weak or is_stub(isle, members[island], frozenset({"resistor"})):
+            continue
+        trial = build(isle.design, isle.choice, isle.opened | weak, isle.halved)
+        seeds = {trial.island(net) for net in _seed_nets(isle, island, piece.earth.values())}
+        if is_stub(trial, [net for net in members[island] if trial.island(net) in seeds], frozenset({"resistor"})):
+            found |= {ref for ref in weak if len({trial.island(net) in seeds for net in _ends(trial, ref)}) > 1}
+    return frozenset(found)
+
+
+def _bonds_nothing(isle: Islands, ref: str) -> bool:
+    value = isle.choice[ref].value
+    return isle.kind(ref) == "resistor" and isle.design.parts[ref].fitted and (value is None or float(value.value) > BOND)
+
+
+def _ends(isle: Islands, ref: str) -> list[str]:
+    return [net for net in isle.design.parts[ref].nets() if net in isle.live and net not in isle.links]
 
 
 def _inactive(isle: Islands) -> list[str]:

@@ -38,7 +38,8 @@ class Domain:
 class Crossing:
     """A part whose pins lie in two domains. sides: pins per domain name, for a chain member the nets it hangs on.
 
-    kind of crossing: "insulating" (made for it, or a candidate nobody listed), "capacitor", "ordinary".
+    kind of crossing: "insulating" (made for it, or a candidate nobody listed), "capacitor", "limiter", "bleeder" (a resistor to
+    protective earth), "ordinary".
     chain: the references in series this part belongs to, itself alone when it spans the barrier by itself.
     listed: False for an insulating part that only the circuit shows to be one. step: the evidence for the crossing.
     """

@@ -40,6 +40,8 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
             spoiled.add(frozenset(crossing.between))
             if crossing.part not in shorted:
                 yield _of_ordinary(analysis, clause, crossing)
+        elif crossing.how == "bleeder":
+            spoiled.add(frozenset(crossing.between))
         elif crossing.how == "limiter" and not _to_earth(analysis, crossing):
             spoiled.add(frozenset(crossing.between))
             yield _of_limiter(analysis, clause, crossing)

@@ -38,7 +38,8 @@ class Pulls:
     up: conductor -> those that can pull it up; down likewise. above: conductor -> (conductor, volts it can be above it).
     below: the same downwards. swings: conductors nothing bounds. agile: conductors that move fast, unless something holds
     them. coupled: ends of a capacitor, through which an agile one takes the other along. usual: (one, other, volts the first
-    can be above the second, volts the second can be above the first) by the ratings that parts keep in normal use.
+    can be above the second, volts the second can be above the first) by the ratings that parts keep in normal use. plugged:
+    conductors of one circuit on one connector.
     """
 
     up: dict[str, list[str]] = field(default_factory=dict)
@@ -49,6 +50,7 @@ class Pulls:
     agile: dict[str, None] = field(default_factory=dict)
     coupled: list[tuple[str, str]] = field(default_factory=list)
     usual: list[tuple[str, str, float, float]] = field(default_factory=list)
+    plugged: list[list[str]] = field(default_factory=list)
 
     def both(self, nets: Iterable[str], hub: str) -> None:
         """Parts that conduct both ways between all their nets."""
@@ -104,6 +106,7 @@ def pulls(board: Board, same: Mapping[str, str], strung: Mapping[str, String], g
                 found.agile.update(dict.fromkeys(nets))
         elif kind in CONNECTORS - {"test-point"}:
             found.swings.update(nets)  # what is plugged in drives it, nobody knows with what
+            found.plugged.extend(_by_domain(board, ref, same).values())
             _touched(board, ref, same, grounds, found)
         elif kind in _CHIPS:
             _chip(board, ref, same, found)

@@ -42,10 +42,28 @@ def spread(
     swings = set(pulls.swings)
     for one, other in pulls.coupled:
         swings.update(far for net, far in ((one, other), (other, one)) if net in moving)
+    sure = _pulled_from(sources, pulls, swings, frame_of)
+    found = Field({**sources, **sure}, {**sources, **sure, **wound})
+    if loads := _loads(pulls, sources, line):
+        usual = _pulled_from({**sources, **loads}, pulls, swings - loads.keys(), frame_of)
+        found.usual.update({net: known for net, known in usual.items() if known.bounded and not _is_bounded(found.usual.get(net))})
+        found.usual.update(loads)
+    _by_ratings(found, pulls, sources, swings)
+    return found
+
+
+def _is_bounded(known: Potential | None) -> bool:
+    return known is not None and known.bounded
+
+
+def _pulled_from(
+    sources: Mapping[str, Potential], pulls: Pulls, swings: Collection[str], frame_of: Callable[[str], str | None]
+) -> dict[str, Potential]:
+    """Every other conductor -> what the sources can pull it to, where they bound it at least one way."""
     nets = dict.fromkeys((*pulls.up, *pulls.down, *pulls.above, *pulls.below, *swings))
     high = _reached(sources, pulls.up, pulls.above, swings, nets, 1)
     low = _reached(sources, pulls.down, pulls.below, swings, nets, -1)
-    found = Field(dict(sources), dict(sources))
+    found = {}
     for net in nets:
         frame = frame_of(net)
         if net in sources or frame is None or net.startswith(" "):
@@ -54,10 +72,7 @@ def spread(
         ends = [sources[name] for name in dict.fromkeys((lowest, highest)) if name in sources]
         if not ends or any(end.frame != frame for end in ends):
             continue
-        step = _between(net, lowest, highest, ends)
-        found.sure[net] = found.usual[net] = Potential(frame, below, above, step)
-    found.usual.update(wound)
-    _by_ratings(found, pulls, sources, swings)
+        found[net] = Potential(frame, below, above, _between(net, lowest, highest, ends))
     return found
 
 
@@ -74,7 +89,7 @@ def _reached(
     sources: Mapping[str, Potential],
     edges: Mapping[str, list[str]],
     clamps: Mapping[str, list[tuple[str, float]]],
-    swings: set[str],
+    swings: Collection[str],
     nets: Mapping[str, None],
     sign: int,
 ) -> dict[str, tuple[Wave, str]]:
@@ -128,6 +143,24 @@ def _reached(
             known[net] = made
             queue.append(net)
     return {net: known.get(net) or clamped(net, end, "") for net in nets}
+
+
+def _loads(pulls: Pulls, sources: Mapping[str, Potential], line: Collection[str]) -> dict[str, Potential]:
+    """A contact beside a conductor of the line carries a load on the line, which in normal use leaves it between the conductors."""
+    found = {}
+    for contacts in pulls.plugged:
+        poles = [sources[net] for net in contacts if net in line and net in sources]
+        if not poles or any(pole.frame != poles[0].frame for pole in poles):
+            continue
+        for net in contacts:
+            if net in sources:
+                continue
+            ends = [source for name, source in sources.items() if name in line and source.frame == poles[0].frame]
+            because = f"in normal use {net} carries a load of the line and stays between its conductors"
+            step = Step(because, tuple(end.step for end in ends[:2]))
+            low, high = reduce(lower, (end.low for end in ends)), reduce(higher, (end.high for end in ends))
+            found[net] = Potential(poles[0].frame, low, high, step)
+    return found
 
 
 def _by_ratings(found: Field, pulls: Pulls, sources: Mapping[str, Potential], swings: set[str]) -> None:
