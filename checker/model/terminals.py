@@ -7,6 +7,7 @@ from collections.abc import Iterable
 from checker.model.circuit import Part
 
 ANODE = frozenset({"A", "ANODE", "AN", "A1"})
+_NO_LIGHT = frozenset("E EM EMITTER B BASE COL COLLECTOR NC VCC VDD VO OUT GND VEE MT1 MT2 T1 T2 D D1 D2 S".split())
 CATHODE = frozenset({"K", "C", "CATHODE", "CA", "KATHODE"})
 _PLUS = frozenset({"+", "V+", "DC+", "POS", "P", "+VE", "VDC+"})
 _MINUS = frozenset({"-", "V-", "DC-", "NEG", "-VE", "VDC-"})
@@ -49,6 +50,18 @@ def bridge(part: Part) -> tuple[str, str, tuple[str, ...]] | None:
         return None
     alternating = named(part, _ALTERNATING) or tuple(net for net in part.nets() if net not in (plus[0], minus[0]))
     return (plus[0], minus[0], alternating) if alternating else None
+
+
+def light(part: Part) -> tuple[str, str] | None:
+    """(anode, cathode) nets of the one light-emitting diode of a coupler; by the numbers 1 2 of a body with four or six pins where
+    names tell no other thing (from memory; every maker numbers it so). Those of an a.c. input have no order."""
+    anode, cathode = named(part, ANODE), named(part, CATHODE - {"C"})
+    if len(anode) == len(cathode) == 1:
+        return anode[0], cathode[0]
+    at = {pin.number: pin.net for pin in part.pins}
+    small = set(at) <= set("123456") and not any(pin.name.strip().upper() in _NO_LIGHT for pin in part.pins if pin.number in "12")
+    one, two = at.get("1"), at.get("2")
+    return (one, two) if small and one and two else None
 
 
 def coupler(part: Part) -> tuple[str, str, str, str] | None:

@@ -13,7 +13,7 @@ from dataclasses import dataclass, field
 
 from checker.model.candidate import CONNECTORS
 from checker.model.rule import Board
-from checker.model.terminals import ANODE, CATHODE, GROUND, SUPPLY, anode_and_cathode, coupler, named
+from checker.model.terminals import ANODE, CATHODE, GROUND, SUPPLY, anode_and_cathode, coupler, light, named
 from checker.stress.buses import diodes
 from checker.stress.potential import DROPS
 from checker.stress.rails import ZENER_MOST, zener_voltage
@@ -219,10 +219,11 @@ def _usual(board: Board, ref: str, kind: str, same: Mapping[str, str], found: Pu
     elif kind == "shunt-reference":
         pair(one(CATHODE), one(ANODE), rated, 1.5)
     elif kind == "optocoupler":
-        pins_of = coupler(part)
+        ends, pins_of = light(part), coupler(part)
+        if ends is not None:
+            pair(same.get(ends[0], ends[0]), same.get(ends[1], ends[1]), DROPS.light)
         if pins_of is not None:
-            anode, cathode, collector, emitter = (same.get(net, net) for net in pins_of)
-            pair(anode, cathode, DROPS.light)
+            _, _, collector, emitter = (same.get(net, net) for net in pins_of)
             pair(collector, emitter, rated if math.isfinite(rated) else COUPLER, DROPS.light)
     elif kind == "led":
         pair(one(ANODE), one(CATHODE), DROPS.light)

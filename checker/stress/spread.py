@@ -48,7 +48,7 @@ def spread(
         usual = _pulled_from({**sources, **loads}, pulls, swings - loads.keys(), frame_of)
         found.usual.update({net: known for net, known in usual.items() if known.bounded and not _is_bounded(found.usual.get(net))})
         found.usual.update(loads)
-    _by_ratings(found, pulls, sources, swings)
+    _by_ratings(found, pulls, sources, swings, frame_of)
     return found
 
 
@@ -163,13 +163,19 @@ def _loads(pulls: Pulls, sources: Mapping[str, Potential], line: Collection[str]
     return found
 
 
-def _by_ratings(found: Field, pulls: Pulls, sources: Mapping[str, Potential], swings: set[str]) -> None:
+def _by_ratings(
+    found: Field, pulls: Pulls, sources: Mapping[str, Potential], swings: set[str], frame_of: Callable[[str], str | None]
+) -> None:
     """Narrows what physics alone does not bound by its neighbours, and every net by what the parts on it are rated for."""
-    loose = [net for net, known in found.sure.items() if not (known.bounded or net in sources or net in swings)]
+    loose = {
+        net: frame
+        for net in dict.fromkeys((*pulls.up, *pulls.down))
+        if net not in sources and net not in swings and not _is_bounded(found.sure.get(net)) and (frame := frame_of(net))
+    }
     for _ in range(ROUNDS):
         changed = False
-        for net in loose:
-            changed |= _pulled(found, pulls, net)
+        for net, frame in loose.items():
+            changed |= _pulled(found, pulls, net, frame)
         for one, other, volts, back in pulls.usual:
             for net, far, up, down in ((one, other, volts, back), (other, one, back, volts)):
                 changed |= _narrowed(found, sources, net, far, up, down)
@@ -197,16 +203,16 @@ def _narrowed(found: Field, sources: Mapping[str, Potential], net: str, far: str
     return True
 
 
-def _pulled(found: Field, pulls: Pulls, net: str) -> bool:
+def _pulled(found: Field, pulls: Pulls, net: str, frame: str) -> bool:
     """Bounds a conductor by those that pull it, where these are bounded nearer in normal use than it is itself."""
-    known = found.usual[net]
-    high, low, ends = known.high, known.low, list[Potential]()
-    pulling = _neighbours(found, pulls.up, net, known.frame)
+    known = found.usual.get(net)
+    high, low, ends = (math.inf, -math.inf, list[Potential]()) if known is None else (known.high, known.low, list[Potential]())
+    pulling = _neighbours(found, pulls.up, net, frame)
     if pulling:
         reached = reduce(higher, (other.high for other in pulling))
         if top(reached) < top(high):
             high, ends = reached, [*ends, *pulling]
-    pulling = _neighbours(found, pulls.down, net, known.frame)
+    pulling = _neighbours(found, pulls.down, net, frame)
     if pulling:
         reached = reduce(lower, (other.low for other in pulling))
         if bottom(reached) > bottom(low):
@@ -214,7 +220,7 @@ def _pulled(found: Field, pulls: Pulls, net: str) -> bool:
     if not ends:
         return False
     step = Step(f"in normal use {net} lies between what it hangs on", tuple(end.step for end in ends[:2]))
-    found.usual[net] = Potential(known.frame, low, high, step)
+    found.usual[net] = Potential(frame, low, high, step)
     return True
 
 
