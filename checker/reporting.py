@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import hashlib
-import json
 from collections.abc import Iterable, Mapping, Sequence
 from importlib.metadata import PackageNotFoundError, version
+
+import msgspec
 
 from checker import reporting_barriers
 from checker.formulas.rounding import significant
@@ -66,7 +67,7 @@ def facts_hash(verdict: Verdict) -> str:
 
 
 def _hash(content: object) -> str:
-    return hashlib.sha256(json.dumps(content, ensure_ascii=True, separators=(",", ":")).encode()).hexdigest()[:32]
+    return hashlib.sha256(msgspec.json.encode(content)).hexdigest()[:32]
 
 
 def _facts(verdict: Verdict) -> tuple[Fact, ...]:

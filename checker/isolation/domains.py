@@ -48,12 +48,14 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
         settle_windings(isle)
         settle_capacitors(isle)
         _join_alike(isle, declaration)
-        short, cut, doubted = _next_short(isle, declaration)
+        members = isle.members()
+        gathered = evidence.gather(isle, members)
+        short, cut, doubted = _next_short(isle, members, gathered, declaration)
         if doubted and len(suspects) < ROUNDS + len(listed):
             suspects += tuple(unlisted.doubt(isle, ref) for ref in doubted)
             halved |= {suspect.ref: suspect.halves for suspect in suspects}
             continue
-        if short is None and (weak := _weak_bonds(isle) - opened):
+        if short is None and (weak := _weak_bonds(isle, members, gathered) - opened):
             bleeders |= weak
             opened |= weak
             continue
@@ -64,9 +66,7 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
             break
         opened |= frozenset(cut)
     ordinary = {ref: short for short in found for ref in short.chain if ref in opened}
-    found += _harmless(isle, found)
-    members = isle.members()
-    gathered = evidence.gather(isle, members)
+    found += _harmless(isle, members, found)
     sides = assign(isle, members, gathered, declaration)
     domains, domain_of = named(isle, members, sides, declaration)
     crossed, idle = crossings(isle, domain_of, domains, suspects, ordinary, bleeders)
@@ -80,11 +80,9 @@ def isolate(design: Design, choice: Mapping[str, Candidate], declaration: Declar
     return Isolation(domains, domain_of, crossed, barriers, tuple(found), questions, tuple(isle.links), inactive, idle)
 
 
-def _weak_bonds(isle: Islands) -> frozenset[str]:
+def _weak_bonds(isle: Islands, members: Mapping[str, list[str]], gathered: Mapping[str, evidence.Evidence]) -> frozenset[str]:
     """Resistors that alone tie a circuit to protective earth: they bleed charge and bond nothing, a fault current least of all."""
     found: set[str] = set()
-    members = isle.members()
-    gathered = evidence.gather(isle, members)
     mains = set(evidence.on_mains(gathered))
     for island, piece in gathered.items():
         if not piece.is_earth or island in mains:
@@ -121,14 +119,15 @@ def _inactive(isle: Islands) -> list[str]:
     ]
 
 
-def _next_short(isle: Islands, declaration: Declaration) -> tuple[Short | None, tuple[str, ...], tuple[str, ...]]:
+def _next_short(
+    isle: Islands, members: Mapping[str, list[str]], gathered: Mapping[str, evidence.Evidence], declaration: Declaration
+) -> tuple[Short | None, tuple[str, ...], tuple[str, ...]]:
     """The next fault that joins what should be apart, the parts to open so that the rest can be judged, and instead of both a
     circuit in a package that would be the culprit: more likely it insulates and was taken for an ordinary one."""
-    members = isle.members()
-    for reason, one, two in _opposed(isle, members, declaration):
+    for reason, one, two in _opposed(isle, members, gathered, declaration):
         return (*_joined(isle, members, reason, one, two), ())
     inactive = _inactive(isle)
-    hazardous = set(evidence.on_mains(evidence.gather(isle, members)))
+    hazardous = set(evidence.on_mains(gathered))
     for culprit in shorts.find(isle, members, inactive, _active(isle))[:WEIGHED]:
         if culprit.chain and (telling := _telling(isle, culprit, hazardous)):
             return _found(isle, members, culprit, telling)
@@ -210,7 +209,9 @@ def _to_open(isle: Islands, chain: Sequence[str]) -> tuple[str, ...]:
     return tuple(sorted(likely, key=lambda ref: split[ref]))
 
 
-def _opposed(isle: Islands, members: Mapping[str, list[str]], declaration: Declaration) -> list[tuple[str, list[str], list[str]]]:
+def _opposed(
+    isle: Islands, members: Mapping[str, list[str]], gathered: Mapping[str, evidence.Evidence], declaration: Declaration
+) -> list[tuple[str, list[str], list[str]]]:
     """Groups of nets on one island that evidence or the declaration says are two circuits: reason, nets of one, nets of the
     other."""
     found = []
@@ -224,12 +225,11 @@ def _opposed(isle: Islands, members: Mapping[str, list[str]], declaration: Decla
                     found.append((f"the declaration keeps {other} and {domain.name} apart", [first], [net]))
                 seeds.setdefault(island, (domain.name, net))
     bonded = {net for domain in declaration.domains.values() if domain.side == "earth" for net in domain.nets}
-    pieces = evidence.gather(isle, members)
-    for island in evidence.on_mains(pieces):
-        gathered = pieces[island]
-        if gathered.is_earth and not bonded & set(members[island]):
-            earth = _seed_nets(isle, island, gathered.earth.values())
-            mains = [net for net in _seed_nets(isle, island, gathered.mains.values()) if net not in earth]
+    for island in evidence.on_mains(gathered):
+        piece = gathered[island]
+        if piece.is_earth and not bonded & set(members[island]):
+            earth = _seed_nets(isle, island, piece.earth.values())
+            mains = [net for net in _seed_nets(isle, island, piece.mains.values()) if net not in earth]
             if earth and mains:
                 found.append(("protective earth and the mains conductors are two circuits", mains[:1], earth[:1]))
     return found
@@ -326,9 +326,8 @@ def _short(isle: Islands, members: Mapping[str, list[str]], culprit: Culprit, li
     return Short(likely, culprit.parts, nets, way, True, step)
 
 
-def _harmless(isle: Islands, known: Sequence[Short]) -> list[Short]:
+def _harmless(isle: Islands, members: Mapping[str, list[str]], known: Sequence[Short]) -> list[Short]:
     """Insulating parts that insulate nothing, without evidence that they should: one piece of information each."""
-    members = isle.members()
     found = []
     inactive = [ref for ref in _inactive(isle) if not any(ref in short.parts for short in known)]
     for culprit in shorts.find(isle, members, inactive):

@@ -140,7 +140,7 @@ def _low_side(board: Board, net: str, fed: _Fed, line: Mapping[str, Potential], 
     if pole is not None:  # the capacitor holds it below that pole: the lower half of a doubler, or a negative half wave
         depth = -bottom(minus(lowest, line[pole].low))
         step = Step(
-            f"{net} is held by {', '.join(joined[pole])} at the crest below {pole} ({refs} rectify)", inputs,
+            f"{net} is held by {', '.join(joined[pole])} at the crest below {pole} (rectified by {refs})", inputs,
             formula="sqrt(2) x U", result=depth, unit="V", form="dc", citation=CITATION,
         )  # fmt: skip
         low = plus(line[pole].low, -depth)
@@ -170,7 +170,7 @@ def _high_side(
     crest = top(minus(highest, base.low))
     count = 1 + (other in low)
     step = Step(
-        f"{net} is held at the crest of the line against {other}; {refs} rectify", (*inputs, base.step),
+        f"{net} is held at the crest of the line against {other}; rectified by {refs}", (*inputs, base.step),
         formula="sqrt(2) x U" if other in low else "sqrt(2) x U, half wave", result=crest, unit="V", form="dc", citation=CITATION,
     )  # fmt: skip
     high = plus(base.low, crest)
