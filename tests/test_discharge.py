@@ -8,7 +8,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from checker.formulas.discharge import left, most_ohms, seconds_until
+from checker.formulas.discharge import E12, left, most_ohms, seconds_until, usual_ohms
+from checker.formulas.nodal import star_mesh
 
 CREST = math.sqrt(2) * 264
 
@@ -27,6 +28,12 @@ def test_a_published_example_of_a_resistor_maker():
 def test_the_largest_bleeder_by_three_rules(limit, seconds, nominal, worst):
     assert most_ohms(CREST, 1e-6, limit, seconds) == pytest.approx(nominal, rel=2e-3)
     assert most_ohms(CREST, 1.2e-6, limit, seconds) / 1.05 == pytest.approx(worst, rel=2e-3)
+
+
+def test_the_largest_bleeder_by_a_time_constant():
+    """IEC 60950-1 2.1.1.7 (b_ex10): a constant of at most 1 s is 1000 kohm on 1 uF, 794 kohm with C + 20 % and R + 5 %."""
+    assert seconds_until(math.e, 1000e3, 1e-6, 1.0) == pytest.approx(1.0)
+    assert seconds_until(math.e, 794e3 * 1.05, 1.2e-6, 1.0) == pytest.approx(1.0, rel=2e-3)
 
 
 def test_a_time_constant_of_a_second():
@@ -59,3 +66,49 @@ def test_no_way_and_no_capacitor():
     assert left(373.0, 1e6, 0.0, 2.0) == 0.0
     assert most_ohms(50.0, 1e-6, 60.0, 2.0) == math.inf
     assert seconds_until(50.0, 1e6, 1e-6, 60.0) == 0.0
+
+
+def simulated(farads, ohms, seconds, steps=20_000):
+    """The voltage between the nodes 0 and 1 of three nodes, of 1 V at the start, by Heun's method on C dV/dt = -G V.
+
+    farads, ohms: between nodes 0-1, 0-2 and 1-2; node 1 is the reference and node 2, earth, starts with it.
+    """
+    (c01, c02, c12), (g01, g02, g12) = farads, [1 / one for one in ohms]
+
+    def slope(one, two):
+        i0, i2 = -(g01 * one + g02 * (one - two)), -(g12 * two + g02 * (two - one))
+        a, b, d = c01 + c02, -c02, c12 + c02
+        det = a * d - b * b
+        return (d * i0 - b * i2) / det, (a * i2 - b * i0) / det
+
+    one, two, step = 1.0, 0.0, seconds / steps
+    for _ in range(steps):
+        s1, s2 = slope(one, two)
+        t1, t2 = slope(one + step * s1, two + step * s2)
+        one, two = one + step * (s1 + t1) / 2, two + step * (s2 + t2) / 2
+    return one
+
+
+def reduced(farads, ohms, seconds):
+    """The same by the two networks each reduced to the pins, as the rule does."""
+    ends = ((0, 1), (0, 2), (1, 2))
+
+    def between(values):
+        return star_mesh(((one, two, value) for (one, two), value in zip(ends, values, strict=True)), (0, 1))[0][1]
+
+    return left(1.0, 1 / between(1 / one for one in ohms), between(farads), seconds)
+
+
+def test_networks_reduced_to_the_pins():
+    """Exact where resistors and capacitors are alike; nearly so where capacitors to earth are small against the others."""
+    assert reduced([1e-6] * 3, [1e6] * 3, 1.0) == pytest.approx(simulated([1e-6] * 3, [1e6] * 3, 1.0), rel=1e-4)
+    line = ([220e-9, 2.2e-9, 4.7e-9], [math.inf, 1e6, 1e6], 1.0)
+    assert reduced(*line) == pytest.approx(simulated(*line), rel=0.05)
+
+
+@given(st.floats(1e-3, 1e8))
+def test_the_usual_resistor_is_the_next_one_down(most):
+    found = usual_ohms(most)
+    assert found <= most * (1 + 1e-6)
+    assert found * 1.25 * (1 + 1e-6) > most
+    assert round(found / 10 ** math.floor(math.log10(found) + 1e-9), 6) in E12

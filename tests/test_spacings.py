@@ -12,14 +12,12 @@ from checker import api, declaration, files, pipeline, plugins, reporting, rules
 from checker.model.declaration import Declaration, DeclaredBarrier, Range
 from checker.model.domain import Domain, Isolation
 from checker.model.entry import Entry
-from checker.model.fact import Fact, Source
+from checker.model.fact import Source
 from checker.model.requirement import Need, Required, Spacing
 from checker.model.rule import Analysis, Board, Setting
 from checker.model.step import Step
 from checker.model.stress import Bounds, Stress, Voltage
 from checker.model.table import Table
-from checker.reporting_barriers import stress
-from checker.reporting_steps import Steps
 from checker.requirements.separations import APART, FUSE, MOST_EQUALS, POLES, grades, separations, sides, voltages
 
 DEMO = Path(__file__).resolve().parents[1] / "fixtures" / "designs" / "greenhouse"
@@ -207,18 +205,3 @@ def test_the_further_separations_have_the_shape_of_barriers(analysis):
 def test_surroundings_stand_in_the_report():
     report = api.verify(DEMO / "greenhouse.net", bom=[DEMO / "bom.csv"], declaration=DEMO / "declaration.yaml")
     assert report.environment == {"pollution_degree": "2", "altitude": 2000.0, "material_group": "IIIb", "ambient": 45.0}
-
-
-def test_bounds_as_the_report_shows_them():
-    steps = Steps()
-    bounds = Bounds(461.00000001, None, Step("swing", (Fact("rating", 1.0),)), kind="repetitive")
-    (one,) = stress([("Q1", None, "voltage", "", bounds)], steps)
-    assert (one.part, one.quantity, one.surely, one.never_above, one.kind, one.step) == (
-        "Q1",
-        "voltage",
-        461.0,
-        None,
-        "repetitive",
-        "s1",
-    )
-    assert steps.shown[0].text == "swing"

@@ -333,3 +333,13 @@ J2: {value: OUT, symbol: Conn_01x02, pins: {1: VO, 2: GND}}
     secondary = 1.3 * 9  # without load, as a small transformer may have it (stress.md 1, from memory)
     assert 230 <= found.rms.never_above <= 230 + 2 * secondary
     assert found.peak.never_above <= math.sqrt(2) * 230 + 3 * math.sqrt(2) * secondary
+
+
+def test_the_coil_of_a_mains_relay_carries_no_line_on():
+    parts = """
+K1: {value: RELAY 230VAC, symbol: Relay, pins: {A1: AC_L, A2: AC_N, 11: OUT1, 14: OUT2}}
+J5: {value: CONTACT, symbol: Screw_Terminal_01x02, pins: {1: OUT1, 2: OUT2}}
+"""
+    stress = analysis(ENTRY + parts).stress
+    assert stress.poles["AC_L"] == "AC_L"
+    assert stress.poles["AC_N"] == "AC_N"

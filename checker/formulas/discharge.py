@@ -8,6 +8,9 @@ Source: exponential decay of an RC circuit; worked examples b_ex07 to b_ex10 of 
 from __future__ import annotations
 
 import math
+from bisect import bisect_right
+
+E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2)  # IEC 60063, from memory
 
 
 def left(start: float, ohms: float, farads: float, seconds: float) -> float:
@@ -37,3 +40,14 @@ def most_ohms(start: float, farads: float, limit: float, seconds: float) -> floa
     1094
     """
     return seconds / (farads * math.log(start / limit)) if start > limit and farads > 0 else math.inf
+
+
+def usual_ohms(most: float) -> float:
+    """The largest resistance of the E12 series up to `most` ohm, which is above 0.
+
+    >>> usual_ohms(1094e3), usual_ohms(0.99e6)
+    (1000000.0, 820000.0)
+    """
+    decade = 10.0 ** math.floor(math.log10(most))
+    place = bisect_right(E12, most / decade * (1 + 1e-9))
+    return round(E12[place - 1] * decade, 9)

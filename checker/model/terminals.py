@@ -8,6 +8,7 @@ from checker.model.circuit import Part
 
 ANODE = frozenset({"A", "ANODE", "AN", "A1"})
 _NO_LIGHT = frozenset("E EM EMITTER B BASE COL COLLECTOR NC VCC VDD VO OUT GND VEE MT1 MT2 T1 T2 D D1 D2 S".split())
+COIL = frozenset({"A1", "A2", "COIL", "COIL1", "COIL2", "COIL+", "COIL-"})
 CATHODE = frozenset({"K", "C", "CATHODE", "CA", "KATHODE"})
 _PLUS = frozenset({"+", "V+", "DC+", "POS", "P", "+VE", "VDC+"})
 _MINUS = frozenset({"-", "V-", "DC-", "NEG", "-VE", "VDC-"})
@@ -50,6 +51,11 @@ def bridge(part: Part) -> tuple[str, str, tuple[str, ...]] | None:
         return None
     alternating = named(part, _ALTERNATING) or tuple(net for net in part.nets() if net not in (plus[0], minus[0]))
     return (plus[0], minus[0], alternating) if alternating else None
+
+
+def coil(part: Part) -> frozenset[str]:
+    """The nets on the coil of a relay, by numbers or names of its pins; empty where they say nothing."""
+    return frozenset(pin.net for pin in part.pins if pin.net is not None and {pin.number.upper(), pin.name.strip().upper()} & COIL)
 
 
 def light(part: Part) -> tuple[str, str] | None:

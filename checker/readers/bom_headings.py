@@ -40,8 +40,8 @@ _ALIASES = {
     "certifications safetystandard safetymark klasse sicherheitsklasse",
     "windings": "windings winding",
     "turns": "turns turn windingturns",
-    "rating:voltage": "voltage ratedvoltage ratedv vrated vrating voltagerating voltagerated workingvoltage capratedvoltage maxvoltage nominalvoltage "
-    "dcvoltage acvoltage spannung nennspannung bemessungsspannung",
+    "rating:voltage": "voltage ratedvoltage ratedv vrated vrating voltagerating voltagerated workingvoltage "
+    "capratedvoltage maxvoltage nominalvoltage dcvoltage acvoltage spannung nennspannung bemessungsspannung",
     "rating:current": "current ratedcurrent rateda irated currentrating maxcurrent nominalcurrent strom nennstrom",
     "rating:power": "power ratedpower ratedw prated powerrating maxpower wattage powerdissipation leistung",
     "rating:temperature": "temperature operatingtemperature temperaturerating temperaturerange maxtemperature tempmax "

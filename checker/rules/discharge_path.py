@@ -10,6 +10,7 @@ import re
 from collections import Counter
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
+from itertools import combinations
 
 import networkx as nx
 
@@ -18,29 +19,27 @@ from checker.model.entry import Entry
 from checker.model.fact import Fact
 from checker.model.rule import Analysis
 from checker.model.terminals import anode_and_cathode, coupler
+from checker.rules.discharge_means import Means, is_circuit, means
+from checker.rules.plug_conductors import CONTACTS, FUSES, behind, conductors
 
-_CONTACTS = frozenset({"switch", "relay", "solid-state-relay", "triac"})
-_FUSES = frozenset({"fuse", "resettable-fuse"})
-_WIRES = frozenset("jumper net-tie thermistor inductor ferrite common-mode-choke filter current-transformer hall-sensor".split())
-_LOADS = frozenset({"lamp", "motor"})
 _LIGHTLY = frozenset({"capacitor", "test-point", "controller", "ic", "optocoupler", "led", "diode", "zener", "bridge"})
 _BOTH_WAYS = re.compile(r"bi-?dir|ac[ -]?input|ac[ -]?eingang|(?<![0-9])814(?![0-9])|h11aa|(?<![0-9])620(?![0-9])", re.IGNORECASE)
-_DISCHARGER = re.compile(
-    r"x[\s-]?cap(?:acitor)?s?\s+discharg|discharg\w*\s+(?:of\s+)?(?:the\s+)?x[\s-]?cap|active discharge", re.IGNORECASE
-)
+_LINK = 1e-3  # ohm; what a resistor of 0 ohm has (common practice, no source)
+NOISE = 1e-9  # part of a conductance that is arithmetic of floats
 CAPACITOR, RESISTOR = 20.0, 5.0  # %; tolerances when none is stated: the widest usual ones (common practice, no source)
-WIRE = 100.0  # ohm; at most this much in a line conductor carries the line on (common practice, no source)
 
 
 @dataclass(frozen=True, slots=True)
 class Element:
-    """A capacitor [F] or resistor [ohm] between two conductors. value: None when not read; spread: its tolerance as a ratio."""
+    """A capacitor [F] or resistor [ohm] between two conductors. value: None when not read; spread: its tolerance as a ratio,
+    the usual one where none is stated."""
 
     ref: str
     ends: tuple[str, str]
     value: float | None
     spread: float
     facts: tuple[Fact, ...]
+    stated: bool = True
 
     def at(self, sign: int) -> float:
         return (self.value or 0.0) * (1 + sign * self.spread)
@@ -56,33 +55,32 @@ class Way:
     def branches(self, sign: int, without: str, node: Callable[[str], str]) -> Iterator[tuple[str, str, float]]:
         """(node, node, conductance) of each resistor at that end of its tolerance."""
         for one in self.resistors:
-            ohms = one.at(sign)
-            if one.ref != without and ohms > 0:
-                yield node(one.ends[0]), node(one.ends[1]), 1 / ohms
+            if one.ref != without and one.value is not None:
+                yield node(one.ends[0]), node(one.ends[1]), 1 / max(one.at(sign), _LINK)
 
 
 @dataclass(frozen=True, slots=True)
 class Wiring:
     """What hangs on the line conductors of an entry with every contact closed.
 
-    closed: net -> the pin it is one conductor with. windings, loads: with the two nets they lie between. known: conductances
-    that were worked out, by way and end of the tolerance; they are the same in every state that leaves the way whole.
+    closed: net -> the pin it is one conductor with. means: what else joins them. known: conductances that were worked out, by
+    way and end of the tolerance; they are the same in every state that leaves the way whole. joint: with more than two poles
+    ways share the other poles, so that they count together only.
     """
 
-    pins: tuple[str, str]
     closed: Mapping[str, str]
     capacitors: tuple[Element, ...]
     ways: tuple[Way, ...]
-    windings: Mapping[str, frozenset[str]]
-    loads: Mapping[str, frozenset[str]]
-    dischargers: tuple[str, ...]
+    means: tuple[Means, ...]
     one_way: tuple[str, ...]
+    joint: bool
     known: dict[tuple[int, int], float] = field(default_factory=dict, compare=False)
 
 
 @dataclass(frozen=True, slots=True)
 class Plug:
-    """The pins of an entry in one state. text: the state, "" for all contacts closed; opened: what is open.
+    """Two pins of an entry in one state. text: the state, "" for all contacts closed; opened: what is open; fault: whether it is
+    a fuse that has blown.
 
     one: net -> pin, for the conductors still on the pins. The rest is what of the wiring is on them: capacitors with charge, ways
     that take it, and what else does.
@@ -93,16 +91,17 @@ class Plug:
     one: Mapping[str, str]
     capacitors: tuple[Element, ...]
     ways: tuple[Way, ...]
-    windings: tuple[str, ...] = ()
-    loads: tuple[str, ...] = ()
-    dischargers: tuple[str, ...] = ()
+    means: tuple[Means, ...] = ()
     opened: tuple[str, ...] = ()
+    fault: bool = False
     one_way: tuple[str, ...] = ()
+    joint: bool = False
     known: dict[tuple[int, int], float] = field(default_factory=dict, compare=False)
 
     @property
     def resistors(self) -> tuple[Element, ...]:
-        return tuple(one for way in self.ways if all(end in self.one for end in way.ends) for one in way.resistors)
+        """Those of ways from pin to pin."""
+        return tuple(one for way in self.ways if len({self.one.get(end) for end in way.ends} - {None}) > 1 for one in way.resistors)
 
     def capacitance(self, sign: int) -> float:
         """F between the pins, every capacitor at that end of its tolerance; those that meet elsewhere in series."""
@@ -110,21 +109,38 @@ class Plug:
         direct = sum(value for one, other, value in branches if {one, other} == set(self.pins))
         return direct + _between(self.pins, (branch for branch in branches if not {branch[0], branch[1]} <= set(self.pins)))
 
-    def ohms(self, sign: int, without: str = "") -> float:
+    def ohms(self, sign: int) -> float:
         """ohm between the pins, every resistor at that end of its tolerance; inf without a way."""
         conductance, apart = 0.0, list[tuple[str, str, float]]()
         for way in self.ways:
-            if not all(end in self.one for end in way.ends):  # it shares a conductor behind an open contact with others
-                apart += way.branches(sign, without, self._node)
-            elif any(one.ref == without for one in way.resistors):
-                conductance += _between(self.pins, way.branches(sign, without, self._node))
+            if self._is_alone(way):
+                conductance += self._of_way(way, sign)
             else:
-                key = id(way), sign
-                if key not in self.known:
-                    self.known[key] = _between(self.pins, way.branches(sign, "", self._node))
-                conductance += self.known[key]
+                apart += way.branches(sign, "", self._node)
         conductance += _between(self.pins, apart) if apart else 0.0
         return 1 / conductance if conductance > 0 else math.inf
+
+    def each_open(self) -> Iterator[tuple[Element, float]]:
+        """(resistor, ohm between the pins with that one open, all others at the upper end of their tolerance)."""
+        whole = self.ohms(1)
+        for way in self.ways:
+            for one in way.resistors if len({self.one.get(end) for end in way.ends} - {None}) > 1 else ():
+                if self._is_alone(way):
+                    rest = 1 / whole - self._of_way(way, 1) + _between(self.pins, way.branches(1, one.ref, self._node))
+                else:
+                    rest = _between(self.pins, [branch for other in self.ways for branch in other.branches(1, one.ref, self._node)])
+                yield one, 1 / rest if rest * whole > NOISE else math.inf
+
+    def _is_alone(self, way: Way) -> bool:
+        """Whether a way ends on the pins alone; else it shares a conductor with others."""
+        return not self.joint and all(end in self.one for end in way.ends)
+
+    def _of_way(self, way: Way, sign: int) -> float:
+        """The conductance of a way between the pins, worked out once."""
+        key = id(way), sign
+        if key not in self.known:
+            self.known[key] = _between(self.pins, way.branches(sign, "", self._node))
+        return self.known[key]
 
     def _node(self, net: str) -> str:
         return self.one.get(net, net)
@@ -137,26 +153,31 @@ def _between(pins: tuple[str, str], branches: Iterable[tuple[str, str, float]]) 
 def plugs(analysis: Analysis, entry: Entry) -> Iterator[Plug]:
     """The pins of an entry with all contacts closed, then with each switch and each fuse of its conductors open.
 
-    An entry with other than two poles gives nothing: which pins a hand reaches first is not settled here.
+    Of more than two poles every two: the capacitors and resistors to the others count as a network without current at them,
+    which is exact where the two networks are alike, as on a balanced line.
     """
-    if len(entry.poles) != 2:
+    if len(entry.poles) < 2:
         return
-    tree = _conductors(analysis, entry)
-    wiring = _wiring(analysis, entry, {net: pin for net, (pin, _, _) in tree.items()})
-    whole = _plug(wiring, wiring.closed, "", ())
-    yield whole
-    capacitance, conductance = whole.capacitance(1), 1 / whole.ohms(1)
+    found = conductors(analysis, entry)
+    wiring = _wiring(analysis, entry, found.pin)
+    apart = [
+        (ref, behind(analysis, found, ref))
+        for ref in dict.fromkeys(ref for _, ref in found.before.values() if ref)
+        if analysis.kind(ref) in CONTACTS | FUSES
+    ]
     held = _by_end((one.ends, one.at(1)) for one in wiring.capacitors)
-    taken = _by_end((way.ends, wiring.known.get((id(way), 1), 0.0)) for way in wiring.ways)
-    for ref in dict.fromkeys(through for _, _, through in tree.values()):
-        kind = analysis.kind(ref) if ref else ""
-        gone = _behind(analysis, tree, ref) if kind in _CONTACTS | _FUSES else frozenset()
-        lost, missed = (_sum_at(table, gone) for table in (taken, held))
-        # what goes with its own capacitors leaves the rest no slower than before
-        other = any(not nets.isdisjoint(gone) for nets in (*wiring.windings.values(), *wiring.loads.values()))
-        if gone and (other or lost * capacitance > missed * conductance):
-            apart = {net: pin for net, pin in wiring.closed.items() if net not in gone}
-            yield _plug(wiring, apart, f"{ref} {'open' if kind in _CONTACTS else 'blown'}", (ref,))
+    for pins in combinations(entry.poles, 2):
+        whole = _plug(wiring, pins, wiring.closed)
+        yield whole
+        capacitance, conductance = whole.capacitance(1), 1 / whole.ohms(1)
+        taken = _by_end((way.ends, wiring.known.get((id(way), 1), 0.0)) for way in wiring.ways)
+        for ref, gone in apart:
+            lost, missed = (_sum_at(table, gone) for table in (taken, held))
+            # what goes with its own capacitors leaves the rest no slower than before
+            other = wiring.joint or any(not one.ends.isdisjoint(gone) for one in wiring.means)
+            if gone and (other or lost * capacitance > missed * conductance):
+                left = {net: pin for net, pin in wiring.closed.items() if net not in gone}
+                yield _plug(wiring, pins, left, ref, analysis.kind(ref) in FUSES)
 
 
 def _by_end(found: Iterable[tuple[Iterable[str], float]]) -> dict[str, list[tuple[int, float]]]:
@@ -175,95 +196,41 @@ def _sum_at(table: Mapping[str, list[tuple[int, float]]], nets: Iterable[str]) -
 
 def _wiring(analysis: Analysis, entry: Entry, closed: Mapping[str, str]) -> Wiring:
     lit, half = _lights(analysis, closed)
-    inner = _inner(analysis, closed)
-    capacitors, resistors, dischargers = [], [], []
-    across: dict[str, dict[str, frozenset[str]]] = {"transformer": {}, "load": {}}
+    inner = _inner(analysis, closed) | frozenset(entry.earth)
+    capacitors, resistors = [], []
     for ref, candidate in analysis.choice.items():
         part = analysis.design.parts[ref]
         nets = part.nets()
-        if not part.fitted:
+        if not part.fitted or len(nets) != 2:
             continue
-        if candidate.kind == "capacitor" and len(nets) == 2 and _charged(analysis, nets, closed):
+        if candidate.kind == "capacitor" and _charged(analysis, nets, closed) and not is_circuit(analysis, ref):
             capacitors.append(_element(analysis, ref, (nets[0], nets[1]), CAPACITOR))
-        elif candidate.kind == "resistor" and len(nets) == 2 and all(net in closed or net in inner for net in nets):
+        elif candidate.kind == "resistor" and all(net in closed or net in inner for net in nets):
             resistors.append(_element(analysis, ref, (lit.get(nets[0], nets[0]), lit.get(nets[1], nets[1])), RESISTOR))
-        elif candidate.kind == "transformer" or candidate.kind in _LOADS:
-            across["transformer" if candidate.kind == "transformer" else "load"][ref] = frozenset(
-                net for net in nets if net in closed
-            )
-        if _DISCHARGER.search(_texts(analysis, ref)):
-            dischargers.append(ref)
     return Wiring(
-        pins=(entry.poles[0], entry.poles[1]),
         closed=closed,
         capacitors=tuple(capacitors),
         ways=tuple(_ways(resistors, closed)),
-        windings=across["transformer"],
-        loads=across["load"],
-        dischargers=tuple(dischargers),
+        means=tuple(means(analysis, closed)),
         one_way=_one_way(resistors, closed, half),
+        joint=len(entry.poles) > 2,
     )
 
 
-def _plug(wiring: Wiring, one: Mapping[str, str], text: str, opened: tuple[str, ...]) -> Plug:
-    def on_pins(nets: Iterable[str]) -> bool:
-        return {one[net] for net in nets if net in one} == set(wiring.pins)
-
+def _plug(wiring: Wiring, pins: tuple[str, str], one: Mapping[str, str], opened: str = "", blown: bool = False) -> Plug:
     return Plug(
-        text=text,
-        pins=wiring.pins,
+        text=f"{opened} {'blown' if blown else 'open'}" if opened else "",
+        pins=pins,
         one=one,
         capacitors=tuple(c for c in wiring.capacitors if all(end in one or end not in wiring.closed for end in c.ends)),
         ways=tuple(way for way in wiring.ways if any(end in one for end in way.ends)),
-        windings=tuple(ref for ref, nets in wiring.windings.items() if on_pins(nets)),
-        loads=tuple(ref for ref, nets in wiring.loads.items() if on_pins(nets)),
-        dischargers=wiring.dischargers,
-        opened=opened,
+        means=tuple(found for found in wiring.means if found.joins(pins, one)),
+        opened=(opened,) if opened else (),
+        fault=blown,
         one_way=wiring.one_way,
+        joint=wiring.joint,
         known=wiring.known,
     )
-
-
-def _conductors(analysis: Analysis, entry: Entry) -> dict[str, tuple[str, str, str]]:
-    """Net -> (the pin it is one conductor with, the net before it, the part that carries it on) with every contact closed.
-
-    A part for both poles carries each pole on to the nets of that pole.
-    """
-    found = {pole: (pole, "", "") for pole in entry.poles}
-    queue = list(entry.poles)
-    poles = analysis.stress.poles
-    for net in queue:
-        for ref in analysis.fitted_on(net):
-            if _carries(analysis, ref):
-                for other in analysis.design.parts[ref].nets():
-                    if other not in found and poles.get(other) == poles.get(net) and other in poles:
-                        found[other] = (found[net][0], net, ref)
-                        queue.append(other)
-    return found
-
-
-def _behind(analysis: Analysis, tree: Mapping[str, tuple[str, str, str]], ref: str) -> frozenset[str]:
-    """The conductors that an open contact takes off the pins; none when another part still carries them."""
-    starts = [net for net in analysis.design.parts[ref].nets() if net in tree and tree[net][2] == ref]
-    gone = dict.fromkeys(starts)
-    queue = list(starts)
-    for net in queue:
-        for other_ref in analysis.fitted_on(net):
-            if other_ref == ref or not _carries(analysis, other_ref):
-                continue
-            for other in analysis.design.parts[other_ref].nets():
-                if other in tree and tree[other][0] == tree[net][0] and other not in gone:
-                    if tree[other][1] not in gone:  # reached from elsewhere: the contact is not the only way
-                        return frozenset()
-                    gone[other] = None
-                    queue.append(other)
-    return frozenset(gone)
-
-
-def _carries(analysis: Analysis, ref: str) -> bool:
-    kind, value = analysis.kind(ref), analysis.choice[ref].value
-    small = kind == "resistor" and value is not None and float(value.value) <= WIRE
-    return kind in _WIRES or kind in _CONTACTS or kind in _FUSES or small
 
 
 def _one_way(resistors: list[Element], closed: Mapping[str, str], half: Mapping[tuple[str, str], list[str]]) -> tuple[str, ...]:
@@ -335,8 +302,9 @@ def _lights(analysis: Analysis, one: Mapping[str, str]) -> tuple[dict[str, str],
         if ends is None or all(end in one for end in ends):
             continue
         key = (min(ends), max(ends))
+        texts = " ".join(part.text(name) for name in ("value", "description", "symbol"))
         refs.setdefault(key, []).append(ref)
-        ways.setdefault(key, set()).update({True, False} if _BOTH_WAYS.search(_texts(analysis, ref)) else {ends == key})
+        ways.setdefault(key, set()).update({True, False} if _BOTH_WAYS.search(texts) else {ends == key})
     lit = {one.get(high, high): one.get(low, low) for (low, high), found in ways.items() if len(found) == 2 and high not in one}
     lit |= {low: one[high] for (low, high), found in ways.items() if len(found) == 2 and high in one}
     return lit, {key: refs[key] for key, found in ways.items() if len(found) == 1}
@@ -357,14 +325,9 @@ def _light_ends(analysis: Analysis, ref: str) -> tuple[str, str] | None:
 
 def _element(analysis: Analysis, ref: str, ends: tuple[str, str], usual: float) -> Element:
     candidate = analysis.choice[ref]
-    spread = usual
-    if candidate.tolerance is not None and candidate.tolerance.unit == "%":
-        spread = float(candidate.tolerance.value)
+    tolerance = candidate.tolerance
+    stated = tolerance is not None and tolerance.unit == "%"
+    spread = float(tolerance.value) if tolerance is not None and stated else usual
     facts = tuple(fact for fact in (candidate.value, candidate.tolerance) if fact is not None) or (analysis.design.parts[ref].fact,)
     value = float(candidate.value.value) if candidate.value is not None else None
-    return Element(ref, ends, value, spread / 100, facts)
-
-
-def _texts(analysis: Analysis, ref: str) -> str:
-    part = analysis.design.parts[ref]
-    return " ".join(part.text(name) for name in ("value", "description", "symbol"))
+    return Element(ref, ends, value, spread / 100, facts, stated)

@@ -2,18 +2,22 @@
 
 A capacitor between two poles of the mains burns when it fails short and nothing clears it, so IEC 60384-14 has classes for that
 place: X1 and X2, and the Y classes serve as well (X3 is withdrawn and still in old designs). Judged are capacitors between two
-poles, directly or with a resistor in series (a snubber, a dropper), and those across a contact in the line, at level warning.
+poles, directly or with a resistor in series (a snubber), those in series with a rectifier that the line feeds without a
+transformer (a dropper), and those across a contact in the line, at level warning.
 
-Class: pass when one is marked; fail when none is and what is said of the part (a direct voltage, and no class) shows an ordinary
-capacitor; open when nothing but a value is said, or an alternating voltage without a class. Voltage: the rated alternating
-voltage covers the rated mains voltage, without tolerance. Place: a capacitor ahead of the fuse is accepted when its class is
-marked, and told; without a class nothing clears it, and the fail says so.
+Class: pass when one is marked; fail when none is and what is said of the part (a rated voltage, and no class) shows an ordinary
+capacitor; open when nothing but a value is said, and when an alternating voltage, a voltage that only such parts have (275 V)
+or a word such as "suppression" speaks for a class that is not named. Voltage: the rated alternating voltage covers the rated mains
+voltage, without tolerance. Place: a capacitor ahead of the fuse is accepted when its class is marked, and told; without a
+class nothing clears it, and the fail says so.
 
 To settle it: BOM columns `Class` and `Voltage`, or `marks: [X2]` and `ratings: {voltage: 275 V rms}` in a parts file.
 """
 
 from __future__ import annotations
 
+import math
+import re
 from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Annotated
@@ -25,11 +29,17 @@ from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Change, Limit, Missing, Number, Remedy, Verdict, Words
 from checker.parameters import TextSet
+from checker.rules.dropper import MOST, dropper
 from checker.rules.fuse_path import toward_fuse
 
 _USUAL = (125.0, 150.0, 250.0, 275.0, 305.0, 310.0, 440.0, 480.0)  # V r.m.s., ratings of class X parts on the market
+# V; figures that class X and Y parts have for alternating voltage; 250 and 300 V are usual d.c. ratings too, so not sure
+_PERHAPS_AC = frozenset({250.0, 275.0, 300.0, 305.0, 310.0, 330.0, 440.0, 480.0, 760.0})
+_FOR_SAFETY = re.compile(r"safety|suppress|interference|(?<![a-z])emi(?![a-z])|entst(?:ö|oe)r", re.IGNORECASE)
 _LEAST_MAINS = 100.0  # V r.m.s., the lowest mains there is
 _CONTACTS = frozenset({"relay", "switch", "triac", "solid-state-relay"})
+_LOADS = frozenset({"connector", "inlet", "lamp", "motor", "transformer"})
+_SMALL = 60.0  # V peak; a capacitor with less on it lies beside the contact, on a low-voltage supply (common practice, no source)
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,11 +51,13 @@ class Params:
 
 @dataclass(frozen=True, slots=True)
 class _Place:
-    """between: where it lies, for people; contact: across a contact of one pole; before: the fuse it stands ahead of, or ""."""
+    """where: for people, such as "between AC_L and AC_N"; contact: across a contact of one pole; before: the fuse it stands
+    ahead of, or ""; across: the nets whose voltage it has on it."""
 
-    between: str
+    where: str
     contact: bool
     before: str
+    across: tuple[str, ...]
 
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
@@ -67,15 +79,34 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
 def _place(analysis: Analysis, ref: str, ahead: dict[str, str]) -> _Place | None:
     nets = analysis.design.parts[ref].nets()
     ends = [_pole(analysis, ref, net) for net in nets]
-    if ends[0] is None or ends[1] is None:
+    if ends[0] is None and ends[1] is None:
         return None
-    if ends[0] != ends[1]:
+    if ends[0] != ends[1] and None not in ends:
         before = next((ahead[net] for net in nets if net in ahead), "")
-        return _Place(f"{nets[0]} and {nets[1]}", False, before if ref in _direct(analysis, nets) else "")
-    # across a contact: a resistor may stand in series with it
-    refs = {other for net in _around(analysis, ref, nets) for other in analysis.fitted_on(net) if analysis.kind(other) in _CONTACTS}
-    spans = [c for c in refs if len(set(analysis.design.parts[c].nets()) & set(_around(analysis, ref, nets))) > 1]
-    return _Place(f"the contact of {spans[0]}", True, "") if spans else None
+        return _Place(f"between {nets[0]} and {nets[1]}", False, before if ref in _direct(analysis, nets) else "", nets)
+    contact = _contact(analysis, ref, nets)
+    if contact is not None:
+        return _Place(f"across the contact of {contact}", True, "", nets)
+    found = dropper(analysis, ref)
+    if found is None:
+        return None
+    where = f"between {found.near} and rectifier {found.rectifier} (which leads to {found.base})"
+    return _Place(where, False, ahead.get(found.near, ""), (found.near, found.base))
+
+
+def _contact(analysis: Analysis, ref: str, nets: tuple[str, ...]) -> str | None:
+    """The contact in a line conductor that a capacitor lies across, itself or with a resistor in series. Behind the contact is
+    the line again or a load, not the coil or the gate, to which a capacitor beside the contact leads as well."""
+    poles, around = analysis.stress.poles, _around(analysis, ref, nets)
+    supply = analysis.stress.between(*nets) if not poles.keys() >= set(nets) else None
+    if supply is not None and supply.peak.never_above is not None and supply.peak.never_above < _SMALL:
+        return None
+    for name in dict.fromkeys(other for net in around for other in analysis.fitted_on(net) if analysis.kind(other) in _CONTACTS):
+        spanned = set(analysis.design.parts[name].nets()) & set(around)
+        loads = (net for net in spanned if net not in poles)
+        if len(spanned) > 1 and all(any(analysis.kind(load) in _LOADS for load in analysis.fitted_on(net)) for net in loads):
+            return name
+    return None
 
 
 def _direct(analysis: Analysis, nets: tuple[str, ...]) -> tuple[str, ...]:
@@ -94,9 +125,12 @@ def _around(analysis: Analysis, ref: str, nets: tuple[str, ...]) -> tuple[str, .
 
 
 def _series(analysis: Analysis, ref: str, net: str) -> str | None:
-    """The one resistor that hangs on a net beside a capacitor."""
+    """The one resistor that hangs on a net beside a capacitor; None where it is so large that it has the voltage itself."""
     others = [other for other in analysis.fitted_on(net) if other != ref and analysis.kind(other) != "test-point"]
-    return others[0] if len(others) == 1 and analysis.kind(others[0]) == "resistor" else None
+    if len(others) != 1 or analysis.kind(others[0]) != "resistor":
+        return None
+    value = analysis.choice[others[0]].value
+    return others[0] if value is None or float(value.value) <= MOST else None
 
 
 def _pole(analysis: Analysis, ref: str, net: str) -> str | None:
@@ -129,17 +163,19 @@ def _of_class(analysis: Analysis, clause: Clause, ref: str, candidate: Candidate
     said: tuple[Fact, ...] = tuple(one.fact for one in candidate.marks) or tuple(fact for fact in (rating,) if fact is not None)
     if mark is not None:
         where = f", ahead of fuse {place.before}" if place.before else ""
-        because = f"{ref} lies between {place.between}{where} and is marked {mark.name}"
+        old = ", a class that is withdrawn: X2 is its place in a new design" if mark.name == "X3" else ""
+        because = f"{ref} lies {place.where}{where} and is marked {mark.name}{old}"
         step = Step(because, (part.fact, *said))
         return clause.passes(subject, what, because, step, found=Words(mark.name), limit=wanted, **level)
     text = part.text("description") or part.text("value")
-    step = Step(f"{ref} lies between {place.between}; no class is stated: {text}", (part.fact, *said))
-    if rating is not None and rating.form != "rms":
-        because = f"{ref} lies between {place.between} and is an ordinary capacitor for {float(rating.value):g} V: {text}"
+    hinted = _FOR_SAFETY.search(" ".join(part.text(name) for name in ("value", "description", "symbol"))) is not None
+    step = Step(f"{ref} lies {place.where}; no class is stated: {text}", (part.fact, *said))
+    if rating is not None and rating.form != "rms" and not hinted and not _perhaps_ac(rating):
+        because = f"{ref} lies {place.where} and is an ordinary capacitor for {float(rating.value):g} V: {text}"
         if place.before:
             because += f"; it stands ahead of fuse {place.before}, which cannot clear it"
         remedy = Remedy(
-            f"{ref} of class X2", (Change(ref, "mark", "X2"), Change(ref, "rating:voltage", _usual(analysis), "V", "rms"))
+            f"{ref} of class X2", (Change(ref, "mark", "X2"), Change(ref, "rating:voltage", _usual(analysis, place), "V", "rms"))
         )
         return clause.fails(
             subject, "A capacitor across the line has no safety class.", because, step, found=Words("no class"), limit=wanted,
@@ -150,24 +186,29 @@ def _of_class(analysis: Analysis, clause: Clause, ref: str, candidate: Candidate
     return clause.opens(subject, what, step.text, step, missing, found=Words("no class stated"), limit=wanted, **level)
 
 
+def _perhaps_ac(rating: Fact) -> bool:
+    """Whether a voltage of which nobody says the form may be the alternating voltage of a class X or Y part."""
+    return rating.form == "" and float(rating.value) in _PERHAPS_AC
+
+
 def _of_voltage(analysis: Analysis, clause: Clause, ref: str, candidate: Candidate, place: _Place) -> Verdict:
     part, rating = analysis.design.parts[ref], candidate.ratings.get("voltage")
     mains = analysis.setting.mains
-    volts = analysis.setting.mains_voltage(tolerance=False) or 0.0
+    volts = _volts(analysis, place)
     subject = Subject((ref,), part.nets(), (ref, "voltage"))
     what = "Rated voltage of a capacitor across the line."
     level = {"level": "warning"} if place.contact or rating is None else {}
-    crest = Step(f"rated mains voltage {volts:g} V", analysis.setting.facts, result=volts, unit="V", form="rms")
+    crest = Step(f"rated mains voltage {volts:.4g} V", analysis.setting.facts, result=volts, unit="V", form="rms")
     limit = Limit(volts, "V", "rms", "at-least", clause.verified)
-    then = ((f"{volts:g} V a.c. or more", "pass"), (f"below {volts:g} V a.c.", "fail"))
+    then = ((f"{volts:.4g} V a.c. or more", "pass"), (f"below {volts:.4g} V a.c.", "fail"))
     missing = Missing("rated alternating voltage", "BOM column Voltage, or ratings in a parts file", then, ref)
     if rating is None or rating.form == "dc":
         said = "states no voltage" if rating is None else f"states {float(rating.value):g} V d.c. only"
-        step = Step(f"{ref} between {place.between} {said}", (part.fact, crest))
+        step = Step(f"{ref} {place.where} {said}", (part.fact, crest))
         return clause.opens(subject, what, step.text, step, missing, limit=limit, **level)
     stated = float(rating.value)
     found = Number(stated, "V", "rms")
-    because = f"{ref} between {place.between} is rated {stated:g} V a.c., the supply {volts:g} V"
+    because = f"{ref} {place.where} is rated {stated:g} V a.c., the supply {volts:.4g} V"
     step = Step(because, (rating, crest), result=stated, unit="V", form="rms")
     if stated >= volts:
         return clause.passes(subject, what, because, step, found=found, limit=limit, margin=(stated - volts) / volts, **level)
@@ -178,7 +219,8 @@ def _of_voltage(analysis: Analysis, clause: Clause, ref: str, candidate: Candida
         )  # fmt: skip
         return clause.opens(subject, what, because, step, missing, found=found, limit=limit, **level)
     remedy = Remedy(
-        f"{ref} rated {_usual(analysis):g} V a.c. or more", (Change(ref, "rating:voltage", _usual(analysis), "V", "rms"),)
+        f"{ref} rated {_usual(analysis, place):g} V a.c. or more",
+        (Change(ref, "rating:voltage", _usual(analysis, place), "V", "rms"),),
     )
     return clause.fails(
         subject, "A capacitor across the line is rated below the mains.", because, step, found=found, limit=limit,
@@ -186,9 +228,18 @@ def _of_voltage(analysis: Analysis, clause: Clause, ref: str, candidate: Candida
     )  # fmt: skip
 
 
-def _usual(analysis: Analysis) -> float:
-    """The next usual rating from the rated mains voltage on, V r.m.s."""
-    volts = analysis.setting.mains_voltage(tolerance=False) or 0.0
+def _volts(analysis: Analysis, place: _Place) -> float:
+    """The rated mains voltage on the capacitor, V r.m.s.: of three phases less where it lies between a line and the neutral."""
+    mains, volts = analysis.setting.mains, analysis.setting.mains_voltage(tolerance=False) or 0.0
+    neutrals = {entry.neutral for entry in analysis.stress.entries.values()}
+    ends = {analysis.stress.poles.get(net, net) for net in place.across}
+    star = mains is not None and mains.phases == 3 and not ends.isdisjoint(neutrals) and len(ends) > 1
+    return volts / math.sqrt(3) if star else volts
+
+
+def _usual(analysis: Analysis, place: _Place) -> float:
+    """The next usual rating from that voltage on, V r.m.s."""
+    volts = _volts(analysis, place)
     return next((usual for usual in _USUAL if usual >= volts), volts)
 
 

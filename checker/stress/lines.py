@@ -10,6 +10,7 @@ from checker.formulas.waveform import Wave, sine
 from checker.model.entry import Entry
 from checker.model.rule import Board
 from checker.model.step import Step
+from checker.model.terminals import coil
 from checker.stress.potential import SERIES, Potential
 
 _TWO_ENDS = frozenset(
@@ -47,7 +48,10 @@ def poles(board: Board, entries: Iterable[Entry]) -> dict[str, str]:
 def _beyond(board: Board, ref: str, net: str) -> Iterator[str]:
     """The net that a part with two ends carries the conductor `net` on to."""
     part, kind = board.design.parts[ref], board.kind(ref)
-    nets = [other for other in part.nets() if other != net and _on_mains(board, other)]
+    wound = coil(part) if kind == "relay" else frozenset()
+    nets = [other for other in part.nets() if other != net and other not in wound and _on_mains(board, other)]
+    if net in wound:
+        return
     if len(nets) == 1 and (kind in _CONTACTS or (len(part.nets()) == 2 and (kind in _TWO_ENDS or _in_series(board, ref)))):
         if kind == "inductor" and any(board.kind(other) in _SWITCHES for other in board.fitted_on(nets[0])):
             return
