@@ -97,7 +97,9 @@ def test_exactly_one_netlist(readings):
 
 
 MACHINE = "|Net-(R1-Pad1)|/Net-(U1-K)|N-000012|unconnected-(J1-Pad3)|unnamed_net7|<unnamed:12>|N$12|NetR1_2|$1N23|17".split("|")
-PERSON = "GND|/A/OUT|Net|NetGND|N|+5V|L1|3V3|N12|NET_A".split("|")
+# as forms write them that keep the first or the last characters, in capitals
+MACHINE += "NET-(D5-K)|NET-(R100-PAD1|TED-(U1-PAD15)|(U2-3V3-PAD12)|D4{SLASH}SDA)|2-3V3-PAD12)_1|n-000012|UNNAMED_NET7".split("|")
+PERSON = "VOUT(5V)|GND|/A/OUT|Net|NetGND|N|+5V|L1|3V3|N12|NET_A".split("|")
 
 
 @pytest.mark.parametrize("name", MACHINE + PERSON)
@@ -369,8 +371,8 @@ def test_too_many_choices():
     assert len(joined(netlist([part("C1")]), bom(*rows[:-1])).parts["C1"].alternates) == limits.ALTERNATES - 1
 
 
-@pytest.mark.parametrize("variant, value", [(None, "10k"), ("short", "10k"), ("long", "22k")])
-def test_tables_of_one_file(variant, value):
+@pytest.mark.parametrize("variant, value, out", [(None, "10k", ()), ("short", "10k", ("Q1",)), ("long", "22k", ("C1",))])
+def test_tables_of_one_file(variant, value, out):
     rows = (
         row("R1 C1", 2, table="short", value="10k"),
         row("R1", 8, table="long", value="22k"),
@@ -378,7 +380,8 @@ def test_tables_of_one_file(variant, value):
     )
     design = joined(netlist([part("R1"), part("C1"), part("Q1")]), bom(*rows), variant=variant)
     assert [design.parts[ref].text("value") for ref in ("R1", "C1", "Q1")] == [value, "10k", "t"]
-    assert notes(design) == [("skipped", ("R1",))]
+    assert notes(design) == [("skipped", ("R1",)), *([("skipped", out)] if out else [])]
+    assert tuple(ref for ref, made in design.parts.items() if not made.fitted) == out
     assert design.variants == ("short", "long")
 
 

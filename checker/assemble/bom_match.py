@@ -7,7 +7,8 @@ from collections.abc import Iterator, Mapping, Sequence
 from functools import lru_cache
 
 from checker import limits
-from checker.assemble.draft import Book, Draft, row_fitted
+from checker.assemble.draft import Book, Draft, row_fitted, statement
+from checker.assemble.variants import beside, of_columns
 from checker.errors import InputError
 from checker.model.fact import Fact, Source
 from checker.model.reading import Note, Reading, Row
@@ -42,7 +43,8 @@ _WORDS = re.compile(r"[A-Z]+(?![a-z])|[A-Z]?[a-z]+|[0-9]+")
 def match_bom(book: Book, reading: Reading, variant: str | None, cut: int = 0) -> list[Note]:
     """Put the facts of every row on the parts it names; notes in row order.
 
-    Of several tables of one file that list a reference, the one whose caption is `variant` counts, else the first.
+    Of several tables of one file that list a reference, the one whose caption is `variant` counts, else the first; parts
+    that only a table beside the chosen one lists are left out. What the columns of a variant say is forced.
     cut: how many characters of a reference the netlist keeps, 0 for all of them.
     Raises InputError when a part has more than limits.ALTERNATES choices.
     """
@@ -72,8 +74,11 @@ def match_bom(book: Book, reading: Reading, variant: str | None, cut: int = 0) -
             for draft in drafts:
                 notes.extend(_add(draft, row))
                 draft.rows.append((flag, row))
-        notes.extend(_quantity(row, refs))
+        notes.extend((*_quantity(row, refs), *_nothing_fitted(row, refs)))
     notes.extend(_other_table(table, places, counts) for table, places in passed.items())
+    if variant is not None and variant in counts.values():
+        notes.extend(beside(book, resolved, variant, counts))
+    notes.extend(of_columns(book, reading, variant, short))
     return notes
 
 
@@ -182,6 +187,15 @@ def _quantity(row: Row, refs: Sequence[str]) -> Iterator[Note]:
         return
     text = f"the quantity is {fact.value:g} and the row lists {len(refs):,} references ({row.source})"
     yield Note("quantity-differs", text, (fact.source,), tuple(refs))
+
+
+def _nothing_fitted(row: Row, refs: Sequence[str]) -> Iterator[Note]:
+    """A quantity of nothing beside words that say `fitted`."""
+    none = next((fact for fact in row.facts if fact.attribute == "quantity" and fact.value == 0), None)
+    said = next((fact for fact in row.facts if fact.attribute == "fitted" and fact.value is True and fact.text), None)
+    if none is not None and said is not None and refs:
+        text = f"the quantity is 0 and the row says {neutral(statement(said), 80)}; taken as fitted"
+        yield Note("fitted-differs", text, (none.source, said.source), tuple(refs))
 
 
 def _other_table(table: str, places: dict[str, Source], counts: dict[str, str]) -> Note:

@@ -11,10 +11,11 @@ from dataclasses import dataclass
 from checker import limits
 from checker.errors import InputError
 from checker.neutral import neutral
+from checker.readers import bom_choices, bom_variants
 from checker.readers import bom_headings as headings
+from checker.readers.bom_sections import Record, says_absent
+from checker.readers.bom_variants import VariantColumn
 from checker.readers.references import look_like_references
-
-Record = tuple[int, list[str]]
 
 HEADER_ROWS = 40  # a header further down is not looked for
 _TABLES = 1_000  # of one file
@@ -22,7 +23,6 @@ _SAMPLE = 40  # rows that show what a column holds
 _ACCEPTED = "a column Reference, References, RefDes, Designator or Reference Designator, and at least one more such as Value"
 # a row without any of these words is no second header: spares the full look at a hundred thousand rows
 _HEADER_WORDS = ("ref", "designat")
-CHOICE = ("type", "maker")
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,7 +30,8 @@ class Columns:
     """The meaning of a header: ref column, plain columns as (index, attribute, heading, unit), and the choice columns.
 
     choices: (index of the type, index of the maker) per choice of part, -1 for none. fitted: (index, polarity).
-    quantity: its index or -1. score: how many columns have a meaning.
+    quantity: its index or -1. score: how many columns have a meaning. variants: a column per variant; by_variant: the
+    column that names variants row by row, or -1.
     """
 
     ref: int
@@ -40,15 +41,21 @@ class Columns:
     fitted: tuple[tuple[int, str], ...]
     quantity: int
     score: int
+    variants: tuple[VariantColumn, ...] = ()
+    by_variant: int = -1
 
 
 @dataclass(frozen=True, slots=True)
 class Table:
-    """One header with the records below it. caption: "" unless the file has several tables."""
+    """One header with the records below it. caption: "" unless the file has several tables.
+
+    absent: (line, caption) when the caption says that its parts are not fitted; the table then belongs to the one above.
+    """
 
     columns: Columns
     records: tuple[Record, ...]
     caption: str = ""
+    absent: tuple[int, str] | None = None
 
 
 def tables(path: str, records: Sequence[Record]) -> tuple[Table, ...]:
@@ -68,7 +75,7 @@ def tables(path: str, records: Sequence[Record]) -> tuple[Table, ...]:
         start, columns, caption = starts[-1]
         below = at == start + 1
         title = _caption(records, at, start + 1)
-        if not below and not title and _plain(cells) in seen:
+        if not below and not title[1] and _plain(cells) in seen:
             continue
         again = columns_of(cells, records, at)
         if below:  # two header rows, one for people and one for a program: the better understood counts
@@ -78,18 +85,19 @@ def tables(path: str, records: Sequence[Record]) -> tuple[Table, ...]:
         elif again is not None:
             starts.append((at, again, title))
             seen = {_plain(cells)}
-            dropped.update(_caption_rows(records, at, start + 1) if title else ())
+            dropped.update(_caption_rows(records, at, start + 1) if title[1] else ())
             if len(starts) > _TABLES:
                 raise InputError(path, "too many tables", line=records[at][0], expected=f"at most {_TABLES:,} header rows")
     ends = [start[0] for start in starts[1:]] + [len(records)]
-    return tuple(
-        Table(
-            columns,
-            tuple(records[at] for at in range(start + 1, end) if at not in dropped),
-            caption if len(starts) > 1 else "",
-        )
-        for (start, columns, caption), end in zip(starts, ends, strict=True)
-    )
+    made: list[Table] = []
+    over = ""
+    several = sum(not says_absent(title) for _, _, (_, title) in starts) > 1
+    for (start, columns, title), end in zip(starts, ends, strict=True):
+        absent = title if says_absent(title[1]) else None
+        over = over if absent else title[1]
+        rows = tuple(records[at] for at in range(start + 1, end) if at not in dropped)
+        made.append(Table(columns, rows, over if several else "", absent))
+    return tuple(made)
 
 
 def _earlier(records: Sequence[Record], best: int, columns: Columns) -> tuple[int, Columns]:
@@ -117,7 +125,7 @@ def best_header(records: Sequence[Record]) -> tuple[int, Columns] | None:
 def columns_of(cells: Sequence[str], records: Sequence[Record], at: int) -> Columns | None:
     """What the row at `at` means as a header: None without a reference column and one more known heading."""
     names = tuple(cell.strip()[: limits.NAME] for cell in cells)
-    known = [name and headings.attribute(name) for name in names]
+    known = [(name and headings.attribute(name)) or bom_choices.meaning_of(name) for name in names]
     sure = [index for index, meaning in enumerate(known) if meaning == "ref"]
     perhaps = [index for index, name in enumerate(names) if name and headings.perhaps_references(name) and index not in sure]
     score = sum(1 for meaning in known if meaning)
@@ -144,15 +152,15 @@ def _reference_column(sure: list[int], perhaps: list[int], sample: list[list[str
 
 def _columns(names: tuple[str, ...], known: list[str | None], ref: int, sample: list[list[str]]) -> Columns | None:
     plain: list[tuple[int, str, str, str]] = []
-    chosen: dict[str, list[int]] = {"type": [], "maker": []}
+    chosen: list[tuple[int, str, str]] = []
     fitted: list[tuple[int, str]] = []
     quantity = -1
     for index, name in enumerate(names):
         meaning = _settled(index, names, known)
         if index == ref or not name or meaning == "row":
             continue
-        if meaning in CHOICE:
-            chosen[meaning].append(index)
+        if meaning in bom_choices.CHOICE:
+            chosen.append((index, str(meaning), name))
         elif meaning in ("fitted+", "fitted-"):
             fitted.append((index, meaning))
         elif meaning == "quantity" and quantity < 0:
@@ -162,12 +170,12 @@ def _columns(names: tuple[str, ...], known: list[str | None], ref: int, sample: 
         else:
             own = meaning is None or meaning in ("ref", "quantity")
             plain.append((index, f"field:{name}" if own else str(meaning), name, headings.unit_in(name)))
-    types, makers = chosen["type"], chosen["maker"]
-    count = max(len(types), len(makers))
-    pad = [-1] * count
-    choices = tuple(zip((types + pad)[:count], (makers + pad)[:count], strict=True))
     score = sum(1 for index, meaning in enumerate(known) if meaning or index == ref)
-    return Columns(ref, names, tuple(plain), choices, tuple(fitted), quantity, score) if score >= 2 else None
+    if score < 2:
+        return None
+    variants = bom_variants.columns(names, known, sample)
+    by_variant = bom_variants.by_row(names)
+    return Columns(ref, names, tuple(plain), bom_choices.pairs(chosen), tuple(fitted), quantity, score, variants, by_variant)
 
 
 def _settled(index: int, names: tuple[str, ...], known: list[str | None]) -> str | None:
@@ -205,11 +213,12 @@ def _caption_rows(records: Sequence[Record], at: int, floor: int) -> range:
     return range(max(above, floor), at)
 
 
-def _caption(records: Sequence[Record], at: int, floor: int) -> str:
-    """The only cell of the row above a header, "" when that row has several or looks like references."""
+def _caption(records: Sequence[Record], at: int, floor: int) -> tuple[int, str]:
+    """Line and text of the only cell of the row above a header, the text "" when that row has several or looks like references."""
     rows = _caption_rows(records, at, floor)
-    cells = [cell.strip() for cell in records[rows[0]][1] if cell.strip()] if rows else []
-    return cells[0][: limits.NAME] if len(cells) == 1 and not look_like_references(cells[0]) else ""
+    line, row = records[rows[0]] if rows else records[at]
+    cells = [cell.strip() for cell in row if cell.strip()] if rows else []
+    return line, cells[0][: limits.NAME] if len(cells) == 1 and not look_like_references(cells[0]) else ""
 
 
 def _plain(cells: Sequence[str]) -> tuple[str, ...]:
@@ -224,7 +233,7 @@ def _no_header(path: str, records: Sequence[Record]) -> InputError:
         return sum(1 for name in names if headings.attribute(name)), len(names)
 
     shown = [record for record in records[:HEADER_ROWS] if any(cell.strip() for cell in record[1])]
-    line, cells = max(shown, key=rank)
+    line, cells = max(shown, key=rank, default=(0, []))
     names = [cell.strip() for cell in cells if cell.strip()]
     known = [name and headings.attribute(name) for name in names]
     if "ref" in known and sum(1 for meaning in known if meaning) > 1:
@@ -234,7 +243,7 @@ def _no_header(path: str, records: Sequence[Record]) -> InputError:
         path,
         "no header with a reference column was found" if "ref" not in known else "the header has no column besides the references",
         line=line,
-        found=f"the headings {seen}",
+        found=f"the headings {seen}" if names else "nothing but blank rows",
         expected=_ACCEPTED,
         remedy="Name the column that lists the references Reference or Designator.",
     )

@@ -13,8 +13,9 @@ from checker.errors import InputError
 from checker.files import Blob, decoded
 from checker.model.fact import Source
 from checker.model.reading import Note, Reader, Reading
-from checker.readers.bom_header import HEADER_ROWS, Record, best_header
-from checker.readers.bom_rows import rows_of
+from checker.readers.bom_header import HEADER_ROWS, best_header
+from checker.readers.bom_rows import bill
+from checker.readers.bom_sections import Record
 from checker.readers.sniff import describe, head
 
 FORM = "delimited table"
@@ -45,10 +46,9 @@ def read(blob: Blob) -> Reading:
         raise InputError(blob.path, "this is no delimited table", found=form, expected="a bill of materials as CSV", remedy=remedy)
     text, encoding = decoded(blob)
     records = list(_records(blob.path, text, _scored(text)[1]))
-    rows, notes = rows_of(blob.path, records)
-    if encoding:
-        notes = (Note("encoding", encoding, (Source(blob.path),)), *notes)
-    return Reading("bom", FORM, blob.path, blob.sha256, rows=rows, notes=notes)
+    found = bill(blob.path, records)
+    notes = (Note("encoding", encoding, (Source(blob.path),)), *found.notes) if encoding else found.notes
+    return Reading("bom", FORM, blob.path, blob.sha256, rows=found.rows, variants=found.variants, notes=notes)
 
 
 def _scored(text: str) -> tuple[int, str]:
