@@ -10,7 +10,7 @@ from checker.formulas.waveform import Wave, bottom, higher, largest, least, lowe
 from checker.model.rule import Board
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
-from checker.stress.cores import CITATION
+from checker.stress.cores import CITATION, SPIKE
 from checker.stress.potential import Potential
 from checker.stress.spread import Field
 from checker.stress.strings import String, facts
@@ -30,10 +30,12 @@ class Voltages:
         strung: Mapping[str, String],
         means: Mapping[str, str],
         rectified: Mapping[str, tuple[int, str]],
+        loose: Mapping[str, tuple[str, str]],
         frequency: float,
     ):
         self._board, self._found, self._same, self._means, self._frequency = board, found, same, means, frequency
         self._rectified = rectified
+        self.loose = {net: loose[at] for net in board.isolation.domain_of if (at := same.get(net, net)) in loose}
         self._strings = {net: string for string in strung.values() for net in string.nets[1:-1]}
         self._ends: dict[tuple[str, str], String] = {}
         for string in strung.values():
@@ -110,14 +112,16 @@ class Voltages:
         if hard[0] is None or hard[1] is None:
             return None
         low, high = minus(hard[0][0], hard[1][1]), minus(hard[0][1], hard[1][0])
-        most, sure = [], []
+        most, sure, spikes = [], [], []
         for at, way in enumerate(known.ways):
             turns = sum(sign * swing.ways[at].turns for sign, swing in zip((1, -1), swings, strict=True) if swing is not None)
             most += [top(largest(plus(low, turns * e), plus(high, turns * e))) for e in (way.low, way.high)]
+            swung = [SPIKE * turns * e for e in (way.low, way.high)]
+            spikes += [top(largest(plus(low, volts), plus(high, volts))) for volts in swung]
             sure.append(max(top(least(plus(low, turns * e), plus(high, turns * e))) for e in (way.surely_low, way.surely_high)))
         if not math.isfinite(max(most)):
             return None
-        return _plateau(one, other, min(sure), max(most), (first.step, second.step))
+        return _plateau(one, other, min(sure), max(most), max(spikes), (first.step, second.step))
 
     def _of_ends(self, string: String) -> Voltage | None:
         return self._of_potentials(string.nets[0], string.nets[-1])
@@ -158,11 +162,11 @@ def _hard(known: Potential | None) -> tuple[Wave, Wave] | None:
     return None if known is None else (known.low, known.high)
 
 
-def _plateau(one: str, other: str, surely: float, most: float, steps: tuple[Step, ...]) -> Voltage:
+def _plateau(one: str, other: str, surely: float, most: float, spike: float, steps: tuple[Step, ...]) -> Voltage:
     text = f"the voltage between {one} and {other} has plateaus of at most {most:.4g} V, surely {surely:.4g} V; spikes come on top"
     step = Step(text, steps, formula="V + N x e", result=most, unit="V", form="peak", citation=CITATION)
     peak = Bounds(surely, most, step, form="peak", kind="repetitive")
-    return Voltage(Bounds(0.0, most, step, form="rms", kind="repetitive"), peak, "mixed", None)
+    return Voltage(Bounds(0.0, most, step, form="rms", kind="repetitive"), peak, "mixed", None, spike=spike)
 
 
 def _decisive(one: Potential, other: Potential, sure: tuple[Wave, Wave]) -> tuple[Wave, Wave]:

@@ -54,10 +54,11 @@ class _Way:
 @dataclass(slots=True)
 class Cores:
     """nets: conductor on a winding -> its potential in normal use. rails: conductor that a rectifier charges from a winding and a
-    capacitor holds -> its potential."""
+    capacitor holds -> its potential. loose: conductor on a winding that nothing bounds -> (the core, the fact that is missing)."""
 
     nets: dict[str, Potential] = field(default_factory=dict)
     rails: dict[str, Potential] = field(default_factory=dict)
+    loose: dict[str, tuple[str, str]] = field(default_factory=dict)
 
 
 def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str], same: Mapping[str, str]) -> Cores:
@@ -71,8 +72,10 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str],
     for ref, candidate in board.choice.items():
         if candidate.kind != "transformer" or not board.design.parts[ref].fitted:
             continue
+        ends = dict.fromkeys(same.get(net, net) for net in board.design.parts[ref].nets())
         wound = sections(board, ref, same)
         if not wound or len({section.winding for section in wound}) > WINDINGS:
+            found.loose.update(dict.fromkeys(ends, (ref, "turns of its windings")))
             continue
         ways = [way for way in _ways(board, ref, wound, there, sources) if math.isfinite(way.low) and math.isfinite(way.high)]
         ways = [way for way in ways if _bearable(way, there, sources, most)] or ways
@@ -82,7 +85,9 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str],
             found.rails.update(_charged(board, nets, there, sources, same))
             found.nets.update(nets)
             found.nets.update(_floating(ref, wound, ways, there, sources))
+        found.loose.update(dict.fromkeys(ends, (ref, "voltage that one of its windings is rectified to")))
     found.nets = {net: known for net, known in found.nets.items() if not (net in sources and sources[net].held)}
+    found.loose = {net: told for net, told in found.loose.items() if net not in found.nets and net not in sources}
     return found
 
 

@@ -72,6 +72,7 @@ def stressed(board: Board) -> Stress:
         mean_sign=between.mean_sign,
         across=parts,
         barriers=barriers,
+        loose=between.loose,
     )
 
 
@@ -98,7 +99,8 @@ def _voltages(
     sources.update(cored.rails)
     found = spread(sources, line, edges, frame_of, cored.nets)
     mean = means(board, sources, same)
-    return Voltages(board, found, same, strung, mean, rectified(board, mean, same), board.setting.mains_frequency)
+    frequency = board.setting.mains_frequency
+    return Voltages(board, found, same, strung, mean, rectified(board, mean, same), cored.loose, frequency)
 
 
 def _fix(sources: dict[str, Potential], fixed: list[Rail], same: Mapping[str, str]) -> None:
