@@ -13,7 +13,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import replace
 
 from checker.model.candidate import Candidate
-from checker.model.circuit import Design, Part, Pin
+from checker.model.circuit import Design, Part
 from checker.model.names import ground_like, supply_volts
 
 CONFIRMED = 2  # diodes of a board that stand as the usual numbering says, from which on it is taken for known

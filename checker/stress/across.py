@@ -20,7 +20,6 @@ from checker.model.separation import Separation
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
 from checker.stress.between import NONE, Voltages
-from checker.stress.cores import SPIKE
 from checker.stress.potential import Potential, Swing, Turns
 
 CITATION = "IEC 62368-1 5.4.1.8 (from memory)"
@@ -150,7 +149,7 @@ def _together(low: Wave, high: Wave, one: Swing | None, two: Swing | None) -> fl
         return math.inf
     found = 0.0
     for first, second in zip(one.ways, two.ways, strict=True):
-        for volts in (SPIKE * (first.turns - second.turns) * e for e in (first.low, first.high)):
+        for volts in (one.spike * (first.turns - second.turns) * e for e in (first.low, first.high)):
             found = max(found, top(plus(high, volts)), -bottom(plus(low, volts)))
     return found
 

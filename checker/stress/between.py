@@ -10,7 +10,7 @@ from checker.formulas.waveform import Wave, bottom, higher, largest, least, lowe
 from checker.model.rule import Board
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
-from checker.stress.cores import CITATION, SPIKE
+from checker.stress.cores import CITATION
 from checker.stress.potential import Potential
 from checker.stress.spread import Field
 from checker.stress.strings import String, facts
@@ -116,7 +116,7 @@ class Voltages:
         for at, way in enumerate(known.ways):
             turns = sum(sign * swing.ways[at].turns for sign, swing in zip((1, -1), swings, strict=True) if swing is not None)
             most += [top(largest(plus(low, turns * e), plus(high, turns * e))) for e in (way.low, way.high)]
-            swung = [SPIKE * turns * e for e in (way.low, way.high)]
+            swung = [known.spike * turns * e for e in (way.low, way.high)]
             spikes += [top(largest(plus(low, volts), plus(high, volts))) for volts in swung]
             sure.append(max(top(least(plus(low, turns * e), plus(high, turns * e))) for e in (way.surely_low, way.surely_high)))
         if not math.isfinite(max(most)):

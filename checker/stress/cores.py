@@ -17,7 +17,7 @@ rating is judged by what stands here.
 from __future__ import annotations
 
 import math
-from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from itertools import product
 
@@ -26,11 +26,12 @@ from checker.model.fact import Fact
 from checker.model.rule import Board
 from checker.model.step import Step
 from checker.stress.potential import DROPS, SMOOTHING, Potential, Swing, Turns
-from checker.stress.valves import Valve, ceilings, railed, valves
-from checker.stress.windings import Section, sections
+from checker.stress.valves import Valve, railed, valves
+from checker.stress.windings import NO_LOAD, Section, sections
 
 WINDINGS = 8  # of one core; beyond, the sets of directions are too many to try
 SPIKE = 1.5  # peak over plateau of a winding's swing (usual default of clamp design, second hand)
+CHARGED = 1.3  # crest of a lightly loaded rail over plateau, spikes that charge it (common practice, no source)
 TOLERANCE = 0.1  # part by which two plateaus may miss one another and still be the same (common practice, no source)
 CITATION = "equal volts per turn, mean zero over a cycle (published method)"
 
@@ -61,12 +62,12 @@ class Cores:
     loose: dict[str, tuple[str, str]] = field(default_factory=dict)
 
 
-def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str], same: Mapping[str, str]) -> Cores:
+def cores(board: Board, sources: Mapping[str, Potential], line: Mapping[str, Potential], same: Mapping[str, str]) -> Cores:
     """The nets on every core whose turns are known and whose volts per turn are bounded.
 
     line: the poles of the mains; a core with a winding between two of them swings with the line, not apart from it.
     """
-    there, most = list(valves(board, sources, same)), ceilings(board, same)
+    there = list(valves(board, sources, same))
     sources = {**railed(there, sources), **sources}
     found = Cores()
     for ref, candidate in board.choice.items():
@@ -77,14 +78,19 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Collection[str],
         if not wound or len({section.winding for section in wound}) > WINDINGS:
             found.loose.update(dict.fromkeys(ends, (ref, "turns of its windings")))
             continue
-        ways = [way for way in _ways(board, ref, wound, there, sources) if math.isfinite(way.low) and math.isfinite(way.high)]
-        ways = [way for way in ways if _bearable(way, there, sources, most)] or ways
+        ways = [way for way in _ways(board, ref, wound, there, sources, line) if math.isfinite(way.low) and math.isfinite(way.high)]
+        strokes = [_on_stroke(way, there, sources) for way in ways]
+        ways = [way for way, count in zip(ways, strokes, strict=True) if count == min(strokes)]
         if ways:
             apart = len({held for way in ways for held, _ in way.tied.values()} & set(line)) < 2
-            nets = dict(_potentials(board, ref, ways, there, sources, apart))
+            spike = 1.0 if any({section.one, section.two} <= line.keys() for section in wound) else SPIKE
+            nets = dict(_potentials(board, ref, ways, there, sources, apart, spike))
             found.rails.update(_charged(board, nets, there, sources, same))
             found.nets.update(nets)
-            found.nets.update(_floating(ref, wound, ways, there, sources))
+            for each in _floating(ref, wound, ways, there, sources, spike):
+                found.nets.update(dict.fromkeys(each.ends, each.end))
+                if each.over is not None and each.above not in sources and _smoothed(board, each.above, sources, same):
+                    found.rails[each.above] = each.over
         found.loose.update(dict.fromkeys(ends, (ref, "voltage that one of its windings is rectified to")))
     found.nets = {net: known for net, known in found.nets.items() if not (net in sources and sources[net].held)}
     found.loose = {net: told for net, told in found.loose.items() if net not in found.nets and net not in sources}
@@ -97,8 +103,10 @@ def _ways(
     wound: list[Section],
     there: list[Valve],
     sources: Mapping[str, Potential],
+    line: Mapping[str, Potential],
 ) -> Iterator[_Way]:
     """Every set of directions that the circuit allows, with the bounds that valves give."""
+    loaded = NO_LOAD if "secondary" in board.choice[ref].ratings else 1.0
     declared = board.declaration.parts.get(ref)
     dotted = declared is not None and bool(declared.windings)
     windings = sorted({section.winding for section in wound})
@@ -112,28 +120,27 @@ def _ways(
         high = min([bound[1] for bound in bounds if bound is not None and bound[0] > 0] + [end[1] for end in ends])
         if _can_close(here, tied, sources) and _drives(here, tied, sources):
             reached = [reach for valve in here if (reach := _reached(valve, tied, sources)) is not None]
+            reached += [
+                end / loaded
+                for section, span in zip(wound, ends, strict=True)
+                if {section.one, section.two} <= line.keys()
+                for end in span
+            ]
             least = min([e for e in reached if e < 0], default=0.0)
             most = max([e for e in reached if e > 0], default=0.0)
             yield _Way(tied, low, high, max(low, least), min(high, most))
 
 
-def _bearable(way: _Way, there: Sequence[Valve], sources: Mapping[str, Potential], most: Mapping[str, tuple[str, float]]) -> bool:
-    """Whether no rectifier would surely charge the supply pin of a controller beyond what it bears: then the winding is not meant
-    to lie that way."""
+def _on_stroke(way: _Way, there: Sequence[Valve], sources: Mapping[str, Potential]) -> int:
+    """How many rectifiers would charge a net of unknown voltage while a switch of the core is closed. Such a net follows the
+    supply, which no regulated converter is meant to do: of several sets of directions the ones with fewest are meant."""
+    strokes = [closed for valve in there if valve.closes and (closed := _closed(valve, way.tied, sources)) is not None]
+    count = 0
     for valve in there:
-        place = _place(valve.anode, way.tied, sources) if valve.cathode in most and valve.cathode not in sources else None
-        if place is None or valve.closes:
-            continue
-        ground, bears = most[valve.cathode]
-        base, turns = place
-        crest = max(turns * e for e in (way.surely_low, way.surely_high)) - DROPS.forward
-        if (
-            ground in sources
-            and sources[ground].frame == base.frame
-            and bottom(minus(base.low, sources[ground].high)) + crest > bears
-        ):
-            return False
-    return True
+        for end, net, sign in ((valve.anode, valve.cathode, 1), (valve.cathode, valve.anode, -1)):
+            if not valve.closes and net not in sources and net not in way.tied and end in way.tied:
+                count += any(sign * way.tied[end][1] * closed > 0 for closed in strokes)
+    return count
 
 
 def _reached(valve: Valve, tied: Mapping[str, tuple[str, float]], sources: Mapping[str, Potential]) -> float | None:
@@ -238,7 +245,7 @@ def _can_close(valves: list[Valve], tied: Mapping[str, tuple[str, float]], sourc
 
 
 def _potentials(
-    board: Board, ref: str, ways: list[_Way], valves: list[Valve], sources: Mapping[str, Potential], apart: bool
+    board: Board, ref: str, ways: list[_Way], valves: list[Valve], sources: Mapping[str, Potential], apart: bool, spike: float
 ) -> Iterator[tuple[str, Potential]]:
     """The potential of each conductor on a core over all its ways; a valve into a held conductor stops its spikes."""
     said = board.choice[ref].ratings.get("secondary") or Fact("turns", _said(board, ref), board.design.parts[ref].fact.source)
@@ -250,21 +257,22 @@ def _potentials(
         sets = tuple(way.turns(net) for way in ways)
         low, high = base.low, base.high
         for each in sets:
-            ends = sorted((each.turns * each.low * SPIKE, each.turns * each.high * SPIKE))
+            ends = sorted((each.turns * each.low * spike, each.turns * each.high * spike))
             low, high = lower(low, plus(base.low, ends[0])), higher(high, plus(base.high, ends[1]))
         for valve in valves:
             if valve.anode == net and valve.cathode in sources:
                 high = lower(high, plus(sources[valve.cathode].high, DROPS.forward))
             if valve.cathode == net and valve.anode in sources:
                 low = higher(low, plus(sources[valve.anode].low, -DROPS.forward))
+        swing = Swing(ref, base.low, base.high, sets, apart and base.held, spike)
         counts = " or ".join(sorted({f"{abs(each.turns):g}" for each in sets}))
         volts = " or ".join(list(dict.fromkeys(f"{each.low:.3g} to {each.high:.3g}" for each in sets))[:4])
         step = Step(
             f"{net} is tied by {counts} turns of {ref} to {next(iter(held))}; rectifiers and switches keep the core within {volts} "
-            f"V per turn, spikes are allowed for as {SPIKE:g} times that",
+            f"V per turn, spikes are allowed for as {spike:g} times that",
             (base.step, said), formula="V_held + N x e", result=top(high), unit="V", form="peak", citation=CITATION,
         )  # fmt: skip
-        yield net, Potential(base.frame, low, high, step, swing=Swing(ref, base.low, base.high, sets, apart and base.held))
+        yield net, Potential(base.frame, low, high, step, swing=swing)
 
 
 def _charged(
@@ -286,7 +294,7 @@ def _charged(
             swing = known.swing
             crests = [max(sign * each.turns * e for e in (each.low, each.high)) for each in swing.ways]
             sure = [max(sign * each.turns * e for e in (each.surely_low, each.surely_high)) for each in swing.ways]
-            most, least = max(crests) * SPIKE, max(0.0, min(sure) - DROPS.forward)
+            most, least = max(crests) * min(swing.spike, CHARGED), max(0.0, min(sure) - DROPS.forward)
             low, high = plus(swing.low, least if sign > 0 else -most), plus(swing.high, most if sign > 0 else -least)
             step = Step(
                 f"{net} is charged from {end} by a rectifier to the crest of its winding, {least:.4g} V surely, {most:.4g} V with "
@@ -306,31 +314,47 @@ def _smoothed(board: Board, net: str, sources: Mapping[str, Potential], same: Ma
     return False
 
 
-def _floating(
-    ref: str, sections: list[Section], ways: list[_Way], valves: list[Valve], sources: Mapping[str, Potential]
-) -> Iterator[tuple[str, Potential]]:
-    """A winding with a bridge: neither end is tied, and a diode keeps each above the same held conductor.
+@dataclass(frozen=True, slots=True)
+class _Floating:
+    """A winding with a bridge. ends: its conductors, end: the potential of both; above: the net that the bridge feeds, "" for none,
+    over: its potential."""
 
-    One end rests on it while the other is as far above as the whole winding gives.
-    """
+    ends: tuple[str, str]
+    end: Potential
+    above: str
+    over: Potential | None
+
+
+def _floating(
+    ref: str, wound: list[Section], ways: list[_Way], there: list[Valve], sources: Mapping[str, Potential], spike: float
+) -> Iterator[_Floating]:
+    """Windings of which neither end is tied, and a diode keeps each above the same held conductor: one end rests on it while the
+    other is as far above as the whole winding gives."""
     most = max(max(abs(way.low), abs(way.high)) for way in ways)
-    for section in sections:
-        if any(section.one in way.tied or section.two in way.tied for way in ways):
+    sure = min(max(abs(way.surely_low), abs(way.surely_high)) for way in ways)
+    for section in wound:
+        ends = (section.one, section.two)
+        if any(end in way.tied for way in ways for end in ends):
             continue
-        under = [
-            {valve.anode for valve in valves if valve.cathode == end and valve.anode in sources}
-            for end in (section.one, section.two)
-        ]
+        under = [{valve.anode for valve in there if valve.cathode == end and valve.anode in sources} for end in ends]
+        above = [{valve.cathode for valve in there if valve.anode == end} for end in ends]
         for held in sorted(under[0] & under[1])[:1]:
-            base, volts = sources[held], section.turns * most
+            base, volts = sources[held], section.turns * most * spike
             step = Step(
                 f"{section.one} and {section.two} are a winding of {ref} with a bridge above {held}, of at most {volts:.4g} V",
-                (base.step,),
-                formula="N x e", result=volts, unit="V", form="peak", citation=CITATION,
+                (base.step,), formula="N x e", result=volts, unit="V", form="peak", citation=CITATION,
             )  # fmt: skip
-            low, high = plus(base.low, -DROPS.forward), plus(base.high, volts * SPIKE)
-            for end in (section.one, section.two):
-                yield end, Potential(base.frame, low, high, step)
+            end = Potential(base.frame, plus(base.low, -DROPS.forward), plus(base.high, volts), step)
+            net = next(iter(sorted(above[0] & above[1])), "")
+            least = max(0.0, section.turns * sure - 2 * DROPS.diode)
+            fed = Step(
+                f"{net} is charged by the bridge to the crest of that winding, {least:.4g} V surely, {volts:.4g} V at most",
+                (step,), formula="N x e", result=volts, unit="V", form="dc", citation=CITATION,
+            )  # fmt: skip
+            over = (
+                Potential(base.frame, plus(base.low, least), plus(base.high, volts), fed, held=True, output=True) if net else None
+            )
+            yield _Floating(ends, end, net, over)
 
 
 def _said(board: Board, ref: str) -> str:

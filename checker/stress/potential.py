@@ -27,7 +27,7 @@ class Swing:
 
     low, high: the potential without it. ways: one for each set of winding directions that the circuit allows; one core has the
     same sets for all its nets, in the same order. apart: what it is added to is held, so that the two go their own ways and their
-    mean squares add; else only their r.m.s. values do.
+    mean squares add; else only their r.m.s. values do. spike: peak over plateau.
     """
 
     core: str
@@ -35,6 +35,7 @@ class Swing:
     high: Wave
     ways: tuple[Turns, ...]
     apart: bool = True
+    spike: float = 1.0
 
 
 @dataclass(frozen=True, slots=True)

@@ -14,8 +14,6 @@ from checker.stress.potential import DROPS, SENSE, SERIES, Potential
 
 DRIVE = 3  # parts in series between a winding and what it drives (common practice, no source)
 CROWD = 8  # parts on one net, beyond which it drives nothing but is a ground or a rail
-CONTROLLER = 40.0  # V; no controller of a mains converter bears more at its supply pin (from memory: 18 to 38 V)
-_SUPPLY_PINS = frozenset({"VCC", "VDD", "BP", "BPP", "BP/M", "VS", "VAUX"})
 _SWITCH_PINS = frozenset({"DRAIN", "D", "SW", "HV", "COLLECTOR", "C"})
 
 
@@ -87,23 +85,6 @@ def _driving(board: Board, gate: str, switch: str) -> set[str]:
         edge = {net for ref in parts for net in board.design.parts[ref].nets()} - found
         edge = {net for net in edge if len(board.fitted_on(net)) <= CROWD}
         found |= edge
-    return found
-
-
-def ceilings(board: Board, same: Mapping[str, str]) -> dict[str, tuple[str, float]]:
-    """Conductor on the supply pin of a controller -> (its ground, the voltage that the controller bears at most)."""
-    found: dict[str, tuple[str, float]] = {}
-    for ref, candidate in board.choice.items():
-        part = board.design.parts[ref]
-        if candidate.kind != "controller" or not part.fitted:
-            continue
-        supplies, grounds = named(part, _SUPPLY_PINS), named(part, GROUND | {"S", "SOURCE"})
-        rating = candidate.ratings.get("voltage")
-        bears = float(rating.value) if rating is not None and float(rating.value) <= CONTROLLER else CONTROLLER
-        for net in supplies if grounds else ():
-            known = found.get(same.get(net, net))
-            if known is None or bears < known[1]:
-                found[same.get(net, net)] = same.get(grounds[0], grounds[0]), bears
     return found
 
 
