@@ -42,7 +42,7 @@ def with_pin_names(design: Design, choice: Mapping[str, Candidate]) -> Design:
     total = sum(votes.values())
     first, second = ("A", "K") if total < 0 else ("K", "A")
     for ref in diodes:
-        sure = abs(total) - abs(votes.get(ref, 0)) >= CONFIRMED
+        sure = abs(total - votes.get(ref, 0)) >= CONFIRMED
         found[ref] = replace(
             bare[ref],
             pins=tuple(replace(pin, name=first if pin.number == "1" else second, usual=not sure) for pin in bare[ref].pins),

@@ -9,27 +9,28 @@ _SWITCHES = frozenset({"mosfet", "igbt", "bipolar"})
 _SUPPRESSORS = frozenset({"tvs", "zener", "varistor"})
 
 
-def clamp(analysis: Analysis, net: str, switch: str) -> tuple[str, ...]:
-    """The parts that keep the spikes on a net of a switch, () when there is none.
+def clamp(analysis: Analysis, switch: str, nets: tuple[str, str]) -> tuple[str, ...]:
+    """The parts that keep the spikes of a switch between two nets, () when there is none.
 
-    A suppressor; a diode to a net that a capacitor holds, with a resistor or suppressor that empties it (RCD), or to a rail; a
-    second switch with a capacitor (active clamp).
+    A suppressor; a diode to or from a net that a capacitor holds, with a resistor or suppressor that empties it (RCD), or a rail;
+    a second switch with a capacitor (active clamp).
     """
-    for ref in analysis.fitted_on(net):
-        part, kind = analysis.design.parts[ref], analysis.kind(ref)
-        if ref == switch:
-            continue
-        if kind in _SUPPRESSORS:
-            return (ref,)
-        if kind == "diode" and (far := [cathode for anode, cathode in junctions(part) if anode == net]):
-            held = _held(analysis, far[0], ref)
-            if held:
-                return (ref, *held)
-        if kind in _SWITCHES and ref != switch:
-            others = [other for other in part.nets() if other != net]
-            caps = [other for there in others for other in analysis.fitted_on(there) if analysis.kind(other) == "capacitor"]
-            if caps:
-                return (ref, caps[0])
+    for net in nets:
+        for ref in analysis.fitted_on(net):
+            part, kind = analysis.design.parts[ref], analysis.kind(ref)
+            if ref == switch:
+                continue
+            if kind in _SUPPRESSORS:
+                return (ref,)
+            if kind == "diode":
+                far = [end for pair in junctions(part) if net in pair for end in pair if end != net and end not in nets]
+                if far and (held := _held(analysis, far[0], ref)):
+                    return (ref, *held)
+            if kind in _SWITCHES:
+                others = [other for other in part.nets() if other not in nets]
+                caps = [there for other in others for there in analysis.fitted_on(other) if analysis.kind(there) == "capacitor"]
+                if caps:
+                    return (ref, caps[0])
     return ()
 
 

@@ -157,7 +157,7 @@ def _of_pins(analysis: Analysis, clause: Clause, ref: str) -> Verdict | None:
     share = _share(clause.params, pins.family, bounds)
     seen, facts, missing = f"{ref} between {pins.one} and {pins.other} sees", [analysis.design.parts[ref].fact], None
     if bounds.kind == "repetitive" and pins.family in ("mosfet", "bipolar") and bounds.surely <= share.lax * rated.high:
-        clamping = clamp(analysis, pins.one, ref)
+        clamping = clamp(analysis, ref, (pins.one, pins.other))
         facts += [analysis.design.parts[other].fact for other in clamping]
         if not clamping:
             bounds = replace(bounds, never_above=None)

@@ -14,7 +14,7 @@ from checker.stress.potential import DROPS, SENSE, SERIES, Potential
 
 DRIVE = 3  # parts in series between a winding and what it drives (common practice, no source)
 CROWD = 8  # parts on one net, beyond which it drives nothing but is a ground or a rail
-_SWITCH_PINS = frozenset({"DRAIN", "D", "SW", "HV", "COLLECTOR", "C"})
+_SWITCH_PINS = frozenset("DRAIN D SW HV COLLECTOR C D1 D2 SW1 SW2 DRAIN1 DRAIN2".split())
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,8 +71,8 @@ def valves(board: Board, sources: Mapping[str, Potential], same: Mapping[str, st
                 yield Valve(conductor(source[0]), conductor(drain[0]), True, control)
         elif candidate.kind in ("controller", "ic", "regulator"):
             drains, grounds = named(part, _SWITCH_PINS), named(part, GROUND | {"S", "SOURCE"})
-            if len(drains) == 1 and grounds:
-                yield Valve(conductor(grounds[0]), conductor(drains[0]), True)
+            for net in drains if grounds and len(drains) <= 2 else ():
+                yield Valve(conductor(grounds[0]), conductor(net), True)
 
 
 def _driving(board: Board, gate: str, switch: str) -> set[str]:

@@ -15,7 +15,7 @@ from checker.model.step import Step
 from checker.model.stress import Stress
 from checker.stress.across import Across
 from checker.stress.between import Voltages
-from checker.stress.buses import buses
+from checker.stress.buses import behind_diodes, buses
 from checker.stress.conductors import conductors
 from checker.stress.cores import cores
 from checker.stress.entries import carried, entries
@@ -91,6 +91,7 @@ def _voltages(
         step = Step(f"{net} is the reference of {name}", (board.design.nets[net].fact,))
         sources.setdefault(same.get(net, net), Potential(name, 0.0, 0.0, step, held=True))
     _fix(sources, fixed, same)
+    sources.update(behind_diodes(board, same, sources))
 
     def frame_of(net: str) -> str | None:
         return board.isolation.domain_of.get(net)
