@@ -167,7 +167,9 @@ class _List:
             name, number = f"{ref} ({number})", number + 1
         if known:
             first = known[0][1].line
-            text = f"{neutral(ref, 80)} is listed twice (lines {first} and {entry.line}); both are kept, the second as {neutral(name, 80)}"
+            text = (
+                f"{neutral(ref, 80)} is listed twice (lines {first} and {entry.line}); both are kept, the second as {neutral(name, 80)}"
+            )
             places = Source(self.path, first), Source(self.path, entry.line)
             self.notes.append(Note("duplicate-reference", text, places, (ref, name)))
             self._known.setdefault(name, [])
