@@ -12,6 +12,7 @@ from checker import parameters, plugins
 from checker.assemble.join import assemble
 from checker.errors import WithstandError
 from checker.identify.candidates import identify
+from checker.identify.usual_pins import with_pin_names
 from checker.isolation.domains import isolate
 from checker.limits import VERDICTS
 from checker.model.candidate import Candidate, Identity
@@ -55,6 +56,7 @@ def judge(
     """Everything from readings to the report. inputs: (role, path as shown, sha256) of each file the run rests on."""
     design = assemble(name, readings, declaration, variant)
     identity = identify(design, declaration)
+    design = with_pin_names(design, {ref: candidates[0] for ref, candidates in identity.items()})
     raised: list[str] = []
     worst: dict[tuple[str, str], Verdict] = {}
     first: Analysis | None = None

@@ -11,12 +11,14 @@ from checker.model.reading import Note
 
 @dataclass(frozen=True, slots=True)
 class Pin:
-    """number and name are text, compared exactly. net is None when the pin is on no net."""
+    """number and name are text, compared exactly. net is None when the pin is on no net. usual: the name follows from the usual
+    numbering of such parts, nobody says it."""
 
     number: str
     name: str = ""
     type: str = ""
     net: str | None = None
+    usual: bool = False
 
 
 @dataclass(frozen=True, slots=True)

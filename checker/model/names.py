@@ -20,6 +20,7 @@ _BESIDE = frozenset(
     "X RAW HV".split()
 )
 _ENTRY = frozenset({"VIN", "DCIN", "IN", "INPUT", "VBAT", "PWR", "POWER", "SUPPLY", "BATT", "VS", "VPWR"})
+_BEHIND_V = re.compile(r"V(3|5|9|12|15|18|19|24|28|36|48)(?:V(\d))?")  # `V1` and `V2` are no voltages
 _MAINS_VOLTS = re.compile(r"(?:1[0-3]\d|2[0-6]\d|400)V?(?:AC)|(?:110|115|120|220|230|240)V")
 
 
@@ -67,9 +68,9 @@ def high_voltage(name: str) -> bool:
 
 
 def supply_volts(name: str) -> float | None:
-    """The voltage a rail's name states (`+12V`, `3V3`, `5V0_ISO`), None when it states none."""
+    """The voltage a rail's name states (`+12V`, `3V3`, `5V0_ISO`, `V24`), None when it states none."""
     for word in tokens(name):
-        match = re.fullmatch(r"(\d{1,3})V(\d{0,2})", word)
+        match = re.fullmatch(r"(\d{1,3})V(\d{0,2})", word) or _BEHIND_V.fullmatch(word)
         if match:
             return float(f"{match[1]}.{match[2] or 0}")
     return None

@@ -36,7 +36,8 @@ class Voltage:
     shape: "ac" when it follows the mains and changes sign, "dc" when its sign stays and its value is steady, "mixed" otherwise.
     peak is the largest magnitude of the waveform, rms its r.m.s. value (for "dc" both are the direct voltage).
     frequency: of the fundamental, Hz; 0.0 for "dc", None when nothing tells it. worst: of a maximum over pairs of nets, the pair
-    that gives it, or the pair that nothing bounds.
+    that gives it, or the pair that nothing bounds. spike: of a plateau on a winding, V, what its spikes reach behind a clamp of
+    usual design; 0.0 elsewhere.
     """
 
     rms: Bounds
@@ -44,6 +45,7 @@ class Voltage:
     shape: str
     frequency: float | None = 0.0
     worst: tuple[str, str] = ("", "")
+    spike: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,6 +62,7 @@ class Stress:
     sign: two nets -> 1 when the first is surely above the second all the time, -1 when below, 0 when that is not known.
     across: (part, pair of domains) -> working voltage across that bridging part on its own pins, at the rated supply,
     without tolerance, the far side taken as earthed where that is worse, as insulation is judged.
+    loose: net on a winding whose voltages nothing bounds -> (the core, the fact that is missing).
     barriers: separation id (`name|name` for two circuits that nothing crosses) -> the same as maximum over every pair of nets of
     its two sides.
     """
@@ -74,3 +77,4 @@ class Stress:
     mean_sign: Callable[[str, str], int] = lambda one, other: 0
     across: Mapping[tuple[str, tuple[str, str]], Voltage] = field(default_factory=dict)
     barriers: Mapping[str, Voltage] = field(default_factory=dict)
+    loose: Mapping[str, tuple[str, str]] = field(default_factory=dict)

@@ -90,6 +90,8 @@ def _surely(analysis: Analysis, way: _Way) -> float:
 def _way(analysis: Analysis, ref: str) -> _Way | None:
     """How the part has to stand; None for parts without a polarity and for those whose pins do not tell it."""
     part, kind = analysis.design.parts[ref], analysis.kind(ref)
+    if any(pin.usual for pin in part.pins):
+        return None
     if kind == "capacitor":
         return _of_capacitor(analysis, part)
     if kind in ("diode", "zener", "tvs"):

@@ -2,8 +2,10 @@
 
 - Diodes and bridges: reverse voltage against the repetitive rating. Rectifiers of the mains keep a larger margin (`rectifier`),
   since a varistor lets more than the crest of the mains through in a surge: 1000 V types serve on 230 V, 400 V types do not.
-- Transistors, triacs, coupler outputs: the voltage between their main terminals, where both nets are bounded; a winding that is
-  switched is not.
+- Transistors, triacs, coupler outputs, switches inside controllers: the voltage between their main terminals.
+- On the winding of a switched core the plateaus count, by volts per turn. The ringing of rectifiers is what their margin is for
+  (`diode`; a fail is what leaves less than `most`). A switch passes only with a clamp: plateau up to `winding`, its spikes, taken
+  as those of a clamp of usual design, up to `spike` of the rating. Without a clamp nothing bounds them.
 - Suppressors: the steady voltage must not be above the stand-off voltage, else they conduct in normal use.
 - Shunt references, regulators, controllers and circuits: the supply or cathode pin against ground, where the pins are named and
   a rated voltage is known.
@@ -12,13 +14,16 @@
 
 Pass: never above the share that may be used. Fail: surely above it; above the rating itself the fail is an error. Open: a
 rectifier of the mains states no reverse voltage, or the bounds leave it open although a good part of the voltage is sure (a note,
-where the voltage does not follow the mains). Nothing: other parts without a rating, and nets that nothing bounds.
+where the voltage does not follow the mains). Where the turns of a core are not stated, one open names its parts. Nothing: other
+parts without a rating, and nets that nothing bounds.
 
-To settle it: BOM column `Voltage`, `ratings: {voltage: 600 V}` in a parts file or the declaration, `rails` for what a net carries.
+To settle it: BOM column `Turns` (`1-2:128, 3-4:16`), BOM column `Voltage`, `ratings: {voltage: 600 V}` in a parts file or the
+declaration, `rails` for what a net carries.
 """
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
@@ -33,6 +38,7 @@ from checker.model.stress import Bounds
 from checker.model.terminals import GROUND, anode_and_cathode, bridge, coupler, named
 from checker.model.verdict import Change, Missing, Number, Remedy, Verdict
 from checker.parameters import Ratio
+from checker.rules.clamps import clamp
 from checker.rules.part_voltage import (
     Question,
     Rated,
@@ -48,6 +54,8 @@ from checker.rules.part_voltage import (
 
 _STANDOFF_OF_BREAKDOWN = (0.81, 1.05)  # stand-off voltage per volt of nominal breakdown, least; breakdown, most (from memory)
 _MORE = 1.5  # what a maker may promise beyond the lowest of all, at most (from memory)
+_DRAIN = ("DRAIN", "D", "SW", "HV", "COLLECTOR", "C")
+SWITCH = 100.0  # V; no supply pin of a controller is rated as much, no drain of an off-line one less (from memory)
 _CIRCUITS = frozenset({"regulator", "controller", "ic"})
 _SUPPLY = ("VCC", "VDD", "VIN", "VI", "IN", "V+", "VS", "VBAT")
 _TERMINALS = {
@@ -67,7 +75,11 @@ _WHAT = "Voltage of a part against its rated voltage."
 
 @dataclass(frozen=True, slots=True)
 class Params:
-    """Share of the rated voltage that may be used. rectifier: of the mains; supply: of supply and cathode pins of circuits."""
+    """Share of the rated voltage that may be used.
+
+    rectifier: of the mains; supply: of supply and cathode pins of circuits. winding, spike: of switches on a winding, plateau and
+    peak; most: plateau of any part on a winding, beyond which it surely fails.
+    """
 
     diode: Annotated[float, Ratio()] = 0.8
     rectifier: Annotated[float, Ratio()] = 0.75
@@ -76,6 +88,9 @@ class Params:
     thyristor: Annotated[float, Ratio()] = 0.8
     suppressor: Annotated[float, Ratio()] = 1.0
     supply: Annotated[float, Ratio()] = 0.9
+    winding: Annotated[float, Ratio()] = 0.85
+    spike: Annotated[float, Ratio()] = 0.95
+    most: Annotated[float, Ratio()] = 0.9
     line: Annotated[float, Ratio()] = 1.0
 
 
@@ -89,13 +104,38 @@ class _Pins:
 
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
-    """One verdict per part whose voltage is bounded and whose rating is known, and per mains rectifier without a rating."""
+    """One verdict per part whose voltage is bounded and whose rating is known, per mains rectifier without a rating, and per core
+    that bounds nothing."""
+    loose: dict[tuple[str, str], list[str]] = {}
     for ref, candidate in analysis.choice.items():
         if not analysis.design.parts[ref].fitted:
             continue
         verdict = _in_line(analysis, clause, ref) if candidate.kind in _LINE_PARTS else _of_pins(analysis, clause, ref)
         if verdict is not None:
             yield verdict
+        elif (core := _core(analysis, ref)) is not None:
+            loose.setdefault(core, []).append(ref)
+    yield from (_loose(analysis, clause, core, fact, refs) for (core, fact), refs in loose.items())
+
+
+def _core(analysis: Analysis, ref: str) -> tuple[str, str] | None:
+    """(core, missing fact) for a rated part on a winding that nothing bounds."""
+    for pins in _pins(analysis, ref):
+        if analysis.stress.between(pins.one, pins.other) is None and _rated(analysis, ref) is not None:
+            told = [analysis.stress.loose[net] for net in (pins.one, pins.other) if net in analysis.stress.loose]
+            if told:
+                return told[0]
+    return None
+
+
+def _loose(analysis: Analysis, clause: Clause, core: str, fact: str, refs: list[str]) -> Verdict:
+    parts = (core, *refs)
+    because = f"{', '.join(refs)} stand on windings of {core}, and nothing bounds the voltages there"
+    step = Step(because, tuple(analysis.design.parts[ref].fact for ref in parts))
+    then = (("stated, and the ratings cover what follows", "pass"), ("stated, and one is too low", "fail"))
+    supply = "BOM column Turns (1-2:128, 3-4:16)" if fact.startswith("turns") else "outputs in the declaration"
+    missing = Missing(fact, supply, then, core)
+    return clause.opens(Subject(parts, key=(core, "windings")), _WHAT, because, step, missing)
 
 
 def _of_pins(analysis: Analysis, clause: Clause, ref: str) -> Verdict | None:
@@ -105,40 +145,68 @@ def _of_pins(analysis: Analysis, clause: Clause, ref: str) -> Verdict | None:
         voltage = analysis.stress.between(pins.one, pins.other)
         if voltage is not None and not _conducts(analysis, ref, pins):
             pumped = any(_pumped(analysis, net) for net in (pins.one, pins.other))
-            bounds = replace(voltage.peak, surely=0.0) if pumped else voltage.peak
-            found.append((highest(bounds), pins, bounds))
+            bounds = replace(voltage.peak, surely=0.0) if pumped and voltage.peak.kind == "steady" else voltage.peak
+            found.append((highest(bounds), pins, replace(voltage, peak=bounds)))
     if not found:
         return None
-    _, pins, bounds = max(found, key=lambda one: one[0])
+    _, pins, voltage = max(found, key=lambda one: one[0])
+    bounds = voltage.peak
     rated = _rated(analysis, ref)
     if rated is None:
         return _unrated(analysis, clause, ref, pins, bounds) if pins.family == "rectifier" else None
-    ratio = float(getattr(clause.params, pins.family))
+    share = _share(clause.params, pins.family, bounds)
+    seen, facts, missing = f"{ref} between {pins.one} and {pins.other} sees", [analysis.design.parts[ref].fact], None
+    if bounds.kind == "repetitive" and pins.family in ("mosfet", "bipolar") and bounds.surely <= share.lax * rated.high:
+        clamping = clamp(analysis, ref, (pins.one, pins.other))
+        facts += [analysis.design.parts[other].fact for other in clamping]
+        if not clamping:
+            bounds = replace(bounds, never_above=None)
+            seen = f"nothing clamps the spikes of {ref}, which between {pins.one} and {pins.other} sees"
+            missing = _unclamped(pins, ref)
+        elif voltage.spike * share.strict > (bounds.never_above or math.inf) * clause.params.spike:
+            bounds = replace(bounds, never_above=voltage.spike)
+            share = Share(clause.params.spike, clause.params.spike, percent(clause.params.spike))
+            seen = f"{ref} between {pins.one} and {pins.other}, with spikes that {', '.join(clamping)} clamps, sees"
     most = highest(bounds)
     nets, stated = (pins.one, pins.other), "voltage" in analysis.choice[ref].ratings
     line = follows_mains(analysis, *nets)
     clamps = pins.family == "suppressor"
-    value = next_usual(most / ratio, STANDOFF if clamps else DIRECT if pins.family == "supply" else REVERSE)
+    value = next_usual(most / share.strict, STANDOFF if clamps else DIRECT if pins.family == "supply" else REVERSE)
     return judged(
         analysis,
         clause,
         Question(
             Subject((ref,), nets, key=(ref, "voltage")),
             _WHAT,
-            f"{ref} between {pins.one} and {pins.other} sees",
+            seen,
             bounds,
             rated,
-            Share(ratio, ratio, percent(ratio)),
-            _missing(nets, ref, bounds, rated, ratio),
+            share,
+            missing or _missing(nets, ref, bounds, rated, share.strict),
             Remedy(f"{ref} rated {value:g} V or more", (Change(ref, "rating:voltage", value, "V", rated.form),))
             if value is not None and stated
             else None,
-            (analysis.design.parts[ref].fact,),
+            tuple(facts),
             line,
-            level="" if line else "note",
+            level="" if line or bounds.kind == "repetitive" else "note",
             above="it conducts in normal use" if clamps else "it is above the rating itself",
         ),
     )
+
+
+def _share(params: Params, family: str, bounds: Bounds) -> Share:
+    """What of the rating may be used: on a winding less than it may have before it surely fails."""
+    ratio = float(getattr(params, family))
+    if bounds.kind != "repetitive":
+        return Share(ratio, ratio, percent(ratio))
+    strict = params.winding if family in ("mosfet", "bipolar") else ratio
+    lax = max(strict, params.most)
+    return Share(strict, lax, f"{percent(strict)} to {percent(lax)}" if lax > strict else percent(strict))
+
+
+def _unclamped(pins: _Pins, ref: str) -> Missing:
+    then = (("a clamp is fitted, or the peak is measured and conceded", "pass"), ("it rings beyond the rating", "fail"))
+    return Missing("what clamps the spikes", f"a clamp at {pins.one} in the netlist", then, ref)
 
 
 def _pins(analysis: Analysis, ref: str) -> Iterator[_Pins]:
@@ -164,6 +232,10 @@ def _pins(analysis: Analysis, ref: str) -> Iterator[_Pins]:
     elif kind == "shunt-reference" and (pair := anode_and_cathode(part)) is not None:
         yield _Pins(*pair, "supply")
     elif kind in _CIRCUITS:
+        drains, sources = named(part, _DRAIN), named(part, GROUND | {"S", "SOURCE"})
+        if len(drains) == 1 and sources and _is_drain_rating(analysis, ref):
+            yield _Pins(drains[0], sources[0], "mosfet")
+            return
         grounds, supplies = named(part, GROUND), named(part, _SUPPLY)
         if grounds and supplies:
             yield from (_Pins(net, grounds[0], "supply") for net in supplies if net != grounds[0])
@@ -195,7 +267,10 @@ def _rated(analysis: Analysis, ref: str) -> Rated | None:
     said = analysis.design.parts[ref].text("value")
     if candidate.kind == "diode" and rating is not None and rating.text == said and _ONLY_VOLTS.fullmatch(said):
         return None
-    if rating is not None and (candidate.kind not in _CIRCUITS or rating.trust not in (Trust.NETLIST, Trust.BOM, Trust.GUESSED)):
+    drain = candidate.kind in _CIRCUITS and _is_drain_rating(analysis, ref)
+    if rating is not None and (
+        drain or candidate.kind not in _CIRCUITS or rating.trust not in (Trust.NETLIST, Trust.BOM, Trust.GUESSED)
+    ):
         low = float(rating.value)
         high = low * _MORE if rating.trust == Trust.CATALOGUE and "lowest" in rating.text else low
         name = "stand-off voltage" if candidate.kind == "tvs" else "rating"
@@ -206,6 +281,12 @@ def _rated(analysis: Analysis, ref: str) -> Rated | None:
         text = f"it breaks down at {float(breakdown.value):g} V, so that its stand-off voltage is {least:.4g} V or more"
         return Rated(least, most, text, (breakdown,), breakdown.form)
     return None
+
+
+def _is_drain_rating(analysis: Analysis, ref: str) -> bool:
+    """Whether the rated voltage of a circuit with a drain pin is that of the switch inside: no supply pin bears as much."""
+    rating = analysis.choice[ref].ratings.get("voltage")
+    return rating is not None and float(rating.value) >= SWITCH and bool(named(analysis.design.parts[ref], _DRAIN))
 
 
 def _missing(nets: tuple[str, str], ref: str, bounds: Bounds, rated: Rated, ratio: float) -> Missing | None:

@@ -20,8 +20,7 @@ from checker.model.separation import Separation
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
 from checker.stress.between import NONE, Voltages
-from checker.stress.cores import SPIKE
-from checker.stress.potential import Potential, Swing
+from checker.stress.potential import Potential, Swing, Turns
 
 CITATION = "IEC 62368-1 5.4.1.8 (from memory)"
 PAIRS = 2500  # pairs of nets of a barrier that are looked at one by one; beyond that its bridging parts stand for it
@@ -149,8 +148,8 @@ def _together(low: Wave, high: Wave, one: Swing | None, two: Swing | None) -> fl
     if one is None or two is None or one.core != two.core:
         return math.inf
     found = 0.0
-    for (first, least_e, most_e), (second, _, _) in zip(one.ways, two.ways, strict=True):
-        for volts in (SPIKE * (first - second) * least_e, SPIKE * (first - second) * most_e):
+    for first, second in zip(one.ways, two.ways, strict=True):
+        for volts in (one.spike * (first.turns - second.turns) * e for e in (first.low, first.high)):
             found = max(found, top(plus(high, volts)), -bottom(plus(low, volts)))
     return found
 
@@ -159,6 +158,9 @@ def _swinging(one: Swing | None, two: Swing | None) -> float:
     """The highest r.m.s. value that windings add to a difference: |N| x sqrt(-e_low x e_high), for one core of its own N1 - N2."""
     if one is not None and two is not None and one.core == two.core:
         pairs = zip(one.ways, two.ways, strict=True)
-        return max(abs(first - second) * math.sqrt(max(0.0, -low * high)) for (first, low, high), (second, _, _) in pairs)
-    each = [max(abs(turns) * math.sqrt(max(0.0, -low * high)) for turns, low, high in swing.ways) for swing in (one, two) if swing]
-    return sum(each)
+        return max(_rms(way, way.turns - other.turns) for way, other in pairs)
+    return sum(max(_rms(way, way.turns) for way in swing.ways) for swing in (one, two) if swing)
+
+
+def _rms(way: Turns, turns: float) -> float:
+    return abs(turns) * math.sqrt(max(0.0, -way.low * way.high))

@@ -10,6 +10,7 @@ from checker.formulas.waveform import Wave, bottom, higher, largest, least, lowe
 from checker.model.rule import Board
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
+from checker.stress.cores import CITATION
 from checker.stress.potential import Potential
 from checker.stress.spread import Field
 from checker.stress.strings import String, facts
@@ -29,10 +30,12 @@ class Voltages:
         strung: Mapping[str, String],
         means: Mapping[str, str],
         rectified: Mapping[str, tuple[int, str]],
+        loose: Mapping[str, tuple[str, str]],
         frequency: float,
     ):
         self._board, self._found, self._same, self._means, self._frequency = board, found, same, means, frequency
         self._rectified = rectified
+        self.loose = {net: loose[at] for net in board.isolation.domain_of if (at := same.get(net, net)) in loose}
         self._strings = {net: string for string in strung.values() for net in string.nets[1:-1]}
         self._ends: dict[tuple[str, str], String] = {}
         for string in strung.values():
@@ -91,7 +94,34 @@ class Voltages:
             if whole is None or (string.steady and whole.shape != "dc"):
                 return None
             return self._shared(string, one, other, whole)
-        return self._of_potentials(one, other)
+        return self._of_core(one, other) or self._of_potentials(one, other)
+
+    def _of_core(self, one: str, other: str) -> Voltage | None:
+        """The plateau of the voltage between two nets of which a winding carries one or both, spikes aside."""
+        first, second = self.potential(one, usual=True), self.potential(other, usual=True)
+        if first is None or second is None or first.frame != second.frame:
+            return None
+        swings = [first.swing, second.swing]
+        known = next((swing for swing in swings if swing is not None), None)
+        if known is None or any(swing is not None and swing.core != known.core for swing in swings):
+            return None
+        hard = [
+            (swing.low, swing.high) if swing is not None else _hard(self.potential(net, usual=False))
+            for net, swing in zip((one, other), swings, strict=True)
+        ]
+        if hard[0] is None or hard[1] is None:
+            return None
+        low, high = minus(hard[0][0], hard[1][1]), minus(hard[0][1], hard[1][0])
+        most, sure, spikes = [], [], []
+        for at, way in enumerate(known.ways):
+            turns = sum(sign * swing.ways[at].turns for sign, swing in zip((1, -1), swings, strict=True) if swing is not None)
+            most += [top(largest(plus(low, turns * e), plus(high, turns * e))) for e in (way.low, way.high)]
+            swung = [known.spike * turns * e for e in (way.low, way.high)]
+            spikes += [top(largest(plus(low, volts), plus(high, volts))) for volts in swung]
+            sure.append(max(top(least(plus(low, turns * e), plus(high, turns * e))) for e in (way.surely_low, way.surely_high)))
+        if not math.isfinite(max(most)):
+            return None
+        return _plateau(one, other, min(sure), max(most), max(spikes), (first.step, second.step))
 
     def _of_ends(self, string: String) -> Voltage | None:
         return self._of_potentials(string.nets[0], string.nets[-1])
@@ -126,6 +156,17 @@ class Voltages:
             self._figures[waves] = _figures(never, sure)
         figures = self._figures[waves]
         return None if figures is None else _told(one, other, figures, (soft[0].step, soft[1].step), self._frequency)
+
+
+def _hard(known: Potential | None) -> tuple[Wave, Wave] | None:
+    return None if known is None else (known.low, known.high)
+
+
+def _plateau(one: str, other: str, surely: float, most: float, spike: float, steps: tuple[Step, ...]) -> Voltage:
+    text = f"the voltage between {one} and {other} has plateaus of at most {most:.4g} V, surely {surely:.4g} V; spikes come on top"
+    step = Step(text, steps, formula="V + N x e", result=most, unit="V", form="peak", citation=CITATION)
+    peak = Bounds(surely, most, step, form="peak", kind="repetitive")
+    return Voltage(Bounds(0.0, most, step, form="rms", kind="repetitive"), peak, "mixed", None, spike=spike)
 
 
 def _decisive(one: Potential, other: Potential, sure: tuple[Wave, Wave]) -> tuple[Wave, Wave]:

@@ -52,6 +52,30 @@ def buses(board: Board, same: Mapping[str, str], line: Mapping[str, Potential]) 
     return found
 
 
+def behind_diodes(board: Board, same: Mapping[str, str], sources: Mapping[str, Potential]) -> dict[str, Potential]:
+    """Conductors that only diodes from held direct voltages feed and a capacitor holds: protection against wrong polarity, two
+    supplies of which the higher one feeds."""
+    feeding: dict[str, dict[str, str]] = {}
+    for ref, candidate in board.choice.items():
+        if candidate.kind == "diode" and board.design.parts[ref].fitted:
+            for anode, cathode in junctions(board.design.parts[ref]):
+                feeding.setdefault(same.get(cathode, cathode), {})[same.get(anode, anode)] = ref
+    joined = _capacitors(board, same)
+    found = {}
+    for net, anodes in feeding.items():
+        held = [sources[anode] for anode in anodes if anode in sources and sources[anode].held]
+        if net in sources or len(held) < len(anodes) or len({one.frame for one in held}) != 1:
+            continue
+        if not any(far in sources for far in joined.get(net, {})):
+            continue
+        refs = ", ".join(anodes.values())
+        step = Step(f"{net} is fed by {', '.join(anodes)} over {refs}", tuple(one.step for one in held))
+        high = reduce(higher, (one.high for one in held))
+        low = plus(reduce(higher, (one.low for one in held)), -DROPS.diode)
+        found[net] = Potential(held[0].frame, low, high, step, held=True)
+    return found
+
+
 def _fed(board: Board, same: Mapping[str, str], line: Mapping[str, Potential]) -> dict[str, _Fed]:
     found: dict[str, _Fed] = {}
     for ref, candidate in board.choice.items():

@@ -1,12 +1,14 @@
-"""Nets that are one conductor for direct voltage: joined by fuses, links, ferrites, limiters and filter chokes."""
+"""Nets that are one conductor for direct voltage: joined by fuses, links, ferrites, limiters, filter chokes and sense resistors."""
 
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping
 
 from checker.model.rule import Board
-from checker.stress.potential import SMOOTHING
+from checker.model.terminals import named
+from checker.stress.potential import SENSE, SMOOTHING
 
+_SWITCHES = frozenset({"mosfet", "igbt", "bipolar"})
 _JOINS = frozenset({"fuse", "resettable-fuse", "jumper", "net-tie", "ferrite", "thermistor"})
 
 
@@ -27,8 +29,20 @@ def _joined(board: Board, held: frozenset[str]) -> Iterator[tuple[str, str]]:
             for one, other in _windings(board, ref):
                 if one in held and other in held:
                     yield one, other
-        elif len(nets) == 2 and (candidate.kind in _JOINS or board.is_link(ref)):
+        elif len(nets) == 2 and (candidate.kind in _JOINS or board.is_link(ref) or _senses(board, ref)):
             yield nets[0], nets[1]
+
+
+def _senses(board: Board, ref: str) -> bool:
+    """Whether a resistor measures the current of a switch: small, and one end on its source or emitter."""
+    value = board.choice[ref].value
+    if board.kind(ref) != "resistor" or value is None or float(value.value) > SENSE:
+        return False
+    for net in board.design.parts[ref].nets():
+        for other in board.fitted_on(net):
+            if board.kind(other) in _SWITCHES and net in named(board.design.parts[other], ("S", "E", "SOURCE", "EMITTER")):
+                return True
+    return False
 
 
 def _windings(board: Board, ref: str) -> Iterator[tuple[str, str]]:

@@ -4,38 +4,55 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import NamedTuple
 
 from checker.formulas.waveform import Wave, bottom, top
 from checker.model.step import Step
+
+
+class Turns(NamedTuple):
+    """Of one set of winding directions. turns: with their sign. low <= volts per turn <= high at every moment of a switching
+    cycle, spikes aside; surely_low, surely_high: reached in every cycle at full load, 0.0 when nothing is sure."""
+
+    turns: float
+    low: float
+    high: float
+    surely_low: float = 0.0
+    surely_high: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
 class Swing:
     """What a winding adds to a potential: turns x volts per turn, whose mean over a switching cycle is zero.
 
-    low, high: the potential without it. ways: (turns with their sign, least and highest volts per turn) for each set of
-    winding directions that the circuit allows; one core has the same sets for all its nets, in the same order. apart: what it
-    is added to is held, so that the two go their own ways and their mean squares add; else only their r.m.s. values do.
+    low, high: the potential without it. ways: one for each set of winding directions that the circuit allows; one core has the
+    same sets for all its nets, in the same order. apart: what it is added to is held, so that the two go their own ways and their
+    mean squares add; else only their r.m.s. values do. spike: peak over plateau.
     """
 
     core: str
     low: Wave
     high: Wave
-    ways: tuple[tuple[float, float, float], ...]
+    ways: tuple[Turns, ...]
     apart: bool = True
+    spike: float = 1.0
 
 
 @dataclass(frozen=True, slots=True)
 class Potential:
     """low <= potential <= high at every moment of the mains cycle, V against the reference of `frame`, in normal use at the
-    highest supply voltage. held: something holds the net at a steady potential (a supply, a smoothing capacitor). swing: what a
-    winding has in low and high, None for a net on none."""
+    highest supply voltage.
+
+    held: something holds the net at a steady potential (a supply, a smoothing capacitor). output: it lives on what the board
+    transforms or regulates, no supply feeds it. swing: what a winding has in low and high, None for a net on none.
+    """
 
     frame: str
     low: Wave
     high: Wave
     step: Step
     held: bool = False
+    output: bool = False
     swing: Swing | None = None
 
     @property

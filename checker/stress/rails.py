@@ -25,12 +25,14 @@ LED = (1.0, 1.3)  # V, forward drop of a coupler's diode (common practice, no so
 _BESIDE_VOLTS = frozenset("ISO OUT SEC A B C D P AUX MAIN DC VCC VDD VOUT V SYS LOGIC REG STBY SB DIG ANA EXT USB RAIL".split())
 _PLAIN_FIGURE = re.compile(r"[+-]?(\d{1,3}V\d{0,2}|V\d{1,2}V?\d?)")
 
+SUPPLY_TRUST = 4
+
 
 @dataclass(frozen=True, slots=True)
 class Rail:
     """`low` to `high` volts from `back` to `net`; negative below it. trust: how much it is believed, the higher wins.
 
-    both: either net follows from the other; False for what only keeps `net` near `back`.
+    both: either net follows from the other; False for what only keeps `net` near `back`. fed: by the board, not by a supply.
     """
 
     net: str
@@ -40,6 +42,11 @@ class Rail:
     step: Step
     trust: int
     both: bool = True
+
+    @property
+    def fed(self) -> bool:
+        """Whether it lives on what the board transforms or regulates."""
+        return self.trust != SUPPLY_TRUST
 
 
 def _rail(net: str, back: str, volts: float, spread: float, step: Step, trust: int) -> Rail:
@@ -113,7 +120,7 @@ def _direct_supply(board: Board, grounds: Mapping[str, str]) -> Iterator[Rail]:
                         f"the supply of {supply.voltage.high:g} V comes in at {ref} between {net} and {back}",
                         (fact, board.design.parts[ref].fact), result=supply.voltage.high, unit="V", form="dc",
                     )  # fmt: skip
-                    yield Rail(net, back, supply.voltage.high, supply.voltage.high, step, 4)
+                    yield Rail(net, back, supply.voltage.high, supply.voltage.high, step, SUPPLY_TRUST)
                     return
 
 

@@ -44,12 +44,20 @@ def spread(
         swings.update(far for net, far in ((one, other), (other, one)) if net in moving)
     sure = _pulled_from(sources, pulls, swings, frame_of)
     found = Field({**sources, **sure}, {**sources, **sure, **wound})
+    if wound:
+        near = _pulled_from({**sources, **wound}, pulls, swings - wound.keys(), frame_of)
+        for field_ in (found.sure, found.usual):
+            _fill(field_, near)
     if loads := _loads(pulls, sources, line):
-        usual = _pulled_from({**sources, **loads}, pulls, swings - loads.keys(), frame_of)
-        found.usual.update({net: known for net, known in usual.items() if known.bounded and not _is_bounded(found.usual.get(net))})
+        _fill(found.usual, _pulled_from({**sources, **wound, **loads}, pulls, swings - wound.keys() - loads.keys(), frame_of))
         found.usual.update(loads)
     _by_ratings(found, pulls, sources, swings, frame_of)
     return found
+
+
+def _fill(known: dict[str, Potential], more: Mapping[str, Potential]) -> None:
+    """Adds what is bounded where nothing bounded it before."""
+    known.update({net: one for net, one in more.items() if one.bounded and not _is_bounded(known.get(net))})
 
 
 def _is_bounded(known: Potential | None) -> bool:

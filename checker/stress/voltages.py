@@ -15,9 +15,9 @@ from checker.model.step import Step
 from checker.model.stress import Stress
 from checker.stress.across import Across
 from checker.stress.between import Voltages
-from checker.stress.buses import buses
+from checker.stress.buses import behind_diodes, buses
 from checker.stress.conductors import conductors
-from checker.stress.cores import cores, means, rectified
+from checker.stress.cores import cores
 from checker.stress.entries import carried, entries
 from checker.stress.lines import pole_potentials, poles
 from checker.stress.potential import Potential
@@ -25,6 +25,7 @@ from checker.stress.pulls import Pulls, pulls
 from checker.stress.rails import Rail, grounds, rails
 from checker.stress.spread import spread
 from checker.stress.strings import String, strings
+from checker.stress.windings import means, rectified
 
 MOST_DOMAINS = 16  # circuits of which every pair is looked at, crossed or not
 
@@ -71,6 +72,7 @@ def stressed(board: Board) -> Stress:
         mean_sign=between.mean_sign,
         across=parts,
         barriers=barriers,
+        loose=between.loose,
     )
 
 
@@ -89,13 +91,17 @@ def _voltages(
         step = Step(f"{net} is the reference of {name}", (board.design.nets[net].fact,))
         sources.setdefault(same.get(net, net), Potential(name, 0.0, 0.0, step, held=True))
     _fix(sources, fixed, same)
+    sources.update(behind_diodes(board, same, sources))
 
     def frame_of(net: str) -> str | None:
         return board.isolation.domain_of.get(net)
 
-    found = spread(sources, line, edges, frame_of, cores(board, sources, line, same))
+    cored = cores(board, sources, line, same)
+    sources.update(cored.rails)
+    found = spread(sources, line, edges, frame_of, cored.nets)
     mean = means(board, sources, same)
-    return Voltages(board, found, same, strung, mean, rectified(board, mean, same), board.setting.mains_frequency)
+    frequency = board.setting.mains_frequency
+    return Voltages(board, found, same, strung, mean, rectified(board, mean, same), cored.loose, frequency)
 
 
 def _fix(sources: dict[str, Potential], fixed: list[Rail], same: Mapping[str, str]) -> None:
@@ -109,10 +115,13 @@ def _fix(sources: dict[str, Potential], fixed: list[Rail], same: Mapping[str, st
                 continue
             if back in sources:
                 base = sources[back]
-                sources[net] = Potential(base.frame, plus(base.low, rail.low), plus(base.high, rail.high), rail.step, held=True)
+                sources[net] = Potential(
+                    base.frame, plus(base.low, rail.low), plus(base.high, rail.high), rail.step, True, rail.fed
+                )
             elif net in sources and rail.both:
                 base = sources[net]
-                sources[back] = Potential(base.frame, plus(base.low, -rail.high), plus(base.high, -rail.low), rail.step, held=True)
+                low, high = plus(base.low, -rail.high), plus(base.high, -rail.low)
+                sources[back] = Potential(base.frame, low, high, rail.step, held=True, output=rail.fed)
             else:
                 left.append(rail)
         if len(left) == len(waiting):
