@@ -53,6 +53,7 @@ ANSWERS = {
     "capacitance with its tolerance": (({"Tolerance": "1 %"},), ()),
     "capacitance": (({"Value": "1 nF"},), ()),
     "tolerances of the capacitors and resistors": (({"Tolerance": "1 %"},), ()),
+    "turns of its windings": (({"Turns": "1-2:128, 3-4:16, 5-6:8"},), ()),
     "whether": ((), ("marks: [G.10]",)),
 }
 

@@ -14,7 +14,7 @@ from checker import limits
 _ALIASES = {
     "ref": "ref refs reference references refdes refdesignator refname designator designators referencedesignator "
     "referencedesignators schematicreference componentreference partreference referenz referenzen "
-    "bauteil bauteile bauteilbezeichner bezeichner repère repères repere reperes",
+    "bauteil bauteile bauteilbezeichner bezeichner repère repères repere reperes rep",
     "row": "item itemno id index row rowno sno lineno line lineitem pos posno no",
     "quantity": "qty qnty quantity quantityperpcb quantityperboard qtyboard qtyperboard qtyperpcb qtypcb qtypcs count orderqty "
     "anzahl menge stk stück stückzahl amount pcs quantité qté",
@@ -36,7 +36,7 @@ _ALIASES = {
     "farnellpartno newarkpartno rspartno rsstockno tmepartno arrowpartno",
     "description": "description desc partdescription kidescription details longdescription rating ratings part parts component "
     "components specification specifications spec specs bezeichnung beschreibung bemerkung bemerkungen text produktbezeichnung "
-    "désignation remarque remarques",
+    "désignation remarque remarques note notes remark remarks anmerkung anmerkungen",
     "datasheet": "datasheet datasheeturl datasheetlink datenblatt",
     "kind": "kind",
     "mark": "class safetyclass safetyapproval safetyapprovals approval approvals mark marks standard standards certification "
