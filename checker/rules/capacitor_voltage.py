@@ -1,9 +1,9 @@
 """Does every capacitor keep the voltage margin of the house?
 
 The voltage between the two nets of a capacitor, at the highest supply voltage with tolerance, against its rated voltage times
-the ratio for its technology: direct voltage where it is steady, the peak where it is not. Aluminium electrolytics on the
-rectified mains have a ratio of their own (`bulk`): 400 V parts at 373 V are common practice. Capacitors of class X or Y, across
-the line or across a barrier belong to other rules; on a.c. a rating that does not say its form is left alone.
+the ratio for its technology: direct voltage where it is steady, the peak where it is not. Aluminium electrolytics and film
+capacitors on the rectified mains have a ratio of their own (`bulk`): 400 V parts at 373 V are common practice. Capacitors of
+class X or Y, across the line or across a barrier belong to other rules; on a.c. a rating that does not say its form is left alone.
 
 Pass: the voltage is never above the share that may be used. Fail: it surely is; above the rating itself the fail is an
 error. The technology comes from the text, else from the symbol, the footprint and the value; while several are possible the
@@ -49,6 +49,7 @@ HIGHEST = {"tantalum": 125.0, "polymer": 250.0}  # V; highest rated voltage that
 _CLASSES = ("X1", "X2", "X3", "Y1", "Y2", "Y3", "Y4")
 _POLARISED = frozenset({"aluminium", "tantalum", "polymer"})
 _UNPOLARISED = frozenset({"ceramic", "film"})
+_BULK = frozenset({"aluminium", "film"})
 _PEAK_OF_RMS = (1.414, 3.0)  # d.c. rating of a part with an a.c. rating, per volt r.m.s.: least and most (from memory)
 DOUBLE_LAYER = (0.04, 6.5)  # F and V; from here on and up to here nothing else is made (common practice, no source)
 NOTHING = 0.5  # V; between nets that are one conductor, or where no supply is
@@ -57,7 +58,7 @@ SHOWN = 12  # references told in one sentence
 
 @dataclass(frozen=True, slots=True)
 class Params:
-    """Share of the rated voltage that may be used, by technology; bulk: aluminium on the rectified mains."""
+    """Share of the rated voltage that may be used, by technology; bulk: aluminium and film on the rectified mains."""
 
     ceramic: Annotated[float, Ratio()] = 0.8
     film: Annotated[float, Ratio()] = 0.8
@@ -200,13 +201,13 @@ def technologies(analysis: Analysis, ref: str) -> tuple[tuple[str, ...], tuple[F
 def _share(params: Params, possible: tuple[str, ...], bulk: bool) -> Share:
     ratios = {name: _ratio(params, name, bulk) for name in possible}
     strict, lax = min(ratios.values()), max(ratios.values())
-    what = "bulk" if bulk and possible == ("aluminium",) else possible[0] if len(possible) == 1 else "technology not stated"
+    what = "bulk" if bulk and set(possible) <= _BULK else possible[0] if len(possible) == 1 else "technology not stated"
     text = percent(strict) if strict == lax else f"{percent(strict)} to {percent(lax)}"
     return Share(strict, lax, f"{text} ({what})")
 
 
 def _ratio(params: Params, name: str, bulk: bool) -> float:
-    return params.bulk if bulk and name == "aluminium" else float(getattr(params, name))
+    return params.bulk if bulk and name in _BULK else float(getattr(params, name))
 
 
 def _missing(params: Params, place: _Place, most: float, rated: float, possible: tuple[str, ...]) -> Missing:

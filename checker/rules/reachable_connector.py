@@ -6,16 +6,20 @@ A connector that a user can reach must carry nothing above the touchable voltage
 - on the mains side, or on a d.c. source above the limit: fail, unless it is the supply entry or mains wiring (its contacts
   lead to line, neutral, earth or switched line only), or the declaration lists it under `unreachable`;
 - on a declared output or rail: its voltage against the limit;
-- on a circuit kept apart from the hazard whose voltage nobody states: no verdict here, the stress rules bound it.
+- on another circuit kept apart from the hazard: the highest voltage between two of its nets in normal use, out of regulators,
+  rail names and windings. Signals that nothing bounds give no verdict.
 
-Open: mains wiring on a connector that is not the supply entry (is it in a closed terminal box?). To settle it: list the
-connector under `unreachable:` in the declaration, or move it behind a barrier.
+Open: mains wiring on a connector that is not the supply entry (is it in a closed terminal box?), or an output that a rectifier
+feeds from a winding and whose voltage nobody states. To settle it: list the connector under `unreachable:` in the declaration,
+move it behind a barrier, or state the output under `supply.outputs`.
 """
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from itertools import combinations
 from typing import Annotated
 
 from checker.model.clause import Clause, Subject
@@ -23,6 +27,7 @@ from checker.model.declaration import Output, Range
 from checker.model.fact import Fact
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
+from checker.model.stress import Voltage
 from checker.model.verdict import Missing, Number, Verdict, Words
 from checker.parameters import AtMost
 
@@ -34,6 +39,30 @@ class Params:
     dc: Annotated[float, AtMost("V", "dc")] = 60.0
     rms: Annotated[float, AtMost("V", "rms")] = 30.0
     peak: Annotated[float, AtMost("V", "peak")] = 42.4
+
+
+@dataclass(frozen=True, slots=True)
+class _Touched:
+    """What a person can touch between two nets against its limit: surely reached, and never exceeded (inf: not bounded), V."""
+
+    sure: float
+    most: float
+    limit: Number
+    step: Step
+
+    @property
+    def doubtful(self) -> bool:
+        return self.sure <= self.limit.value < self.most
+
+
+def _touched(voltage: Voltage, params: Params) -> _Touched:
+    """The figure that has a limit: the direct voltage, the r.m.s. value, or the peak of a mixture, which only proves a pass."""
+    bounds, limit, form = {
+        "dc": (voltage.rms, params.dc, "dc"),
+        "ac": (voltage.rms, params.rms, "rms"),
+    }.get(voltage.shape, (replace(voltage.peak, surely=0.0), params.peak, "peak"))  # fmt: skip
+    most = math.inf if bounds.never_above is None else bounds.never_above
+    return _Touched(bounds.surely, most, Number(limit, "V", form), bounds.step)
 
 
 def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
@@ -53,6 +82,8 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
         rails = [outputs[net] for net in nets if net in outputs]
         if rails:
             yield _of_rail(analysis, clause, ref, max(rails, key=lambda output: output.voltage.high))
+        elif analysis.isolation.separations:
+            yield from _of_circuit(analysis, clause, ref, nets)
 
 
 def _hazard(analysis: Analysis, net: str, params: Params) -> bool:
@@ -118,6 +149,42 @@ def _of_rail(analysis: Analysis, clause: Clause, ref: str, output: Output) -> Ve
         surely=Number(voltage.low, "V", form), never_above=Number(voltage.high, "V", form), limit=Number(limit, "V", form),
         missing=Missing("the highest voltage of this output", "outputs in the declaration, as a single figure", (), ref),
     )  # fmt: skip
+
+
+def _of_circuit(analysis: Analysis, clause: Clause, ref: str, nets: list[str]) -> Iterator[Verdict]:
+    """The worst pair of nets of a connector in normal use; nothing where it carries signals that nothing bounds."""
+    pairs = list(combinations(nets, 2))
+    known = {pair: _touched(voltage, clause.params) for pair in pairs if (voltage := analysis.stress.between(*pair))}
+    worst = max(known, key=lambda pair: known[pair].sure / known[pair].limit.value, default=None)
+    if worst is None or known[worst].sure <= known[worst].limit.value:
+        doubtful = [pair for pair in pairs if (known[pair].doubtful if pair in known else analysis.stress.mean_sign(*pair))]
+        if not doubtful and len(known) < len(pairs):
+            return
+        worst = doubtful[0] if doubtful else max(known, key=lambda pair: known[pair].most / known[pair].limit.value, default=None)
+    if worst is None or (worst in known and known[worst].most == 0):
+        return
+    yield _of_pair(analysis, clause, ref, worst, known.get(worst))
+
+
+def _of_pair(analysis: Analysis, clause: Clause, ref: str, pair: tuple[str, str], touched: _Touched | None) -> Verdict:
+    subject, carries = Subject((ref,), pair, key=(ref,)), f"{ref} carries {pair[0]} and {pair[1]}"
+    fact = analysis.design.parts[ref].fact
+    step = Step(carries, (fact, touched.step)) if touched else Step(f"{carries}; nothing bounds the voltage between them", (fact,))
+    if ref in analysis.declaration.unreachable:
+        return clause.passes(subject, "An output connector that no user reaches.", "declared unreachable", step)
+    limit = touched.limit if touched else Number(clause.params.dc, "V", "dc")
+    what = "Voltage a person can touch at this connector, in normal use."
+    missing = Missing(
+        f"voltage between {pair[0]} and {pair[1]}",
+        f"outputs in the declaration (supply: {{outputs: {{{pair[0]}: 12 V}}}})",
+        ((f"at most {limit.value:g} V", "pass"), ("more", "fail")),
+        ref,
+    )
+    if touched is None:
+        return clause.opens(subject, what, step.text, step, missing)
+    most = replace(limit, value=touched.most) if math.isfinite(touched.most) else None
+    sure = replace(limit, value=touched.sure)
+    return clause.at_most(subject, what, carries, step, surely=sure, never_above=most, limit=limit, missing=missing)
 
 
 def _is_wiring(analysis: Analysis, ref: str, lines: frozenset[str]) -> bool:
