@@ -71,11 +71,11 @@ TWO = netlist([part("R1", "1 2"), part("C1", "1 2")], [net("A", "R1.1 C1.1"), ne
 
 def test_plain_join():
     design = joined(TWO, bom(row("R1 C1", value="x", quantity=2)))
-    assert list(design.parts) == ["R1", "C1"]
+    assert list(design.parts) == ["C1", "R1"]
     assert pins(design.parts["R1"]) == [("1", "A"), ("2", "B")]
     assert [(made.name, made.pins, made.source.line, made.automatic) for made in design.nets.values()] == [
-        ("A", (("R1", "1"), ("C1", "1")), 100, False),
-        ("B", (("R1", "2"), ("C1", "2")), 101, False),
+        ("A", (("C1", "1"), ("R1", "1")), 100, False),
+        ("B", (("C1", "2"), ("R1", "2")), 101, False),
     ]
     assert design.parts["C1"].text("value") == "x"
     assert [str(source) for source in design.parts["C1"].sources] == ["n.net:1", "b.csv:2"]
@@ -127,7 +127,7 @@ def test_one_name_is_one_net_and_no_name_is_none():
         "X": (("R3", "1"),),
     }
     assert design.nets["GND"].classes == ("a", "b")
-    assert [made.automatic for made in design.nets.values()] == [False, True, True, False]
+    assert [made.automatic for made in design.nets.values()] == [True, True, False, False]
     (note,) = design.notes
     assert (note.kind, note.nets, [source.line for source in note.sources]) == ("nets-merged", ("GND",), [12])
 
@@ -195,8 +195,8 @@ def test_pins_come_from_symbol_and_nodes_once_each():
     design = joined(netlist([record], [NetRecord("A", "1", nodes, Source("n.net", 5))]))
     assert [(pin.number, pin.name, pin.type, pin.net) for pin in design.parts["U1"].pins] == [
         ("1", "VCC", "power", "A"),
-        ("3", "IN", "", None),
         ("2", "GND", "power_in", "A"),
+        ("3", "IN", "", None),
         ("9", "", "", "A"),
     ]
 
@@ -206,12 +206,12 @@ def test_duplicate_reference_keeps_both():
     design = joined(
         netlist(parts, [net("A", "J2.1 R1.1"), net("B", "J2.2", 101), net("C", "J2.3 J2.7", 102)]), bom(row("J2", line=4, type="X"))
     )
-    assert list(design.parts) == ["J2", "J2 (3)", "J2 (2)", "R1"]
+    assert list(design.parts) == ["J2", "J2 (2)", "J2 (3)", "R1"]
     assert pins(design.parts["J2"]) == [("1", "A"), ("2", "B"), ("7", "C")]
     assert pins(design.parts["J2 (3)"]) == [("2", "B"), ("3", "C"), ("7", "C")]
     assert design.nets["A"].pins == (("J2", "1"), ("R1", "1"))
     assert design.nets["B"].pins == (("J2", "2"), ("J2 (3)", "2"))
-    assert design.nets["C"].pins == (("J2 (3)", "3"), ("J2", "7"), ("J2 (3)", "7"))
+    assert design.nets["C"].pins == (("J2", "7"), ("J2 (3)", "3"), ("J2 (3)", "7"))
     assert [design.parts[ref].text("type") for ref in ("J2", "J2 (3)")] == ["X", "X"]
     note = design.notes[0]
     assert (note.kind, note.parts, [source.line for source in note.sources]) == ("duplicate-reference", ("J2", "J2 (3)"), [5, 9])
@@ -233,7 +233,7 @@ def test_unlisted_reference_is_kept_as_a_stub():
 def test_references_that_look_alike():
     design = joined(netlist([part("R1", line=1), part("Ｒ1", line=2), part("Ｃ5", line=3), part("µ1", line=4), part("μ1", line=5)]))
     assert notes(design) == [("confusable-reference", ("R1", "Ｒ1")), ("confusable-reference", ("μ1", "µ1"))]
-    assert list(design.parts) == ["R1", "Ｒ1", "Ｃ5", "µ1", "μ1"]
+    assert list(design.parts) == ["R1", "µ1", "μ1", "Ｃ5", "Ｒ1"]
 
 
 # BOM
@@ -278,7 +278,7 @@ def test_matching_of_references(known, listed, applied, kinds):
 def test_both_directions_one_note_each_and_no_part_is_added():
     design = joined(TWO, bom(row("R1 R9 R8", line=2), row("R9", line=3)))
     assert notes(design) == [("not-in-netlist", ("R9",)), ("not-in-netlist", ("R8",)), ("not-in-bom", ("C1",))]
-    assert list(design.parts) == ["R1", "C1"]
+    assert list(design.parts) == ["C1", "R1"]
     assert not joined(TWO).has_bom
     assert joined(TWO).notes == ()
 

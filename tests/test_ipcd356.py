@@ -10,6 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from checker import limits, plugins
+from checker.api import verify
 from checker.assemble.bom_match import CUT
 from checker.assemble.join import assemble
 from checker.errors import InputError
@@ -158,6 +159,12 @@ def test_sides(access: str, sides: str) -> None:
     assert reading.pads[-1].side == sides
 
 
+def test_a_board_with_lands_on_top_only_or_with_holes_only() -> None:
+    for access, side in (("01", "top"), ("00", "both")):
+        reading = file(land("A", "R1", "1", access=access), land("A", "R2", "1", access="00"))
+        assert [pad.side for pad in reading.pads] == [side, "both"]
+
+
 def test_copper_inside_the_board_is_on_its_net_and_no_pad() -> None:
     reading = file(*plain(*PAIR), land("A", "R3", "1", access="04"), land("A", "VIA", "", access="02", code="307"))
     assert wired(reading)["A"] == ["R1.1", "R2.1", "R3.1"]
@@ -231,7 +238,10 @@ def test_a_name_as_long_as_the_form_allows_may_be_cut() -> None:
     reading = file(*plain("FOURTEEN_CHARS R1 1", "FOURTEEN_CHARS R2 1"))
     (note,) = reading.notes
     assert (note.kind, note.nets) == ("nets-merged", ("FOURTEEN_CHARS",))
-    assert not file(*plain("THIRTEEN_CHAR R1 1", "THIRTEEN_CHAR R2 1")).notes
+    for whole in ("THIRTEEN_CHAR", "NET-(J1-PIN_1)"):
+        assert not file(*plain(f"{whole} R1 1", f"{whole} R2 1")).notes
+    assert file(*plain("NET-(J10-PIN_1 R1 1", "NET-(J10-PIN_1 R2 1")).notes
+    assert file(*plain("TED-(U1-PAD15) R1 1", "TED-(U1-PAD15) R2 1")).notes
 
 
 def test_parts_whose_references_are_cut_alike_are_told_apart_part_by_part() -> None:
@@ -498,3 +508,32 @@ def test_real_boards_are_read_and_joined(name: str) -> None:
     design = assemble(name, [reading], Declaration())
     assert len(design.pads) == sum(line[0] == "3" for line in lines)
     assert all(pad.net in design.nets for pad in design.pads if pad.net is not None)
+
+
+@pytest.mark.parametrize(
+    ("name", "barrier_parts", "fails", "apart"),
+    [
+        (
+            "mains-strip",
+            {"K1", "K2", "K3", "K4", "PS1"},
+            {("fuse", ("RV1", "F1")), ("stored-charge", ("C1",))},
+            {("PS1", "R1"): 23.8522},
+        ),
+        ("engine-ecu", {"U4"}, set(), {}),
+    ],
+)
+def test_what_is_said_of_real_boards(
+    name: str, barrier_parts: set[str], fails: set[tuple[str, tuple[str, ...]]], apart: dict[tuple[str, ...], float]
+) -> None:
+    """Source: types of the parts and the nets, looked through by hand; the pads nearest across the barrier from their places."""
+    folder = SAMPLES / name
+    if not folder.is_dir():
+        pytest.skip("the folder of samples is absent")
+    report = verify(folder / "board.ipc", bom=[folder / "bom.csv"])
+    assert {part.part for barrier in report.barriers for part in barrier.parts} == barrier_parts
+    assert {(v.rule, tuple(v.parts)) for v in report.verdicts if v.outcome == "fail"} == fails
+    pads = {tuple(v.parts): v.found.value for v in report.verdicts if v.rule == "pad-distance" and v.found is not None}
+    assert pads == apart
+    if name == "mains-strip":
+        side = {net: domain.side for domain in report.domains for net in domain.nets}
+        assert (side["NET-(J1-PIN_1)"], side["S1-AC{SLASH}L)"], side["GND"]) == ("primary", "primary", "secondary")

@@ -86,3 +86,19 @@ def test_pins_with_names_keep_them():
     )
     made = with_pin_names(replace(bare, parts={"D1": said}), choice(parts))
     assert [pin.name for pin in made.parts["D1"].pins] == ["A", "K"]
+
+
+@pytest.mark.parametrize(
+    ("nets", "kept"),
+    [
+        (("a", "b", "c", "d"), True),
+        (("VBULK", "b", "c", "PGND"), True),
+        (("PGND", "b", "c", "d"), False),  # + on ground
+        (("a", "GND", "c", "d"), False),  # ~ on ground
+        (("a", "b", "c", "+400V"), False),  # - on a rail
+    ],
+)
+def test_a_bridge_whose_surroundings_say_otherwise_is_not_named_by_usage(nets, kept):
+    parts = {"BR1": ("bridge", dict(zip("1234", nets, strict=True)))}
+    pins, _ = named(parts, footprints={"BR1": "Diode_Bridge_GBU"})["BR1"]
+    assert "".join(pins.values()) == ("+~~-" if kept else "")

@@ -13,9 +13,10 @@ from checker.assemble.nets import merged
 from checker.assemble.pads import placed
 from checker.assemble.variants import apply_variant, check_variant, known_variants
 from checker.errors import ArgumentError
-from checker.model.circuit import Design, Input, Net, Pin
+from checker.model.circuit import Design, Input, Net, Part, Pin
 from checker.model.declaration import Declaration
 from checker.model.fact import NOWHERE, Source
+from checker.model.order import natural
 from checker.model.reading import Node, Note, PartRecord, Reading, SymbolPin
 from checker.neutral import neutral
 
@@ -53,8 +54,8 @@ def assemble(name: str, readings: Sequence[Reading], declaration: Declaration, v
     notes += unused(book, circuit.nets, circuit.joined, declaration)
     return Design(
         name,
-        {ref: draft.part() for ref, draft in book.drafts.items()},
-        _with_copies(book, circuit.nets),
+        {ref: _in_order(book.drafts[ref].part()) for ref in sorted(book.drafts, key=natural)},
+        _sorted_nets(_with_copies(book, circuit.nets)),
         tuple(notes),
         tuple(Input(reading.role, reading.path, reading.sha256) for reading in readings),
         variant,
@@ -62,6 +63,20 @@ def assemble(name: str, readings: Sequence[Reading], declaration: Declaration, v
         known,
         placed(netlists[0].pads, circuit.nets, circuit.joined),
     )
+
+
+def _in_order(part: Part) -> Part:
+    """The part with its pins by number: nothing may depend on the order of a file, which no two forms share."""
+    return replace(part, pins=tuple(sorted(part.pins, key=lambda pin: natural(pin.number))))
+
+
+def _sorted_nets(nets: Mapping[str, Net]) -> dict[str, Net]:
+    """Nets by name, with their pins by reference and number."""
+
+    def place(pin: tuple[str, str]) -> tuple[object, ...]:
+        return natural(pin[0]), natural(pin[1])
+
+    return {name: replace(nets[name], pins=tuple(sorted(nets[name].pins, key=place))) for name in sorted(nets, key=natural)}
 
 
 def _book(netlist: Reading) -> tuple[Book, list[Note]]:

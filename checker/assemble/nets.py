@@ -12,15 +12,19 @@ from checker.model.reading import NetRecord, Node, Note
 from checker.neutral import neutral
 
 _SHOWN = 5
-_AUTOMATIC = re.compile(
-    r"Net-\(.*\)|unconnected-\(.*\)|N-[0-9]{4,}|<unnamed:.*>|unnamed_net[0-9]*|N\$[0-9]+|\$[0-9]+N[0-9]+"
-    r"|Net[A-Z]{1,6}[0-9]+_[0-9A-Za-z]+|N[0-9]{5,}|[0-9]+|",
-    re.DOTALL,
+_AUTOMATIC = re.compile(  # the last line: the end of such a name, all that some forms keep
+    r"Net-\(.*|unconnected-\(.*|N-[0-9]{4,}|<unnamed:.*>|unnamed_net[0-9]*|N\$[0-9]+|\$[0-9]+N[0-9]+"
+    r"|Net[A-Z]{1,6}[0-9]+_[0-9A-Za-z]+|N[0-9]{5,}|[0-9]+|"
+    r"|[a-z]{0,10}-?\([a-z]{1,6}[0-9]+[a-z]?-[^()]*\)(?:_[0-9]+)?|[^(]*\)(?:_[0-9]+)?",
+    re.DOTALL | re.IGNORECASE,
 )
 
 
 def is_automatic(name: str) -> bool:
-    """Whether a net name was made by a program: none at all, digits only, `Net-(R1-Pad1)`, `N$12`, `NetR1_2` and the like."""
+    """Whether a net name was made by a program: none at all, digits only, `Net-(R1-Pad1)`, `N$12`, `NetR1_2` and the like.
+
+    Forms that keep a few characters of a name or write it in capitals leave `NET-(R100-PAD1`, `ED-(U1-PAD15)` or `D4{SLASH}SDA)`.
+    """
     return _AUTOMATIC.fullmatch(name.removeprefix("/")) is not None
 
 

@@ -36,7 +36,8 @@ _USUAL = (
 def with_pin_names(design: Design, choice: Mapping[str, Candidate]) -> Design:
     """The design with names for the pins of parts that have none; parts that nothing names stay as they are."""
     bare = {ref: part for ref, part in design.parts.items() if part.pins and not any(pin.name.strip() for pin in part.pins)}
-    found = {ref: made for ref, part in bare.items() if (made := _named(part, choice[ref].kind)) is not None}
+    named = {ref: made for ref, part in bare.items() if (made := _named(part, choice[ref].kind)) is not None}
+    found = {ref: part for ref, part in named.items() if not _contradicted(part, design, choice)}
     diodes = [ref for ref, part in bare.items() if ref not in found and _two(part, choice[ref].kind)]
     votes = {ref: _vote(bare[ref], design, choice) for ref in diodes if choice[ref].kind != "led"}
     total = sum(votes.values())
@@ -78,6 +79,13 @@ def _implied(part: Part, kind: str, count: int) -> Iterator[tuple[str, ...]]:
         yield from (tuple(names) for of, pattern, names in _USUAL if of == kind and pattern.search(package))
     if kind == "bridge" and count == 4 and any(_INLINE.search(text) for text in (package, part.text("value"), part.text("type"))):
         yield ("+", "~", "~", "-")
+
+
+def _contradicted(part: Part, design: Design, choice: Mapping[str, Candidate]) -> bool:
+    """Whether the surroundings of a bridge say otherwise than usage: that its + is its -, or that one of its ~ is a rail."""
+    told = [(pin.name, _plus(pin.net, design, choice)) for pin in part.pins if pin.usual]
+    wrong = {"+": -1, "-": 1}
+    return {name for name, _ in told} == {"+", "-", "~"} and any(plus and wrong.get(name, plus) == plus for name, plus in told)
 
 
 def _two(part: Part, kind: str) -> bool:

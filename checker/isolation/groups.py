@@ -17,7 +17,8 @@ from checker.model.circuit import Part, Pin
 Groups = tuple[tuple[str, ...], ...]
 
 # surge limiters carry nothing in normal use; whether they join two islands is decided with the capacitors
-LIMITERS = frozenset({"varistor", "gas-tube", "spark-gap"})
+GAPS = frozenset({"gas-tube", "spark-gap"})
+LIMITERS = GAPS | {"varistor"}
 OPEN_KINDS = CONNECTORS | MECHANICAL | LIMITERS | {"capacitor"}
 HALVED = frozenset({"optocoupler", "digital-isolator", "isolated-driver", "isolated-amplifier", "solid-state-relay"})
 MAGNETICS_PINS = 12  # a transformer with as many pins is a set of them in one package, line side against cable side

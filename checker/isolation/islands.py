@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
-from checker.isolation.groups import LIMITERS, TRANSFORMERS, Groups, groups
+from checker.isolation.groups import GAPS, LIMITERS, TRANSFORMERS, Groups, groups
 from checker.model.candidate import CONNECTORS, INSULATING, MECHANICAL, Candidate
 from checker.model.circuit import Design, Part, Pin
 from checker.model.names import earth_like, role
@@ -258,7 +258,7 @@ def settle_capacitors(isle: Islands) -> None:
     _find_links(isle)
     members = isle.members()
     stubs = {island: is_stub(isle, nets) for island, nets in members.items()}
-    for ref, candidate in isle.choice.items():
+    for ref, candidate in sorted(isle.choice.items(), key=lambda item: item[1].kind in GAPS):  # in a string, the gap insulates
         if (
             (candidate.kind != "capacitor" and candidate.kind not in LIMITERS)
             or not isle.design.parts[ref].fitted

@@ -198,7 +198,7 @@ class _Board:
         """The copper of each record that says where it lies; a note on those that do not, or lie inside the board."""
         assert self.units is not None  # every record was read with units
         length, angle = self.units.length, self.units.angle
-        bottom = max((found.access or 0 for found in self.records), default=0)
+        bottom = max(2, *(found.access or 0 for found in self.records))  # a board has two sides, whether or not lands are on both
         pads: list[PadRecord] = []
         faults: list[Record] = []
         inside = 0

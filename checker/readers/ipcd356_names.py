@@ -26,6 +26,7 @@ from checker.readers.ipcd356_records import NET, PIN, REFERENCE, Record
 NAMELESS = "?"  # the pin of a land that belongs to a part and has no number
 
 _ALIAS = re.compile(r"[CP][ \t]+NNAME(\S++)[ \t]++(\S.*)\Z")
+_WHOLE = re.compile(r"Net-\([^()]*\)\Z", re.IGNORECASE)  # a name that nothing is missing from
 _SHOWN = 5
 
 
@@ -66,7 +67,7 @@ class Aliases:
                 record.net = name
             elif re.fullmatch(r"NNAME\d+", record.net):
                 unknown.setdefault(record.net, record.line)
-            elif len(record.net) == NET:
+            elif len(record.net) == NET and not _WHOLE.match(record.net):
                 cut.setdefault(record.net, record.line)
         return [*self._unknown(unknown), *self._cut(cut)]
 

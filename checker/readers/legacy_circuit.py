@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
+
 from checker import limits
 from checker.errors import InputError
 from checker.files import Blob
@@ -41,11 +43,15 @@ class Circuit:
             raise InputError(self.path, f"{what} is too long", line=line, found=text, expected=expected)
         return text
 
+    def places(self) -> dict[str, Source]:
+        """Each reference and where it stands first."""
+        return {ref: source for ref, (_, source, _) in self._parts.items()}
+
     def _bounded(self, count: int, what: str, limit: int, line: int) -> None:
         if count > limit:
             raise InputError(self.path, f"the file holds too many {what}", line=line, expected=f"at most {limit:,}")
 
-    def reading(self, blob: Blob, form: str, notes: tuple[Note, ...]) -> Reading:
+    def reading(self, blob: Blob, form: str, notes: Iterable[Note]) -> Reading:
         """The whole file. Raises InputError when it holds no parts or connects nothing."""
         if not self._parts:
             raise InputError(self.path, "the netlist holds no parts", remedy="Export the netlist again, whole.")
@@ -63,5 +69,5 @@ class Circuit:
             sha256=blob.sha256,
             parts=tuple(PartRecord(ref, facts, source, tuple(pins.values())) for ref, facts, source, pins in parts),
             nets=tuple(NetRecord(net, net, tuple(nodes.values()), source) for net, (source, nodes) in self._nets.items()),
-            notes=notes,
+            notes=tuple(notes),
         )

@@ -9,6 +9,7 @@ first blank. The form has no values: those come from the bill of materials.
 from __future__ import annotations
 
 import re
+from collections.abc import Iterator, Mapping
 
 from checker import limits
 from checker.errors import InputError
@@ -22,8 +23,8 @@ from checker.readers.legacy_circuit import Circuit
 FORM = "netlist of lines"
 
 _WORD = re.compile(r"[^ \t\r\n\f\v]++")
-_PIN = re.compile(r"[^\s\d,;:\"'()\[\]{}<>=-][^\s,;\"'(){}<>=]*-[^\s,;\"'(){}<>=]+\Z")
 _SHOWN = 5
+_LOOKED_AT = 4  # hyphens of a reference
 _ROW = "a net, a TAB, then pins such as R1-2"
 
 
@@ -39,13 +40,10 @@ def _split(line: str) -> tuple[str, list[str]]:
 def claims(head: str) -> bool:
     """Whether nearly every line is a net with pins, and one of them connects two."""
     lines = [line for line in head.replace("\r", "\n").split("\n") if line.strip(sniff.WHITE)]
-    if not lines or head.startswith(("(", "<", "*", ".")):
-        return False
-    rows = [_split(line) for line in lines]
-    if len(head) > sniff.HEAD // 2:
-        rows[-1] = rows[-1][0], rows[-1][1][:-1] or rows[-1][1]  # the window may cut the last word
-    fitting = [pins for name, pins in rows if name and name[-1] not in ":,;=" and pins and all(map(_PIN.match, pins))]
-    return any(len(pins) > 1 for pins in fitting) and 10 * len(fitting) >= 9 * len(rows)
+    if lines and len(head) > sniff.HEAD // 2:
+        lines[-1] = lines[-1].rpartition(" ")[0]  # the window may cut the last word
+    fitting = [line for line in lines if sniff.NET_LINE.match(line)]
+    return any(len(_split(line)[1]) > 1 for line in fitting) and 10 * len(fitting) >= 9 * len(lines)
 
 
 def _net(circuit: Circuit, line: str, at: int) -> None:
@@ -66,18 +64,19 @@ def _net(circuit: Circuit, line: str, at: int) -> None:
         circuit.pin(ref, circuit.name(number, "the number of a pin", at), name, at)
 
 
-def _doubtful(reading: Reading) -> list[Note]:
+def _doubtful(places: Mapping[str, Source]) -> Iterator[Note]:
     """Parts that may be pins of another part with a hyphen in their names: `U1-OUT-A` beside `U1-3`."""
-    lines = {part.ref: part.source for part in reading.parts}
-    found = {
-        ref: ref[: at.start()] for ref in lines for at in re.finditer("-", ref) if at.start() and ref[: at.start()] in lines
-    }  # fmt: skip
-    if not found:
-        return []
-    shown = list(found)[:_SHOWN]
-    names = ", ".join(f"{neutral(ref, 40)} or a pin of {neutral(found[ref], 40)}" for ref in shown)
-    text = f"{len(found):,} parts may be pins of another part, since the last hyphen divides ({names})"
-    return [Note("skipped", text, tuple(lines[ref] for ref in shown), tuple(shown))]
+    found: dict[str, str] = {}
+    for ref in places:
+        words = ref.split("-", _LOOKED_AT)
+        for count in range(1, len(words)):
+            if (stem := "-".join(words[:count])) in places:
+                found[ref] = stem
+    if found:
+        shown = list(found)[:_SHOWN]
+        names = ", ".join(f"{neutral(ref, 40)} or a pin of {neutral(found[ref], 40)}" for ref in shown)
+        text = f"{len(found):,} parts may be pins of another part, since the last hyphen divides ({names})"
+        yield Note("skipped", text, tuple(places[ref] for ref in shown), tuple(shown))
 
 
 def read(blob: Blob) -> Reading:
@@ -96,9 +95,8 @@ def read(blob: Blob) -> Reading:
             raise InputError(blob.path, "the file holds too many pins", line=at, expected=f"at most {limits.ATOMS:,}")
         if row.strip(sniff.WHITE):
             _net(circuit, row, at)
-    reading = circuit.reading(blob, FORM, (Note("encoding", note, (Source(blob.path),)),) if note else ())
-    notes = _doubtful(reading)
-    return circuit.reading(blob, FORM, (*reading.notes, *notes)) if notes else reading
+    notes = [Note("encoding", note, (Source(blob.path),))] if note else []
+    return circuit.reading(blob, FORM, (*notes, *_doubtful(circuit.places())))
 
 
 READER = Reader(form=FORM, role="netlist", claims=claims, read=read)

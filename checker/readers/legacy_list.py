@@ -33,8 +33,6 @@ from checker.readers.netlist_part import draft
 FORM = "legacy parenthesised netlist"
 
 _WORD = re.compile(r"[^ \t\r\n\f\v]++")
-_HEADER = re.compile(r"#[ \t]*+\S++ Netlist Version|\([ \t\r\n]*+\{")
-_PART = re.compile(r"(?:#[^\n]*+\n[ \t\r\n]*+)*+\([ \t\r\n]*+\([ \t]++/[0-9A-Fa-f/]++[ \t]++[^\s(){}]++[ \t]++[^\s(){}]++[ \t]++")
 _REFERENCE = re.compile(r"[^\W\d]")  # begins with a letter or _
 _LIBRARY = re.compile(r"\{Lib=(.*)\}\Z", re.DOTALL)
 _NOTHING = frozenset({"$noname", "~", "?"})  # as a footprint
@@ -45,11 +43,11 @@ _NAMED = "a stamp, a footprint, a reference and a value"
 
 @dataclass(slots=True)
 class _Entry:
-    """One part as written. words: what stands in front of its pins. pins: (number, net, line)."""
+    """One part as written. words: what stands in front of its pins. pins: number -> its nets and their lines, "" for no net."""
 
     line: int
     words: list[str] = field(default_factory=list)
-    pins: list[tuple[str, str, int]] = field(default_factory=list)
+    pins: dict[str, dict[str, int]] = field(default_factory=dict)
 
 
 class _List:
@@ -75,7 +73,7 @@ class _List:
             return
         for word in _WORD.findall(text):
             if self._braces:
-                if word.endswith("}"):
+                if word.endswith("}") and "{" not in word:
                     self._braces = 0
             elif self._depth < 2:
                 self._outside(word, line)
@@ -118,7 +116,7 @@ class _List:
         if len(self._pin) != 2:
             self._fail("a pin has not two words", line, " ".join(self._pin) or "nothing", "its number and its net")
         number, net = (self.circuit.name(word, "the name of a pin or net", line) for word in self._pin)
-        self._entry.pins.append((number, "" if net == _NOWHERE else net, line))
+        self._entry.pins.setdefault(number, {}).setdefault("" if net == _NOWHERE else net, line)
 
     def _inside(self, word: str, line: int) -> None:
         if word.count("(") != word.count(")") and (word[0] == "(" or word[-1] == ")"):
@@ -151,16 +149,16 @@ class _List:
         entry.words = words
         name = self._called(ref, entry)
         self.circuit.part(name, entry.line, draft(form(entry.line, *said), self.path).facts)
-        for number, net, line in entry.pins:
-            self.circuit.pin(name, number, net, line)
+        for number, nets in entry.pins.items():
+            for net, line in nets.items():
+                self.circuit.pin(name, number, net, line)
 
     def _called(self, ref: str, entry: _Entry) -> str:
         """The name of a part: its reference, or one of its own when another part has that and this is no further unit of it."""
         known = self._known.setdefault(ref, [])
-        nets = {number: net for number, net, _ in entry.pins}
-        for name, other in known:
-            if other.words[1:] == entry.words[1:] and all(nets.get(number, net) == net for number, net, _ in other.pins):
-                other.pins.extend(entry.pins)
+        for name, other in known[-1:]:
+            if _of_one_part(other, entry):
+                other.pins.update(entry.pins)
                 return name
         name, number = ref, len(known) + 1
         while known and (name == ref or name in self._known):
@@ -168,7 +166,8 @@ class _List:
         if known:
             first = known[0][1].line
             text = (
-                f"{neutral(ref, 80)} is listed twice (lines {first} and {entry.line}); both are kept, the second as {neutral(name, 80)}"
+                f"{neutral(ref, 80)} is listed twice (lines {first} and {entry.line}); "
+                f"both are kept, the second as {neutral(name, 80)}"
             )
             places = Source(self.path, first), Source(self.path, entry.line)
             self.notes.append(Note("duplicate-reference", text, places, (ref, name)))
@@ -187,9 +186,16 @@ class _List:
         raise InputError(self.path, what, line=line, found=found, expected=expected)
 
 
+def _of_one_part(one: _Entry, other: _Entry) -> bool:
+    """Whether the second entry is a further unit of the first: written alike, with pins of its own, none of them on two nets."""
+    shared = [number for number in other.pins if number in one.pins]
+    fits = all(one.pins[number].keys() == other.pins[number].keys() for number in shared)
+    return one.words[1:] == other.words[1:] and fits and len(shared) < len(other.pins)
+
+
 def claims(head: str) -> bool:
     """Whether the text begins with the header of the form, or with a list whose first entry looks like a part of it."""
-    return _HEADER.match(head) is not None or _PART.match(head) is not None
+    return sniff.LEGACY_LIST.match(head) is not None
 
 
 def read(blob: Blob) -> Reading:

@@ -14,7 +14,18 @@ WHITE = " \t\r\n\f\v"  # and nothing else: a no-break space is an ordinary chara
 _LEADING = re.compile(rb"(?:\xef\xbb\xbf)?[ \t\r\n\f\v]*+")
 _BINARY = (b"PK\x03\x04", b"%PDF", b"\xd0\xcf\x11\xe0", b"\x1f\x8b")
 _WORD = re.compile(r"\([ \t\r\n\f\v]*+([^ \t\r\n\f\v()\"]++)")
-_LEGACY = re.compile(r"#[ \t]*\S+ Netlist Version|\([ \t\r\n]*\{")
+LEGACY_LIST = re.compile(  # its header, or a list that begins with a part of it
+    r"#[ \t]*+\S++ Netlist Version|(?:#[^\n]*+\n[ \t\r\n]*+)*+\([ \t\r\n]*+(?:\{|\([ \t]++/[0-9A-Fa-f/]++(?:[ \t]++\S++){3})"
+)
+_PIN_OF = r"[A-Za-z+_#][^\s,;:=]*-[^\s,;:=]+"
+NET_LINE = re.compile(  # a net, then pins such as R1-2; only a TAB ends a name with blanks
+    rf"(?:[^\t,;]*[^\s,;:=]\t|[^\s,;]*[^\s,;:=] )[ \t]*+{_PIN_OF}(?:[ \t]++{_PIN_OF})*+[ \t]*\Z"
+)
+SPICE_START = re.compile(r"\*|\.title\b", re.IGNORECASE)
+_STATEMENT = re.compile(  # to a simulator, at the beginning of a line
+    r"\.(?:subckt|ends?|model|tran|ac|dc|op|include|lib|param|global|options?|ic|backanno)(?!\S)", re.IGNORECASE
+)
+_CARD = re.compile(r"[A-Za-z]\S*(?:[ \t]+[^\s,;:]+){3}|[*+.]")  # a part with two nodes and a value, or a line beside one
 _TAG = re.compile(r"<([^\s<>/!?&\"'=]++)")
 _TEST_RECORD = re.compile(r"^(?:3[0-9]7[^,;\t\n]{20}|P  +(?:JOB|CODE|UNITS|TITLE|NUM|REV|NNAME))", re.MULTILINE)
 _JSON = re.compile(r"\{[ \t\r\n]*+[\"}]|\[[ \t\r\n]*+[\[{\]\"0-9-]")
@@ -95,7 +106,7 @@ def describe(head: str) -> str:
         return "a spreadsheet workbook of the old binary form"
     if _CONTROL.search(head):
         return "binary data"
-    if _LEGACY.match(head):
+    if LEGACY_LIST.match(head):
         return "a legacy parenthesised netlist"
     if head.startswith("("):
         return _parenthesised(head)
@@ -108,7 +119,13 @@ def describe(head: str) -> str:
     for beginning, form in _BEGINNINGS:
         if head[: len(beginning)].casefold() == beginning.casefold():
             return form
-    return _lines(head)
+    return "a SPICE netlist" if spice_lines(head) else _lines(head)
+
+
+def spice_lines(head: str) -> bool:
+    """Whether lines that look like parts stand beside a statement to a simulator; the first line is a title and may be anything."""
+    lines = [line for line in head.replace("\r", "\n").split("\n")[1:] if line.strip(WHITE)]
+    return any(map(_STATEMENT.match, lines)) and 10 * sum(map(bool, map(_CARD.match, lines))) >= 8 * len(lines)
 
 
 def _parenthesised(head: str) -> str:
@@ -135,6 +152,8 @@ def _lines(head: str) -> str:
     lines = [line for line in head.splitlines() if line.strip()][:50]
     if 10 * sum(bool(_KEY_LINE.match(line)) for line in lines) >= 8 * len(lines):
         return "a YAML file"
+    if 10 * sum(bool(NET_LINE.match(line)) for line in lines) >= 8 * len(lines):
+        return "a netlist of lines"
     if any(2 * sum(mark in line for line in lines) > len(lines) for mark in "\t;,"):
         return "a delimited table"
     return "text of no known form"

@@ -79,7 +79,7 @@ def _of_entry(
         return clause.fails(Subject((ref, *loads[:6]), tuple(bare), key=(ref, "fuse")), "A phase has no fuse.", because, step)
     # the pole with the fewest parts before its fuse is the one the fuse is meant for; every phase needs its own
     fused = [pole for pole in poles if reached[pole].fuses]
-    judged = fused if phases else [min(fused, key=lambda pole: len(reached[pole].loads))]
+    judged = fused if phases else [min(fused, key=lambda pole: (len(reached[pole].loads), len(reached[pole].resistors), pole))]
     for pole in judged:
         ahead = _ahead(analysis, clause, ref, entry, pole, reached, facts)
         if ahead is not None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 
+from checker.model.names import earth_like
 from checker.model.rule import Analysis
 
 _LIMITERS = frozenset({"varistor", "gas-tube", "spark-gap", "tvs"})
@@ -38,14 +39,21 @@ def _from(analysis: Analysis, parts: tuple[str, ...], start: str, net: str) -> I
     for end in analysis.design.parts[parts[-1]].nets():
         if end == net:
             continue
-        if end in poles or is_earth(analysis, end):
+        further = [] if end in poles else _further(analysis, end, parts)
+        if not further and (end in poles or is_earth(analysis, end)):
             if poles.get(end) != poles[start]:
                 yield LimiterString(parts, (start, end))
-        elif len(parts) < _LONGEST and len(analysis.design.nets[end].pins) <= _CROWDED:
-            others = analysis.fitted_on(end)
-            for ref in others if all(analysis.kind(other) in _LIMITERS for other in others) else ():
-                if ref not in parts:
-                    yield from _from(analysis, (*parts, ref), start, end)
+        elif len(parts) < _LONGEST:
+            for ref in further:
+                yield from _from(analysis, (*parts, ref), start, end)
+
+
+def _further(analysis: Analysis, net: str, parts: tuple[str, ...]) -> list[str]:
+    """The limiters that follow on a net with nothing but limiters; none on protective earth itself."""
+    if len(analysis.design.nets[net].pins) > _CROWDED or earth_like(net):
+        return []
+    others = analysis.fitted_on(net)
+    return [ref for ref in others if ref not in parts] if all(analysis.kind(ref) in _LIMITERS for ref in others) else []
 
 
 def is_earth(analysis: Analysis, net: str) -> bool:

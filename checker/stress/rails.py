@@ -87,7 +87,7 @@ def grounds(board: Board) -> dict[str, str]:
             busy = {net: len(board.design.nets[net].pins) for net in domain.nets if net in board.design.nets}
             alike = [net for net in busy if ground_like(net)] or list(busy)
             if alike:
-                found[name] = max(alike, key=lambda net: busy[net])
+                found[name] = min(alike, key=lambda net: (-busy[net], supply_volts(net) is not None or net[:1] in "V+", net))
     return found
 
 
