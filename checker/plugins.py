@@ -35,6 +35,7 @@ BUILT_IN: Mapping[str, Mapping[str, str]] = {
         "legacy-lines": "checker.readers.legacy_lines:READER",
         "spice": "checker.readers.spice:READER",
         "bom": "checker.readers.bom_table:READER",
+        "workbook": "checker.readers.workbook:READER",
         "parts": "checker.readers.parts_file:READER",
     },
     "rules": {
