@@ -186,7 +186,7 @@ def test_the_suffix_does_not_matter(run: Run, desk: Path) -> None:
     [
         (b"", "an empty file"),
         (SMALL.encode(), "an S-expression netlist"),
-        (b"PK\x03\x04\x14\0", "a spreadsheet workbook (zip)"),
+        (b"PK\x03\x04\x14\0", "the workbook is damaged"),
         (b"Price,Supplier,Stock\n1,2,3\n", "no header with a reference column"),
         (b'Reference,Value\nR1,"1k\nR2,1k\n', "a quote is opened and never closed"),
         (b"Reference,Value\nR1,1\0k\n", "binary data"),
