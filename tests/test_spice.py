@@ -70,7 +70,7 @@ def test_parts_nets_and_a_transformer_of_coupled_coils() -> None:
     reading = read(FLYBACK)
     assert [part.ref for part in reading.parts] == ["V1", "M1", "D1", "C1", "R1", "R2", "K1"]
     assert wired(reading)["SW"] == {"M1.D", "K1.L1"}
-    assert said(reading, "K1") | {} == said(reading, "K1") and said(reading, "K1")["windings"] == "1-2, 3-4"
+    assert said(reading, "K1")["windings"] == "1-2, 3-4"
     assert (said(reading, "C1")["value"], said(reading, "R1")["value"]) == ("100 uF", "1 k\u03a9")
     assert reading.title == "an isolated converter"
     assert plugins.reader_for(Blob("x.net", FLYBACK.encode()), "netlist").form == spice.FORM
@@ -102,15 +102,15 @@ def test_continuations_comments_and_the_end() -> None:
 
 
 @pytest.mark.parametrize(
-    ("text", "letter", "farads"),
+    ("text", "letter", "shown"),
     [
         ("1M", "R", "1 m\u03a9"), ("1Meg", "R", "1 M\u03a9"), ("4.7kOhm", "R", "4.7 k\u03a9"), ("10uF", "C", "10 uF"),
         ("2\u00b5", "C", "2 uF"), ("1e-9", "C", "1 nF"), ("100", "R", "100 \u03a9"), ("2.2n", "L", "2.2 nH"), ("abc", "R", ""),
         ("{2*R}", "R", ""),
     ],
 )  # fmt: skip
-def test_figures_as_simulators_read_them(text: str, letter: str, farads: str) -> None:
-    assert in_units(text, letter) == farads
+def test_figures_as_simulators_read_them(text: str, letter: str, shown: str) -> None:
+    assert in_units(text, letter) == shown
 
 
 def test_references_are_those_of_the_schematic() -> None:
@@ -130,9 +130,9 @@ BLOCK = "* t\nX1 a b FILTER\nX2 b c FILTER\nR9 a c 1k\n.subckt FILTER in out\nR1
 
 def test_sub_circuits_are_placed_where_they_are_named_and_may_follow() -> None:
     found = wired(read(BLOCK))
-    assert found["a"] == {"X1/R1.1", "R9.1"}
-    assert found["X1/mid"] == {"X1/R1.2", "X1/C1.1", "X1/L1.1"}
-    assert found["0"] == {"X1/C1.2", "X2/C1.2"}
+    assert found["a"] == {"/X1/R1.1", "R9.1"}
+    assert found["/X1/mid"] == {"/X1/R1.2", "/X1/C1.1", "/X1/L1.1"}
+    assert found["0"] == {"/X1/C1.2", "/X2/C1.2"}
 
 
 def test_a_sub_circuit_that_is_not_there_or_models_a_part_stays_one_part() -> None:
@@ -204,10 +204,8 @@ def test_sub_circuits_deep_and_multiplied() -> None:
 
 def test_lines_and_words_without_end() -> None:
     refused("* t\nR1 a b " + "1" * (limits.TOKEN + 1), "a line is too long")
-    refused(
-        "* t\nX1 " + "\n+ ".join(" ".join(f"n{at}" for at in range(row, row + 500)) for row in range(0, 30_000, 500)) + " A\n",
-        "pins",
-    )
+    rows = (" ".join(f"n{at}" for at in range(row, row + 500)) for row in range(0, 30_000, 500))
+    refused("* t\nX1 " + "\n+ ".join(rows) + " A\n", "too many pins of one part")
 
 
 def test_empty_files_and_files_of_another_form() -> None:
@@ -257,5 +255,5 @@ def test_damaged_copies_end_in_a_message_or_read(text: str, at: int, letter: str
 @pytest.mark.parametrize("name", ["spice-utf16.net", "spice-cp1252.net"])
 def test_samples(name: str) -> None:
     reading = read(read_file(SAMPLES / "formats" / name).data)
-    assert len(reading.parts) > 10
+    assert len(reading.parts) > 3
     assert len(reading.notes) > 1
