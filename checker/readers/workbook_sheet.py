@@ -2,64 +2,121 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from bisect import bisect_left, bisect_right
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 from decimal import Decimal, InvalidOperation
 
 from checker import limits
 from checker.errors import InputError
+from checker.readers import bom_headings as headings
 from checker.readers.bom_sections import Record
+
+Cell = tuple[int, int]  # row and column, from 1
+
+
+@dataclass(slots=True)
+class Room:
+    """What one workbook may still hold: a cell that is repeated, or a text that many cells name, is small in the file only."""
+
+    path: str
+    cells: int = limits.SHEET_CELLS
+    letters: int = limits.SHEET_TEXT
+
+    def take(self, letters: int) -> None:
+        """Room for a cell of so many characters. Raises InputError when there is none."""
+        self.cells -= 1
+        self.letters -= letters
+        if self.cells < 0:
+            raise InputError(self.path, "the workbook holds too many cells", expected=f"at most {limits.SHEET_CELLS:,}")
+        if self.letters < 0:
+            most = f"at most {limits.SHEET_TEXT:,} characters"
+            raise InputError(self.path, "the texts of all cells are too long together", expected=most)
 
 
 @dataclass(slots=True)
 class Sheet:
-    """One sheet. cells: row -> column -> text, both from 1, only what holds text.
+    """One sheet. cells: row -> column -> text, only what holds text.
 
-    unsolved: places of formulas without a stored value. faulty: places of errors such as #N/A. dates: places of dates.
-    hidden: rows that are not shown. down: ranges (first row, last row, column) that were merged.
+    unsolved: formulas without a stored value. faulty: errors such as #N/A. dates: cells that hold a date. hidden: first and last
+    of rows that are not shown. merged: first row, first column, last row, last column. carried: cells that `records` filled from
+    the first one of a merge, each with the row of that one. fault: why the rest of the sheet was not read.
     """
 
-    path: str
+    room: Room
     name: str
     shown: bool = True
     cells: dict[int, dict[int, str]] = field(default_factory=dict)
-    unsolved: list[str] = field(default_factory=list)
-    faulty: list[str] = field(default_factory=list)
-    dates: list[str] = field(default_factory=list)
-    hidden: set[int] = field(default_factory=set)
-    down: list[tuple[int, int, int]] = field(default_factory=list)
+    unsolved: list[Cell] = field(default_factory=list)
+    faulty: list[Cell] = field(default_factory=list)
+    dates: set[Cell] = field(default_factory=set)
+    hidden: list[tuple[int, int]] = field(default_factory=list)
+    merged: list[tuple[int, int, int, int]] = field(default_factory=list)
+    carried: dict[Cell, int] = field(default_factory=dict)
+    fault: InputError | None = None
 
     def put(self, row: int, column: int, text: str) -> None:
-        """A cell that holds text. Raises InputError for one far from the others: rows and columns of a BOM are few."""
-        if not text:
+        """A cell that holds text. Beyond what a list of parts may have, the sheet ends with a `fault`."""
+        if not text or self.fault is not None:
             return
         if column > limits.BOM_COLUMNS:
-            found, most = f"a cell in column {column:,} of {self.name}", f"at most {limits.BOM_COLUMNS}"
-            raise InputError(self.path, "too many columns", line=row, found=found, expected=most)
-        if row not in self.cells and len(self.cells) >= limits.BOM_ROWS:
-            raise InputError(self.path, f"more than {limits.BOM_ROWS:,} rows", line=row, expected=f"at most {limits.BOM_ROWS:,}")
-        self.cells.setdefault(row, {})[column] = text[: limits.TOKEN]
+            self.fault = self.refusal("too many columns", row, place(row, column), f"at most {limits.BOM_COLUMNS}")
+        elif row not in self.cells and len(self.cells) >= limits.BOM_ROWS:
+            self.fault = self.refusal(f"more than {limits.BOM_ROWS:,} rows", row, "", f"at most {limits.BOM_ROWS:,}")
+        elif len(text) > limits.TOKEN:
+            self.fault = self.refusal("a cell is too long", row, place(row, column), f"at most {limits.TOKEN:,} characters")
+        else:
+            self.room.take(len(text))
+            self.cells.setdefault(row, {})[column] = text
+
+    def refusal(self, what: str, row: int, found: str, expected: str = "", remedy: str = "") -> InputError:
+        """The error for a row of this sheet."""
+        return InputError(self.room.path, f"sheet {shown(self.name)}: {what}", line=row, found=found, expected=expected, remedy=remedy)
 
     def records(self) -> list[Record]:
         """Rows that hold something, each with its number, and a blank one wherever rows are left out.
 
-        Cells that were merged downwards stand in each of their rows.
+        What was merged downwards stands in each of its rows that holds something of its own; a figure or a mark such as `x`
+        that was merged over columns stands in each of them, since it can only count for all.
         """
-        for first, last, column in self.down:
-            text = self.cells.get(first, {}).get(column, "")
-            for row in range(first + 1, last + 1) if text else ():
-                if row in self.cells:
-                    self.cells[row].setdefault(column, text)
-        return list(self._records())
+        rows = sorted(self.cells)
+        for merge in self.merged:
+            self._carry(rows, *merge)
+        return list(self._records(rows))
 
-    def _records(self) -> Iterator[Record]:
+    def _carry(self, rows: Sequence[int], top: int, left: int, bottom: int, right: int) -> None:
+        text = self.cells.get(top, {}).get(left, "")
+        if not text:
+            return
+        over = range(left + 1, min(right, limits.BOM_COLUMNS) + 1) if _counts_for_all(text) else ()
+        for row in rows[bisect_left(rows, top) : bisect_right(rows, bottom)]:
+            there = self.cells[row]
+            if row == top and not any(column < left or column > right for column in there):
+                continue  # a caption over the whole table
+            for column in (*((left,) if row > top else ()), *over):
+                self.room.take(len(text))
+                if column not in there:
+                    there[column] = text
+                    self.carried[row, column] = top
+
+    def _records(self, rows: Sequence[int]) -> Iterator[Record]:
         before = 0
-        for row in sorted(self.cells):
+        for row in rows:
             if row > before + 1:
                 yield before + 1, []
             there = self.cells[row]
             yield row, [there.get(column, "") for column in range(1, max(there) + 1)]
             before = row
+
+    def hidden_rows(self) -> list[int]:
+        """The rows that hold something and are not shown."""
+        rows = sorted(self.cells)
+        found = {row for first, last in self.hidden for row in rows[bisect_left(rows, first) : bisect_right(rows, last)]}
+        return sorted(found)
+
+
+def _counts_for_all(text: str) -> bool:
+    return len(text) < 32 and (figure(text) is not None or headings.fitted("fitted+", text) is not None)
 
 
 def place(row: int, column: int) -> str:
@@ -71,15 +128,26 @@ def place(row: int, column: int) -> str:
     return f"{letters}{row}"
 
 
-def number(text: str, percent: bool = False) -> str:
-    """A stored figure as people write it: `100`, `0.47`, `5%`; floats carry noise behind the 15th digit."""
+def shown(name: str) -> str:
+    """A sheet's name as the programs write it before a cell, `Parts` or `'Parts 2'`."""
+    return name if name.isalnum() else "'" + name.replace("'", "''") + "'"
+
+
+def figure(text: str) -> Decimal | None:
+    """A stored figure without the noise that floats carry behind the 15th digit; None for other text."""
     try:
-        value = Decimal(f"{float(text):.15g}") * (100 if percent else 1)
+        value = Decimal(f"{float(text):.15g}")
     except (ValueError, InvalidOperation, OverflowError):
+        return None
+    return value if value.is_finite() else None
+
+
+def number(text: str, percent: bool = False) -> str:
+    """A stored figure as people write it: `100`, `0.47`, `5%`; other text as it is."""
+    value = figure(text)
+    if value is None:
         return text
-    if not value.is_finite():
-        return text
-    if not -15 <= value.adjusted() <= 15 and value:
-        return f"{value.normalize():E}{'%' * percent}"
-    written = f"{value.normalize():f}" if value else "0"
-    return f"{written}{'%' * percent}"
+    value = (value * 100 if percent else value).normalize()
+    if value and not -15 <= value.adjusted() <= 15:
+        return f"{value:E}{'%' * percent}"
+    return f"{value if value else 0:f}{'%' * percent}"

@@ -2,112 +2,146 @@
 
 from __future__ import annotations
 
+import posixpath
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
 from datetime import datetime, timedelta
 from typing import Any
 
 from checker import limits
 from checker.errors import InputError
-from checker.readers.workbook_sheet import Sheet, number, place
+from checker.readers.workbook_sheet import Room, Sheet, number, place
 from checker.readers.workbook_zip import Archive, attribute, local
 
-BOOK = "xl/workbook.xml"
+START = "_rels/.rels"
 
 _CELL = re.compile(r"\$?([A-Z]{1,3})\$?([0-9]{1,7})\Z")
-_LITERAL = re.compile(r'"([^"]*)"|\\(.)|\[[^\]]*\]|_.|\*.')
+_QUOTED = re.compile(r'"([^"]*)"|\\(.)')
+_ASIDE = re.compile(r'"[^"]*"|\\.|\[[^\]]*\]|_.|\*.')  # what of a format is no placeholder
+_ESCAPE = re.compile(r"_x([0-9A-Fa-f]{4})_")
 _DATES = frozenset((*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)))  # built-in formats of dates and times
 _PERCENTS = frozenset((9, 10))
+_LAST_DAY = 2_958_465  # 9999-12-31
 
 
-def sheets(archive: Archive) -> Iterator[Sheet]:
+@dataclass(frozen=True, slots=True)
+class _Format:
+    """How a style shows a figure: as per cent, as a date, with a unit behind it."""
+
+    percent: bool = False
+    dated: bool = False
+    unit: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class _Book:
+    """What the sheets of a workbook share. since_1904: from which of two days dates are counted."""
+
+    strings: Sequence[str]
+    formats: Sequence[_Format]
+    since_1904: bool
+
+
+def main(archive: Archive) -> str:
+    """The member that holds the workbook, "" when the archive is none."""
+    if START not in archive:
+        return ""
+    found = (name for kind, name in _targets(archive, "").values() if kind == "officeDocument" and name in archive)
+    name = next(found, "")
+    return name if name and next(archive.elements(name, "sheets"), None) is not None else ""
+
+
+def sheets(archive: Archive, room: Room) -> Iterator[Sheet]:
     """Every worksheet, in the order of the book. Raises InputError for a book that is damaged or too large."""
-    targets = _targets(archive)
-    strings = list(_strings(archive))
-    formats = list(_formats(archive))
-    book = next(archive.elements(BOOK, "workbook"), None)
-    if book is None:
-        raise InputError(archive.path, "the workbook has no sheets")
-    since_1904 = any(local(found) == "workbookPr" and attribute(found, "date1904") in ("1", "true") for found in book.iter())
-    named = [found for found in book.iter() if local(found) == "sheet"]
-    if len(named) > limits.SHEETS:
-        raise InputError(archive.path, "the workbook has too many sheets", expected=f"at most {limits.SHEETS}")
-    for found in named:
-        target = targets.get(attribute(found, "id"), "")
-        if target in archive and "/worksheets/" in f"/{target}":
-            sheet = Sheet(archive.path, attribute(found, "name")[:64], attribute(found, "state") in ("", "visible"))
-            _fill(archive, target, sheet, strings, formats, since_1904)
+    name = main(archive)
+    targets = _targets(archive, name)
+    shared = {kind: member for kind, member in targets.values() if member in archive}
+    properties = next(archive.elements(name, "workbookPr"), None)
+    since_1904 = properties is not None and attribute(properties, "date1904") in ("1", "true")
+    book = _Book(list(_strings(archive, shared.get("sharedStrings", ""))), _formats(archive, shared.get("styles", "")), since_1904)
+    for count, found in enumerate(archive.elements(name, "sheet")):
+        if count >= limits.SHEETS:
+            raise InputError(archive.path, "the workbook has too many sheets", expected=f"at most {limits.SHEETS}")
+        kind, member = targets.get(attribute(found, "id"), ("", ""))
+        if kind == "worksheet" and member in archive:
+            sheet = Sheet(room, attribute(found, "name")[:64], attribute(found, "state") in ("", "visible"))
+            _fill(archive, member, sheet, book)
             yield sheet
 
 
-def _targets(archive: Archive) -> dict[str, str]:
-    """id -> member, of the relations of the book to other files of the archive; links to the outside are no members."""
+def _targets(archive: Archive, name: str) -> Mapping[str, tuple[str, str]]:
+    """id -> (kind, member) of the relations of a member; links to the outside are left out, so that nothing follows them."""
+    folder, base = posixpath.split(name)
+    listed = posixpath.join(folder, "_rels", f"{base}.rels")
     found = {}
-    for relation in archive.elements("xl/_rels/workbook.xml.rels", "Relationship"):
-        target = relation.get("Target") or ""
-        found[relation.get("Id") or ""] = target.lstrip("/") if target.startswith("/") else f"xl/{target}"
+    for relation in archive.elements(listed, "Relationship"):
+        if (relation.get("TargetMode") or "Internal") != "Internal":
+            continue
+        target = posixpath.normpath(posixpath.join("/", folder, relation.get("Target") or ""))
+        found[relation.get("Id") or ""] = (relation.get("Type") or "").rpartition("/")[2], target.lstrip("/")
     return found
 
 
-def _strings(archive: Archive) -> Iterator[str]:
-    if "xl/sharedStrings.xml" not in archive:
-        return
-    for count, found in enumerate(archive.elements("xl/sharedStrings.xml", "si")):
+def _strings(archive: Archive, name: str) -> Iterator[str]:
+    for count, found in enumerate(archive.elements(name, "si") if name else ()):
         if count >= limits.STRINGS:
             raise InputError(archive.path, "the workbook holds too many texts", expected=f"at most {limits.STRINGS:,}")
         yield _text(found)
 
 
 def _text(element: Any) -> str:
-    """The text of a string with its runs; readings aids (`rPh`) are no part of it."""
-    words = []
-    for found in element.iter():
-        if local(found) == "t" and local(found.getparent()) != "rPh":
-            words.append(found.text or "")
-    return "".join(words)
+    """The text of a string with its runs; reading aids (`rPh`) are no part of it."""
+    return _plain("".join(found.text or "" for found in element.iter() if local(found) == "t" and local(found.getparent()) != "rPh"))
 
 
-def _formats(archive: Archive) -> Iterator[tuple[bool, bool, str]]:
-    """For each style: whether it shows per cent, whether dates, and a unit that stands behind the figure."""
-    if "xl/styles.xml" not in archive:
-        return
-    styles = next(archive.elements("xl/styles.xml", "styleSheet"), None)
-    codes = {}
-    for found in styles.iter() if styles is not None else ():
-        if local(found) == "numFmt":
-            codes[attribute(found, "numFmtId")] = attribute(found, "formatCode")
-    for found in styles.iter() if styles is not None else ():
-        if local(found) == "xf" and local(found.getparent()) == "cellXfs":
-            identity = attribute(found, "numFmtId", "0")
-            yield _format(int(identity) if identity.isdecimal() else 0, codes.get(identity, ""))
+def _plain(text: str) -> str:
+    """Characters that XML has no room for are written `_x000D_`; a line ends with LF alone."""
+    return _ESCAPE.sub(lambda found: chr(int(found[1], 16)), text).replace("\r\n", "\n") if "_x" in text else text
 
 
-def _format(identity: int, code: str) -> tuple[bool, bool, str]:
-    positive = code.partition(";")[0]
-    bare = _LITERAL.sub("", positive)
+def _formats(archive: Archive, name: str) -> Sequence[_Format]:
+    """The format of each style of a cell."""
+    codes: dict[str, str] = {}
+    found: list[_Format] = []
+    for element in archive.elements(name, "numFmt", "cellXfs") if name else ():
+        if local(element) == "numFmt":
+            codes[attribute(element, "numFmtId")] = attribute(element, "formatCode")
+            continue
+        for style in element:
+            identity = attribute(style, "numFmtId", "0")
+            found.append(_format(int(identity) if identity.isdecimal() and len(identity) < 9 else 0, codes.get(identity, "")))
+    return found
+
+
+def _format(identity: int, code: str) -> _Format:
+    """Only the first section of a format is looked at, the one for positive figures."""
+    code = code[: limits.CELL].partition(";")[0]
+    bare = _ASIDE.sub("", code).casefold().replace("general", "")
     percent = identity in _PERCENTS or "%" in bare
-    dated = identity in _DATES or (re.search(r"[ymdhs]", bare, re.IGNORECASE) is not None and "general" not in bare.lower())
-    behind = re.split(r"[0#?]|General", positive)[-1] if code else ""
-    unit = "".join(one or two for one, two in re.findall(r'"([^"]*)"|\\(.)', behind))
-    return percent, dated, unit
+    dated = identity in _DATES or re.search(r"[ymdhs]", bare) is not None
+    behind = re.split(r"[0#?]|General", code)[-1] if re.search(r"[0#?]|General", code) else ""
+    scaled = behind.lstrip(".").startswith(",")  # shown in thousands: a unit behind it is one of the figure shown, not stored
+    return _Format(percent, dated, "" if scaled else "".join(one or two for one, two in _QUOTED.findall(behind)).rstrip())
 
 
-def _fill(
-    archive: Archive, member: str, sheet: Sheet, strings: list[str], formats: list[tuple[bool, bool, str]], since_1904: bool
-) -> None:
+def _fill(archive: Archive, member: str, sheet: Sheet, book: _Book) -> None:
     row = 0
     for found in archive.elements(member, "row", "mergeCell"):
         if local(found) == "mergeCell":
-            _merge(sheet, found.get("ref") or "")
+            ends = [match for end in (found.get("ref") or "").split(":") if (match := _CELL.match(end))]
+            if len(ends) == 2:
+                first, last = ends
+                sheet.merged.append((int(first[2]), _column(first[1]), int(last[2]), _column(last[1])))
             continue
         row = int(stated) if (stated := found.get("r") or "").isdecimal() and len(stated) < 9 else row + 1
         if found.get("hidden") in ("1", "true"):
-            sheet.hidden.add(row)
+            sheet.hidden.append((row, row))
         column = 0
         for cell in found:
             match = _CELL.match(cell.get("r") or "")
             column = _column(match[1]) if match else column + 1
-            sheet.put(row, column, _value(cell, sheet, place(row, column), strings, formats, since_1904))
+            sheet.put(row, column, _value(cell, sheet, (row, column), book))
 
 
 def _column(letters: str) -> int:
@@ -117,47 +151,48 @@ def _column(letters: str) -> int:
     return value
 
 
-def _merge(sheet: Sheet, text: str) -> None:
-    ends = [match for end in text.split(":") if (match := _CELL.match(end))]
-    if len(ends) == 2 and ends[0][1] == ends[1][1] and int(ends[1][2]) - int(ends[0][2]) < limits.BOM_ROWS:
-        sheet.down.append((int(ends[0][2]), int(ends[1][2]), _column(ends[0][1])))
-
-
-def _value(cell: Any, sheet: Sheet, at: str, strings: list[str], formats: list[tuple[bool, bool, str]], since_1904: bool) -> str:
+def _value(cell: Any, sheet: Sheet, at: tuple[int, int], book: _Book) -> str:
     """The text of a cell. Formulas are never worked out: their stored value counts, if there is one."""
     parts = {local(child): child for child in cell}
-    kind, stored = cell.get("t") or "n", (parts["v"].text or "").strip() if "v" in parts else ""
+    kind, raw = cell.get("t") or "n", (parts["v"].text or "") if "v" in parts else ""
+    stored = raw.strip()
     if kind == "inlineStr":
         return _text(parts["is"]) if "is" in parts else ""
     if not stored:
-        if "f" in parts:
+        if "f" in parts and not (kind == "str" and "v" in parts):  # a formula may give the empty text
             sheet.unsolved.append(at)
         return ""
     if kind == "s":
         index = int(stored) if stored.isdecimal() and len(stored) < 9 else -1
-        if not 0 <= index < len(strings):
-            raise InputError(sheet.path, "a cell names a text the workbook does not hold", found=f"{at} of {sheet.name}")
-        return strings[index]
+        if not 0 <= index < len(book.strings):
+            raise sheet.refusal("a cell names a text the workbook does not hold", at[0], place(*at), remedy="Save it anew.")
+        return book.strings[index]
     if kind == "e":
         sheet.faulty.append(at)
         return ""
     if kind == "b":
         return {"1": "yes", "0": "no"}.get(stored, stored)
+    if kind == "d":
+        sheet.dates.add(at)
+        return stored
     if kind != "n":
-        return parts["v"].text or ""
+        return _plain(raw)
     style = cell.get("s") or ""
-    percent, dated, unit = formats[int(style)] if style.isdecimal() and int(style) < len(formats) else (False, False, "")
-    if dated:
-        sheet.dates.append(at)
-        return _date(stored, since_1904)
-    return number(stored, percent) + unit
+    known = style.isdecimal() and len(style) < 9 and int(style) < len(book.formats)
+    look = book.formats[int(style)] if known else _Format()
+    if look.dated and (date := _date(stored, book.since_1904)):
+        sheet.dates.add(at)
+        return date
+    return number(stored, look.percent) + look.unit
 
 
 def _date(stored: str, since_1904: bool) -> str:
-    """What a spreadsheet made of something that looked like a date; the days are counted from 1899-12-30, or from 1904."""
+    """The day of a stored figure, counted from 1899-12-30 (before March 1900 from the day after) or from 1904-01-01; "" for none."""
     try:
-        start = datetime(1904, 1, 1) if since_1904 else datetime(1899, 12, 30)
-        moment = start + timedelta(days=float(stored))
-    except (ValueError, OverflowError):
-        return stored
-    return moment.strftime("%Y-%m-%d")
+        days = float(stored)
+    except ValueError:
+        return ""
+    if not 0 <= days <= _LAST_DAY:
+        return ""
+    first = datetime(1904, 1, 1) if since_1904 else datetime(1899, 12, 30 + (days < 61))
+    return (first + timedelta(days=days)).strftime("%Y-%m-%d")

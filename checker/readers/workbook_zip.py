@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import struct
 import zipfile
 import zlib
 from collections.abc import Iterator
@@ -13,17 +14,21 @@ from lxml import etree
 from checker import limits
 from checker.errors import InputError
 from checker.files import Blob
+from checker.readers.xml_netlist import ATTRIBUTES, SETTINGS
 
-_SETTINGS: dict[str, Any] = {
-    "resolve_entities": False,
-    "no_network": True,
-    "load_dtd": False,
-    "dtd_validation": False,
-    "huge_tree": False,
-    "remove_comments": True,
-    "remove_pis": True,
-}
 _SAVE = "Save the bill of materials anew, as XLSX, ODS or CSV."
+_ENTRY = b"PK\x01\x02"  # begins each entry of the list of members
+_BROKEN = (
+    zipfile.BadZipFile,
+    zlib.error,
+    struct.error,
+    NotImplementedError,
+    RuntimeError,
+    EOFError,
+    OSError,
+    ValueError,
+    OverflowError,
+)
 
 
 class Archive:
@@ -31,17 +36,21 @@ class Archive:
 
     def __init__(self, blob: Blob):
         self.path = blob.path
+        if blob.data.count(_ENTRY) > 2 * limits.ZIP_MEMBERS:  # before each becomes an object; chance and zips inside leave room
+            raise self._beyond("the workbook holds too many files", "", limits.ZIP_MEMBERS)
         try:
             self._zip = zipfile.ZipFile(BytesIO(blob.data))
             members = self._zip.infolist()
-        except (zipfile.BadZipFile, NotImplementedError, ValueError, OverflowError, EOFError) as error:
+        except _BROKEN as error:
             raise self._broken(error) from None
         if len(members) > limits.ZIP_MEMBERS:
-            found, most = f"{len(members):,}", f"at most {limits.ZIP_MEMBERS:,}"
-            raise InputError(self.path, "the workbook holds too many files", found=found, expected=most)
+            raise self._beyond("the workbook holds too many files", f"{len(members):,}", limits.ZIP_MEMBERS)
         self._members: dict[str, zipfile.ZipInfo] = {}
         for member in members:
             self._accept(member)
+        total = sum(member.file_size for member in members)
+        if total > limits.ZIP_BYTES:
+            raise self._beyond("the files of the workbook are too large together", f"{total:,} bytes", limits.ZIP_BYTES)
 
     def _accept(self, member: zipfile.ZipInfo) -> None:
         name = member.filename
@@ -51,9 +60,12 @@ class Archive:
             raise InputError(self.path, "the workbook holds a file twice", found=name, remedy=_SAVE)
         if member.flag_bits & 1:
             raise InputError(self.path, "the workbook is locked with a password", remedy="Save it without a password.")
+        if member.compress_type not in (zipfile.ZIP_STORED, zipfile.ZIP_DEFLATED):
+            what = "a file in the workbook is packed in a way that workbooks are not"
+            raise InputError(self.path, what, found=name, expected="deflate", remedy=_SAVE)
         if member.file_size > limits.ZIP_MEMBER_BYTES:
-            found, most = f"{member.file_size:,} bytes in {name}", f"at most {limits.ZIP_MEMBER_BYTES:,} bytes"
-            raise InputError(self.path, "a file in the workbook is too large", found=found, expected=most)
+            found = f"{member.file_size:,} bytes in {name}"
+            raise self._beyond("a file in the workbook is too large", found, limits.ZIP_MEMBER_BYTES)
         if member.file_size > limits.ZIP_SMALL and member.file_size > limits.ZIP_RATIO * max(1, member.compress_size):
             found = f"{member.compress_size:,} bytes that unpack to {member.file_size:,} in {name}"
             most = f"at most {limits.ZIP_RATIO} times as many"
@@ -71,44 +83,57 @@ class Archive:
         try:
             with self._zip.open(member) as stream:
                 data = stream.read(member.file_size + 1)
-        except (zipfile.BadZipFile, zlib.error, NotImplementedError, RuntimeError, EOFError, OSError, ValueError) as error:
+        except _BROKEN as error:
             raise self._broken(error, name) from None
         if len(data) > member.file_size:
             raise InputError(self.path, "a file in the workbook is longer than it says", found=name, remedy=_SAVE)
         return data
 
     def elements(self, name: str, *tags: str) -> Iterator[Any]:
-        """Each element of these local names, whole, in file order; what was given is cleared when the next is asked for.
+        """Each outermost element of these local names, whole, in file order; it is cleared when the next is asked for.
 
-        Raises InputError for XML that is not well formed, has a document type, or holds too many elements.
+        Its ancestors are there too, as far as they have been read. Raises InputError for XML that is not well formed, has a
+        document type, or holds too many elements.
         """
-        context = etree.iterparse(BytesIO(self.data(name)), events=("start", "end"), **_SETTINGS)
+        context = etree.iterparse(BytesIO(self.data(name)), events=("start", "end"), **SETTINGS)
         count, inside = 0, 0
         try:
             for event, element in context:
+                wanted = local(element) in tags
                 if event == "start":
                     count += 1
                     if count == 1 and element.getroottree().docinfo.doctype:
                         raise InputError(self.path, "a document type stands in the workbook", found=name, remedy=_SAVE)
                     if count > limits.ATOMS:
-                        raise InputError(self.path, "the workbook holds too many elements", found=name)
-                    inside += local(element) in tags
+                        raise self._beyond("the workbook holds too many elements", name, limits.ATOMS)
+                    if len(element.attrib) > ATTRIBUTES:
+                        raise self._beyond("an element of the workbook has too many attributes", name, ATTRIBUTES)
+                    inside += wanted
                     continue
-                if local(element) in tags:
+                if wanted:
                     inside -= 1
                     if not inside:
                         yield element
                 if not inside:
-                    element.clear()
-                    while element.getprevious() is not None:
-                        del element.getparent()[0]
+                    _forget(element)
         except (etree.XMLSyntaxError, ValueError, LookupError) as error:
             said = str(error).split("\n")[0][:200]
             raise InputError(self.path, f"{name} of the workbook is no XML ({said})", remedy=_SAVE) from None
 
+    def _beyond(self, what: str, found: str, limit: int) -> InputError:
+        return InputError(self.path, what, found=found, expected=f"at most {limit:,}")
+
     def _broken(self, error: Exception, name: str = "") -> InputError:
         what = f"the workbook is damaged ({str(error)[:120] or type(error).__name__})"
         return InputError(self.path, what, found=name, remedy="It may have been cut off: copy or save it again.")
+
+
+def _forget(element: Any) -> None:
+    """Free a finished element and those before it; itself it stays until its tail is read."""
+    element.clear()
+    parent = element.getparent()
+    while parent is not None and parent[0] is not element:
+        del parent[0]
 
 
 def local(element: Any) -> str:

@@ -21,7 +21,7 @@ from checker.readers.netlist_tree import Netlist
 
 FORM = "XML netlist"
 
-_SETTINGS = {
+SETTINGS = {
     "resolve_entities": False,
     "no_network": True,
     "load_dtd": False,
@@ -33,7 +33,7 @@ _SETTINGS = {
 # Encodings in which every byte means one thing and "<" is always the character; UTF-7, for one, can hide a tag.
 _ENCODINGS = re.compile(r"utf-?8|utf-?16(?:[bl]e)?|(?:us-)?ascii|iso-?8859-?[0-9]{1,2}|latin-?[0-9]|(?:windows-|cp)125[0-9]", re.I)
 _DECLARED = re.compile(r"<\?xml[^>]*?\bencoding[ \t\r\n]*+=[ \t\r\n]*+[\"']([^\"'<>]*+)")
-_ATTRIBUTES = 256  # of one element; real files have at most six, and lxml lists them in quadratic time
+ATTRIBUTES = 256  # of one element; real files have at most six, and lxml lists them in quadratic time
 _LATE_DECLARATION = re.compile(rb"(?:\xef\xbb\xbf)?[ \t\r\n]++<\?xml")
 _ITEM = 3  # <export> <components> <comp>
 
@@ -79,7 +79,7 @@ def _walk(blob: Blob, netlist: Netlist) -> None:
     """Hand over every item when its element closes, and drop the elements before it."""
     depth, count = 0, 0
     section = ""
-    for event, element in etree.iterparse(BytesIO(blob.data), events=("start", "end"), **_SETTINGS):
+    for event, element in etree.iterparse(BytesIO(blob.data), events=("start", "end"), **SETTINGS):
         if event == "start":
             depth += 1
             attributes = len(element.attrib)
@@ -88,8 +88,8 @@ def _walk(blob: Blob, netlist: Netlist) -> None:
                 raise _beyond(blob.path, "elements are nested too deep", element, limits.DEPTH)
             if count > limits.ATOMS:
                 raise _beyond(blob.path, "the file holds too many elements and attributes", element, limits.ATOMS)
-            if attributes > _ATTRIBUTES:
-                raise _beyond(blob.path, "an element has too many attributes", element, _ATTRIBUTES)
+            if attributes > ATTRIBUTES:
+                raise _beyond(blob.path, "an element has too many attributes", element, ATTRIBUTES)
             if depth == 1:
                 _check_document(element, blob.path)
             elif depth == _ITEM - 1:

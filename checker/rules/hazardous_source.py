@@ -4,10 +4,14 @@ Every other question rests on the answer: a barrier keeps people from something,
 proves nothing. The rule passes when the mains or another hazardous source is recognised in the netlist or declared, and
 does not apply when the declaration says `supply: none`.
 
+Open, level warning: contacts of relays switch circuits that end at connectors. What flows there comes from outside the board, and
+where it is the mains, the relays lie across a barrier that nobody asked for.
+
 Open, level error: something on the board is made to insulate, to sit across the line or to take a mains plug, and yet no
 source is recognised. Open, level note: nothing on the board hints at a source. Silence is not safety.
 
-To settle it: declare `supply:` (`mains: 100-240 V`, `dc: 24 V`, or `supply: none`).
+To settle it: declare `supply:` (`mains: 100-240 V`, `dc: 24 V`, or `supply: none`); for circuits outside, the grade of the barrier
+(`barriers: [{between: [GND, load], grade: reinforced}]`, with `domains: {load: [NET]}` for its name).
 """
 
 from __future__ import annotations
@@ -21,6 +25,7 @@ from checker.model.order import natural
 from checker.model.rule import Analysis, Rule
 from checker.model.step import Step
 from checker.model.verdict import Missing, Verdict, Words
+from checker.rules.outside_circuits import Outside, outside
 
 _SUPPLY_AS = "supply: in the declaration (mains: 100-240 V, dc: 24 V, or supply: none)"
 _LINE_CLASSES = ("X1", "X2", "X3", "Y1", "Y2", "Y3", "Y4")
@@ -57,8 +62,26 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
         declared = " and declared" if declaration.supplies else ""
         because = "; ".join(domain.step.text for domain in hazardous)
         yield clause.passes(subject, "The hazardous source is known.", f"recognised{declared}: {because}", step, found=Words(names))
+        if (switched := outside(analysis)) is not None:
+            yield _switched(analysis, clause, switched)
     else:
         yield _silent(analysis, clause)
+
+
+def _switched(analysis: Analysis, clause: Clause, switched: Outside) -> Verdict:
+    """What contacts carry that lead to connectors only."""
+    relays, ends = ", ".join(switched.relays[:8]), ", ".join(switched.connectors[:8])
+    because = f"contacts of {relays} lead to {ends} and to no source on this board"
+    facts = tuple(analysis.design.parts[ref].fact for ref in (*switched.relays[:8], *switched.connectors[:8]))
+    missing = Missing(
+        "the voltage of what these contacts switch",
+        "barriers in the declaration (barriers: [{between: [GND, load], grade: reinforced}], domains: {load: [NET]})",
+        (("a harmless circuit (grade: functional)", "pass"), ("the mains", "the barrier of the relays is judged")),
+        switched.relays[0],
+    )
+    subject = Subject((*switched.relays[:8], *switched.connectors[:8]), key=("contacts", *sorted(switched.relays)))
+    what = "Contacts may switch a hazardous circuit outside the board."
+    return clause.opens(subject, what, because, Step(because, facts), missing, level="warning")
 
 
 def _silent(analysis: Analysis, clause: Clause) -> Verdict:
