@@ -35,6 +35,7 @@ from checker.requirements.separations import grades as spacing_grades
 from checker.requirements.separations import separations, voltages
 from checker.stress.sources import setting
 from checker.stress.voltages import stressed
+from checker.unnamed_earth import doubted, unnamed_contact
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,6 +143,7 @@ def basis(ruleset: Ruleset) -> Basis:
 
 def verdicts(analysis: Analysis, rulesets: Sequence[Ruleset], raised: list[str]) -> Iterator[Verdict]:
     """The verdicts of every clause. A rule that raises leaves its question open and adds its traceback to `raised`."""
+    contact = unnamed_contact(analysis)
     for ruleset in rulesets:
         for clause in ruleset.clauses:
             if not _applies(clause, analysis):
@@ -149,7 +151,7 @@ def verdicts(analysis: Analysis, rulesets: Sequence[Ruleset], raised: list[str])
             try:
                 for verdict in plugins.rule(clause.rule).ask(analysis, clause):
                     if _concerns(clause, verdict, analysis):
-                        yield verdict
+                        yield verdict if contact is None else doubted(verdict, contact, analysis)
             except WithstandError:
                 raise
             except Exception as error:

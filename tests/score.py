@@ -193,9 +193,7 @@ def scores(judged: Sequence[tuple[Row, Candidate]]) -> tuple[Score, ...]:
     return tuple(found)
 
 
-def _faults(
-    field: str, row: Row, certain: Sequence[Said], known: Sequence[Said], answers: Sequence[Said]
-) -> Iterator[Fault]:
+def _faults(field: str, row: Row, certain: Sequence[Said], known: Sequence[Said], answers: Sequence[Said]) -> Iterator[Fault]:
     for answer in answers:
         if not any(agree(said, answer) for said in certain) and not any(agree(said, answer, known=True) for said in known):
             yield Fault("wrong", field, row, answer)

@@ -28,7 +28,7 @@ LAYERS: tuple[tuple[str, ...], ...] = (
     ("formulas",),
     STAGES,
     ("plugins", "ruleset_file", "ruleset_layers", "rulesets", "declaration", "project"),
-    ("remedies", "reporting", "reporting_barriers", "reporting_steps", "pipeline"),
+    ("remedies", "reporting", "reporting_barriers", "reporting_steps", "unnamed_earth", "pipeline"),
     ("api", "testing"),
     ("cli",),
 )

@@ -18,7 +18,7 @@ from checker.files import read as read_file
 from checker.model.declaration import Declaration
 from checker.model.reading import Reading
 from checker.readers import sniff, spice
-from checker.readers.spice_cards import in_units
+from checker.readers.spice_figures import in_units
 
 SAMPLES = Path(__file__).resolve().parents[2] / "shared" / "samples"
 FLYBACK = """* an isolated converter
@@ -82,7 +82,10 @@ def test_the_windings_are_a_barrier_and_node_0_joins_everything(tmp_path: Path) 
     assert len(verify(path).domains) == 2
     path.write_text(FLYBACK.replace("0S", "0"), encoding="utf-8")
     assert len(verify(path).domains) == 1
-    assert "node 0 is one net" in notes(read(FLYBACK))[0]
+    (note,) = [note for note in read(path.read_text(encoding="utf-8")).notes if note.kind == "nets-merged"]
+    assert (note.parts, note.nets) == (("K1",), ("0",))
+    assert "node 0 is one net wherever it stands, at both sides of K1" in note.text
+    assert not any("node 0" in text for text in notes(read(FLYBACK)))
 
 
 def test_the_first_line_is_the_title_even_when_it_looks_like_a_part() -> None:
@@ -153,8 +156,8 @@ def test_nothing_is_opened_and_nothing_worked_out(tmp_path: Path) -> None:
     text = f"* t\n.include {tmp_path}/secret.lib\n.lib /etc/passwd x\nR1 a b {{2*R}}\nR2 a b '1/0'\n.param R=__import__('os')\n"
     reading = read(text)
     assert [part.ref for part in reading.parts] == ["R1", "R2"]
-    assert any("2 statements name other files, which are not opened: .include, .lib" in text for text in notes(reading))
-    assert any("2 values are expressions and are not worked out: R1, R2" in text for text in notes(reading))
+    assert any("2 statements that would open other files, which is never done: .include, .lib" in text for text in notes(reading))
+    assert any("expressions are not worked out: R1, R2" in text for text in notes(reading))
     design = assemble("a", [reading], Declaration())
     assert design.parts["R1"].text("value") == "{2*R}"
 

@@ -343,3 +343,33 @@ J5: {value: CONTACT, symbol: Screw_Terminal_01x02, pins: {1: OUT1, 2: OUT2}}
     stress = analysis(ENTRY + parts).stress
     assert stress.poles["AC_L"] == "AC_L"
     assert stress.poles["AC_N"] == "AC_N"
+
+
+@pytest.mark.parametrize(
+    ("text", "volts"),
+    [
+        ("12V OUT", 12),
+        ("sortie LED 36V 550mA", 36),
+        ("Ausgang 5,1 V", 5.1),
+        ("OUT 300V", None),
+        ("12V", None),
+        ("OUT 5V/12V", None),
+    ],
+)
+def test_the_text_of_an_output_connector_states_its_voltage(text, volts):
+    """A figure without a word for an output may be a rating, and so may one above what a person may touch."""
+    circuit = (
+        ENTRY
+        + BRIDGE
+        + f"""
+U2: {{value: "817", symbol: Optocoupler, description: OPTOISO 5KV TRANS 4DIP, pins: {{1: LA, 2: GND, 3: PG, 4: FB}}}}
+R3: {{value: 1k, symbol: R, pins: {{1: VO, 2: LA}}}}
+R4: {{value: 10k, symbol: R, pins: {{1: FB, 2: VB}}}}
+J2: {{value: "{text}", symbol: Conn_01x02, pins: {{1: VO, 2: GND}}}}
+"""
+    )
+    found = analysis(circuit, MAINS).stress.between("VO", "GND")
+    if volts is None:
+        assert found is None or found.peak.surely == 0
+    else:
+        assert (found.peak.surely, found.peak.never_above) == pytest.approx((0.9 * volts, 1.1 * volts))

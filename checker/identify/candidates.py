@@ -7,10 +7,10 @@ true become disagreements.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from typing import Any
 
-from checker.identify import catalogue, kinds, marks, packages, ratings, values, windings
+from checker.identify import catalogue, described, kinds, marks, packages, ratings, values, windings
 from checker.model.candidate import Candidate, Disagreement, Mark, Winding
 from checker.model.circuit import Design, Part
 from checker.model.declaration import Declaration, DeclaredPart
@@ -67,15 +67,15 @@ def _label(alternate: Sequence[Fact], at: int) -> str:
 
 def _candidate(part: Part, facts: Sequence[Fact], declared: DeclaredPart | None, label: str, once: Callable[..., Any]) -> Candidate:
     judged = kinds.judge(part, facts)
-    texts = _texts(facts)
     kind = judged.kind
-    value, stated = _value(texts, kind, once)
+    texts = described.own(_texts(facts), facts, kind)
+    value, stated = _value(facts, texts, kind, once)
     rated, said_ratings = _ratings(facts, texts, kind, once)
     attributes = _attributes(facts, texts, judged, part, kind, once)
     ordinary = _bought_ordinary(facts, texts, kind, once)
     # what the schematic wants is no proof of what an alternate is, nor of a part the bill describes as an ordinary one
     vouched = facts if ordinary is None and not label else [fact for fact in facts if fact.trust >= Trust.BOM]
-    marked = _marks(vouched, _texts(vouched), declared, once)
+    marked = _marks(vouched, described.own(_texts(vouched), facts, kind), declared, once)
     generic = _generic(texts, once)
     if generic is not None:
         fact, found = generic
@@ -122,24 +122,38 @@ def _best(facts: Sequence[Fact], attribute: str) -> str:
     return str(max(reversed(named), key=lambda fact: fact.trust).value) if named else ""
 
 
-def _value(texts: Sequence[Fact], kind: str, once: Callable[..., Any]) -> tuple[Fact | None, list[Fact]]:
-    """The value, and every statement of it. Value texts come before descriptions, descriptions before part numbers."""
+def _value(facts: Sequence[Fact], texts: Sequence[Fact], kind: str, once: Callable[..., Any]) -> tuple[Fact | None, list[Fact]]:
+    """The value, and every statement of it."""
     stated: list[Fact] = []
-    for attribute in _TEXTS:
-        for fact in texts:
-            if fact.attribute != attribute:
-                continue
-            read = values.part_number_value if attribute == "type" else values.decode
-            decoded = once(read, fact.value, kind)
-            if decoded is not None:
-                trust = fact.trust if decoded.sure and attribute != "type" else Trust.GUESSED
-                stated.append(Fact("value", decoded.value, fact.source, trust, decoded.unit, "", str(fact.value)))
+    for fact, read in _value_texts(facts, texts):
+        decoded = once(read, fact.value, kind)
+        if decoded is not None:
+            trust = fact.trust if decoded.sure and read is not values.part_number_value else Trust.GUESSED
+            stated.append(Fact("value", decoded.value, fact.source, trust, decoded.unit, "", str(fact.value)))
     if not stated:
         return None, []
     # a statement that is only guessed (a bare number, a part number) never wins over one that says its unit
     sure = [fact for fact in stated if fact.trust > Trust.GUESSED]
     chosen = max(sure, key=lambda fact: fact.trust) if sure else stated[0]
     return chosen, stated
+
+
+def _value_texts(
+    facts: Sequence[Fact], texts: Sequence[Fact]
+) -> Iterator[tuple[Fact, Callable[[str, str], values.Decoded | None]]]:
+    """Where a value may stand, most telling first, and how it is read there. A part number may stand in the place of the value."""
+    of = {attribute: [fact for fact in texts if fact.attribute == attribute] for attribute in _TEXTS}
+    yield from ((fact, values.decode) for fact in of["value"])
+    for fact in facts:
+        read = values.FIELDS.get(fact.attribute)
+        if read is not None and isinstance(fact.value, str):
+            yield fact, read
+    yield from ((fact, values.decode) for fact in of["description"])
+    for fact in of["type"]:
+        yield fact, values.whole
+        yield fact, values.part_number_value
+    for fact in (*of["value"], *(fact for fact in of["description"] if described.is_name("description", str(fact.value)))):
+        yield fact, values.part_number_value
 
 
 def _value_disagreements(kept: Fact | None, stated: Sequence[Fact]) -> list[Disagreement]:
@@ -179,7 +193,10 @@ def _ratings(
     for fact in texts:
         if fact.attribute == "type":
             continue
-        for name, rating in once(ratings.read, fact.value, kind).ratings.items():
+        found = once(ratings.read, fact.value, kind).ratings
+        for name, rating in found.items():
+            if name == "voltage" and described.labels(fact, kind, rating.value, with_current="current" in found):
+                continue
             attribute = name if name == "tolerance" else f"rating:{name}"
             stated.setdefault(name, []).append(
                 Fact(attribute, rating.value, fact.source, fact.trust, rating.unit, rating.form, str(fact.value))
@@ -304,7 +321,8 @@ def _mark_disagreements(
 
 def _generic(texts: Sequence[Fact], once: Callable[..., Any]) -> tuple[Fact, Any] | None:
     for fact in texts:
-        if fact.attribute in ("value", "type") and (found := once(catalogue.find, fact.value)) is not None:
+        named = fact.attribute in ("value", "type") or described.is_name(fact.attribute, str(fact.value))
+        if named and (found := once(catalogue.find, fact.value)) is not None:
             return fact, found
     return None
 

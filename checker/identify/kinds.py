@@ -15,6 +15,7 @@ from functools import lru_cache
 
 from checker import limits
 from checker.identify import families, pin_kinds, word_kinds
+from checker.identify.described import is_name
 from checker.identify.references import CLASSES, Class
 from checker.identify.word_kinds import Hit
 from checker.model.candidate import CONNECTORS, INSULATING, MECHANICAL, UNKNOWN
@@ -123,7 +124,7 @@ def _judge(letters: str, texts: Texts, pins: pin_kinds.Pins, count: int) -> Judg
 def _family(letters: str, texts: Texts, count: int) -> Judged | None:
     """The first known type among value, part number and symbol that can stand under such a reference."""
     for attribute, text in texts:
-        found = families.find(text) if attribute in _TYPED else None
+        found = families.find(text) if attribute in _TYPED or is_name(attribute, text) else None
         if found is None:
             continue
         kind = found.family.kind
@@ -181,7 +182,7 @@ def _words(letters: str, group: Class | None, texts: Texts, count: int) -> _Word
                 agrees = group is not None and hit.kind in group.kinds
                 if not _allowed(hit, place, letters, count, agrees):
                     continue
-                score = 2 * hit.rank + 3 * agrees + _WEIGHT[place] + (hit.kind not in _GENERIC)
+                score = 2 * hit.rank + 3 * agrees + _WEIGHT[place] + (hit.kind not in _GENERIC) + (hit.kind == "common-mode-choke")
                 if best is None or score > best[0]:
                     best = score, place, hit
     if best is None:
@@ -200,10 +201,26 @@ def _hits(place: str, text: str) -> tuple[Hit, ...]:
     found = word_kinds.hits(text)
     if place == "value" and word_kinds.tokens(text)[:2] == ("ac", "dc"):
         found = (*found, Hit("isolated-module", 1, "ac dc", 0, {"acdc": "yes"}))
+    if place in ("value", "type") and _BEAD.match(text):
+        found = (*found, Hit("ferrite", 2, "FB", 0))
+    if any(_ONE_ROW.fullmatch(word) for word in word_kinds.tokens(text)):
+        found = tuple(_in_line(hit) for hit in found)
     if place in ("description", "value", "footprint") and word_kinds.mains_module(text):
         found = (*found, Hit("isolated-module", 2, "ac dc converter", 0, {"acdc": "yes"}))
     # single letters are symbols (`C`, `R_Small`) or chip footprints, never words of a text
     return tuple(hit for hit in found if len(hit.words) > 2 or (hit.at == 0 and place in ("symbol", "footprint")) or hit.rank > 1)
+
+
+# a bead named by its size or its impedance: `FB0805/600R/2A`, `FB-600R`
+_BEAD = re.compile(r"FB[-_ ]?(?:0201|0402|0603|0805|1206|[0-9]{2,4}R)(?![0-9A-Z])")
+
+
+_ONE_ROW = re.compile(r"sip[0-9]{0,2}")
+
+
+def _in_line(hit: Hit) -> Hit:
+    """An `isolator` with one row of pins is a converter module; couplers have two rows."""
+    return Hit("isolated-module", 2, hit.words, hit.at) if hit.words == "isolator" else hit
 
 
 def _said_of(kind: str, texts: Texts) -> dict[str, str]:
@@ -225,7 +242,7 @@ def _fitting(hit: Hit, count: int) -> Hit:
     """`isolator` alone may be a coupler, `GDT` a gate-drive transformer: the pins tell."""
     if hit.words == "gdt" and count >= 4:
         return Hit("gate-drive-transformer", hit.rank, hit.words, hit.at, hit.attributes)
-    if hit.words == "isolator" and 0 < count <= 6:
+    if hit.words == "isolator" and hit.kind != "isolated-module" and 0 < count <= 6:
         return Hit("optocoupler", hit.rank, hit.words, hit.at, hit.attributes)
     return hit
 
@@ -235,7 +252,7 @@ def _allowed(hit: Hit, place: str, letters: str, count: int, agrees: bool) -> bo
         return False
     if letters in ("C", "CX", "CY", "CE") and 0 < count <= 2 and hit.kind != "capacitor":
         return False
-    if hit.kind in _TWO_ENDED and count > 3:
+    if (hit.kind in _TWO_ENDED and count > 3) or (hit.kind == "bridge" and count == 2):
         return False
     if hit.rank == 1 and letters in CLASSES and not agrees and place != "symbol":
         return False

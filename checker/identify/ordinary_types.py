@@ -122,7 +122,7 @@ SEMICONDUCTORS: tuple[Row, ...] = (
         r" S1[ABDGJKM] M7$"
         r" MUR[SA]?\d{3,4} BYV\d\d BYT\d\d BYW\d\d BY[12]\d\d SS1[2-9] SS[2358][2-6] SS110 SS[235]1[05] SK[1-5][2-6]"
         r" SB[1-8][0-9]{1,3}$ SR[1-5]\d0"
-        r" B58[12]\d B[1-5][2-6]0[ABC] B5819 MBRS?[A-Z]?\d{3,5} PMEG\d{4} STTH\d STPS\d BAT\d\d BAV\d\d BAS\d\d BAW\d\d"
+        r" B58[12]\d B[1-5][2-6]0[ABC] B5819 MBRS?[A-Z]?\d{3,5} PMEG\d{4} STTH\d STPS\d BAT\d\d BAV\d\d BAS\d{2,3} BAW\d\d"
         r" V[0-9]{1,2}P[0-9]{1,2}"
         r" 1SS\d{3} C[34]D\d{5} IDH\d\d RHRP?\d RURP?\d 6A10 10A10 SD10[13] FES\d\d",
     ),
@@ -142,6 +142,12 @@ SEMICONDUCTORS: tuple[Row, ...] = (
         r" NTCG\d NTCS0\d"
         r" ERT-?J\d NCP(?:15|18|03|21)[WX] KTY8\d PT100 PT1000",
     ),
+    (
+        "common-mode-choke",
+        "current-compensated mains choke",
+        {},
+        r"RN[1-4][0-4]2-\d B8272[0-6] B8273[0-4] 74482[1-5] UU(?:9\.8|10\.5)",
+    ),
     ("gas-tube", "gas discharge tube", {}, r"[23]R\d{3,4}[A-Z]?- [23]RM\d{3} B88069 2051-\d\d 2049-\d\d 20(?:26|27|36|38)-\d\d"),
     (
         "resettable-fuse",
@@ -157,7 +163,12 @@ SEMICONDUCTORS: tuple[Row, ...] = (
         r"BTA[0-4]\d BTB[0-4]\d BT13[4-9] BT14\d MAC(?:\d{1,3}|97A\d) Z01\d\d T4\d\d-\d{3} Q[46]\d{3}[A-Z] L[46]0\d\d[A-Z]"
         r" ACST?\d{1,2}-\d TIC2\d\d",
     ),
-    ("thyristor", "thyristor", {}, r"BT15[0-9] BT16[89] MCR\d{2,3} C106 TYN\d{3,4} 2N506\d S[68]0\d\d[A-Z] TIC10\d X04\d\d P0102"),
+    (
+        "thyristor",
+        "thyristor",
+        {},
+        r"BT15[0-9] BT16[89] MCR\d{2,3} C106[A-Z] TYN\d{3,4} 2N506\d S[68]0(?!50)\d\d[A-Z] TIC10\d X04\d\d P0102",
+    ),
     (
         "igbt",
         "IGBT",

@@ -34,7 +34,7 @@ PHRASES: dict[str, tuple[str, str]] = {
         "halbleiterrelais,solid state rly",
         "",
     ),
-    "relay": ("relay,relais,rly,reed relay,relay general,relay spdt,relay dpdt,relay spst", ""),
+    "relay": ("relay,relais,relé,relè,rly,reed relay,relay general,relay spdt,relay dpdt,relay spst", ""),
     "current-transformer": (
         "current transformer,current xfmr,current sense transformer,current sensing transformer,stromwandler,transformer current",
         "",
@@ -47,7 +47,7 @@ PHRASES: dict[str, tuple[str, str]] = {
     ),
     "transformer": (
         "transformer,xfmr,xformer,trafo,netztrafo,printtrafo,ringkerntrafo,netztransformator,transformator,transfo,transformateur,übertrager,uebertrager,ubertrager,"
-        "transformador,lan magnetic,"
+        "transformador,trasformatore,lan magnetic,"
         "ethernet magnetic",
         "",
     ),
@@ -66,18 +66,20 @@ PHRASES: dict[str, tuple[str, str]] = {
         "",
     ),
     "potentiometer": (
-        "potentiometer,trimpot,trimmer,r pot,r potentiometer,r trim,variable resistor,poti,trimmpoti,r variable",
+        "potentiometer,trimpot,trimmer,r pot,r potentiometer,r trim,variable resistor,poti,trimmpoti,r variable,"
+        "potenciômetro,potenciometro,potenciómetro,potentiomètre,potenziometro",
         "pot",
     ),
     "varistor": ("varistor,voltage dependent resistor,mov,vdr,metal oxide varistor,r varistor", ""),
     "thermistor": (
         "thermistor,ntc,temperature dependent resistor,icl,inrush current limiter,inrush limiter,heissleiter,kaltleiter,"
+        "termistor,termistore,thermistance,"
         "ptc thermistor",
         "ptc",
     ),
     "capacitor": (
         "capacitor,cap cer,cap film,cap alum,cap tant,cap ceramic,cap poly,kondensator,elko,mlcc,condensateur,"
-        "condensator,supercapacitor,"
+        "condensator,condensador,condensatore,supercapacitor,"
         "cap elec,cap electrolytic",
         "cap,c,cp,cpol,c polarized,supercap,electrolytic",
     ),
@@ -92,16 +94,17 @@ PHRASES: dict[str, tuple[str, str]] = {
     ),
     "filter": ("line filter,emi filter,mains filter,netzfilter,power line filter,emifilter", ""),
     "inductor": (
-        "inductor,fixed ind,ind fixed,choke,pfc choke,drossel,speicherdrossel,induktivität,power inductor,bobine",
+        "inductor,fixed ind,ind fixed,choke,pfc choke,drossel,speicherdrossel,induktivität,power inductor,bobine,"
+        "indutor,induttore,induttanza",
         "ind,l,coil,coupled inductor,l coupled,l core ferrite,l core iron,l ferrite core",
     ),
     "bridge": (
         "bridge rect,bridge rectifier,diode bridge,rectifier bridge,d bridge,brückengleichrichter,brueckengleichrichter,"
         "gleichrichter,"
-        "full bridge rectifier",
+        "full bridge rectifier,ponte retificadora,puente rectificador,ponte raddrizzatore,pont redresseur,pont de diode",
         "bridge",
     ),
-    "zener": ("zener,zener diode,diode zener,d zener,z diode,zenerdiode", ""),
+    "zener": ("zener,zener diode,diode zener,diodo zener,d zener,z diode,zenerdiode", ""),
     "tvs": (
         "tvs,tvs diode,d tvs,transient voltage suppression,transient voltage suppressor,transient suppressor,transil,"
         "esd protection,"
@@ -109,7 +112,7 @@ PHRASES: dict[str, tuple[str, str]] = {
         "esd",
     ),
     "led": ("led,light emitting diode,leuchtdiode,infrared emitter", ""),
-    "diode": ("diode,schottky,rectifier diode,d schottky,fast recovery,rectifier,diac", "d"),
+    "diode": ("diode,diodo,schottky,rectifier diode,gleichrichterdiode,d schottky,fast recovery,rectifier,diac", "d"),
     "igbt": ("transistor igbt,igbt,insulated gate bipolar,q nigbt", ""),
     "jfet": ("jfet,q njfet,q pjfet", ""),
     "mosfet": ("transistor fet,mosfet,nmos,pmos,n channel mosfet,p channel mosfet,nmosfet,pmosfet,n mos,p mos", "fet"),
@@ -125,14 +128,15 @@ PHRASES: dict[str, tuple[str, str]] = {
     "resettable-fuse": (
         "polyfuse,resettable fuse,ptc fuse,fuse resettable,ptc reset fuse,ptc resettable,fuse ptc,poly fuse,"
         "self resetting fuse,pptc,"
-        "positive temperature coefficient fuse,polymeric positive temperature",
+        "positive temperature coefficient fuse,polymeric positive temperature,rückstellsicherung,rueckstellsicherung,"
+        "ptc sicherung,fusible réarmable",
         "",
     ),
-    "fuse": ("fuse,fuseholder,fuse holder,sicherung,feinsicherung,fuse clip,fusible,sicherungshalter", ""),
+    "fuse": ("fuse,fuseholder,fuse holder,sicherung,feinsicherung,fuse clip,fusible,fusível,fusivel,fusibile,sicherungshalter", ""),
     "switch": (
         "push button,pushbutton,switch,schalter,taster,tactile switch,tact switch,sw push,dip switch,slide switch,"
         "rocker switch,button,"
-        "sw spst,sw spdt,sw dpst,sw dpdt,rotary encoder,button switch",
+        "sw spst,sw spdt,sw dpst,sw dpdt,rotary encoder,incremental encoder,button switch",
         "sw",
     ),
     "jumper": ("solder jumper,solderjumper,jumper,solder bridge,lötbrücke", ""),
@@ -146,7 +150,7 @@ PHRASES: dict[str, tuple[str, str]] = {
     "display": ("display,lcd,oled,7 segment,seven segment,e paper", ""),
     "sensor": (
         "temperature sensor,humidity sensor,pressure sensor,hall effect switch,hall switch,hall sensor,accelerometer,"
-        "gyroscope,"
+        "gyroscope,sens humi,sens temp,"
         "microphone,mikrofon,hall effect sensor,ir receiver,imu,magnetometer",
         "sensor,hall",
     ),
@@ -169,7 +173,8 @@ PHRASES: dict[str, tuple[str, str]] = {
         "controller",
     ),
     "module": (
-        "rf module,wifi module,bluetooth module,radio module,dc dc converter,dcdc converter,dc to dc converter,dcdc",
+        "arduino nano,arduino uno,arduino mega,arduino pro mini,d1 mini,nodemcu,raspberry pi pico,"
+        "rf module,wifi module,bluetooth module,radio module,dc dc converter,dcdc converter,dc to dc converter,dcdc,dc dc wandler",
         "module",
     ),
     "ic": (
@@ -197,7 +202,7 @@ PHRASES: dict[str, tuple[str, str]] = {
         "",
     ),
     "connector": (
-        "connector,conn,header,pinheader,pin header,pin socket,pinsocket,screw terminal,screwterminal,terminal block,"
+        "connector,conn,header,hdr,pinheader,pin header,pin socket,pinsocket,screw terminal,screwterminal,terminal block,"
         "term block,terminalblock,"
         "barrel jack,barreljack,jack,jack dc,receptacle,anreihklemme,klemme,anschlussklemme,bornier,phoenix contact,"
         "usb micro,usb mini,"
@@ -211,7 +216,7 @@ PHRASES: dict[str, tuple[str, str]] = {
     "test-point": ("test point,testpoint,test pad,testpad,tp", ""),
     "hole": ("mounting hole,mountinghole,mounting pad,befestigungsloch,standoff,mounting hole pad", "hole"),
     "fiducial": ("fiducial,passermarke,fid", ""),
-    "logo": ("logo,silkscreen logo,graphic", ""),
+    "logo": ("logo,silkscreen logo,on silkscreen,graphic", ""),
     "heatsink": ("heatsink,heat sink,kühlkörper,kuehlkoerper,heat spreader", ""),
     "shield": ("rf shield,shield can,shielding can,emi shield,shield cabinet,shielding cabinet", ""),
 }
@@ -227,7 +232,7 @@ WITH_ATTRIBUTES: tuple[tuple[str, str, dict[str, str]], ...] = (
     (
         "isolated-module",
         "ac dc module,acdc module,ac dc power module,converter acdc,ac dc converter module,encapsulated power supply,"
-        "ac dc power supply,"
+        "ac dc power supply,ac dc wandler,netzteilmodul,"
         "ac dc encapsulated,ac dc supply",
         {"acdc": "yes"},
     ),

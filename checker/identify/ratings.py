@@ -64,7 +64,8 @@ _START = r"(?<![^\W_])(?<!\.)(?<![0-9],)"
 _TOUCHING = rf"(?:{_START}|(?<=[0-9][npuA])|(?<=[0-9]{{3}}[JKM])|(?<=[0-9][npu]F)|(?<=[0-9]A[HLTF]))"
 _FORM = r"rms|r\.m\.s\.|ac[\s-]?rms|ac|a\.c\.|~|dc|d\.c\.|=|\u2393|peak|pk|p"
 _VOLTAGE = re.compile(
-    rf"{_TOUCHING}(?P<number>{_NUMBER})(?:(?P<gap>\s{{1,2}})|)(?P<prefix>[kKm]?)W?(?P<volt>[Vv])(?:[\s(-]?(?P<form>(?i:{_FORM}))\)?)?"
+    rf"{_TOUCHING}(?P<number>{_NUMBER})(?:(?P<gap>\s{{1,2}})|)(?P<prefix>[kKm]?)W?(?P<volt>[Vv])"
+    rf"(?:(?!\s(?i:dc[\s/-](?:to[\s-])?dc)(?![^\W_]))[\s(-]?(?P<form>(?i:{_FORM}))\)?)?"  # `5 kV DC-to-DC converter`
     rf"{_END}(?!\s?/\s?(?:[num]?s|[mc]?m)(?![^\W_]))(?!-[0-2](?![0-9.]))"
 )
 # the stand-off voltage of a suppressor: `15VWM 24.4VC`, `VRWM 33V`
@@ -77,7 +78,7 @@ _CURRENT = re.compile(
 )
 _POWER = re.compile(
     rf"{_START}(?:1\s?/\s?(?P<share>[0-9]{{1,2}})|(?P<number>{_NUMBER}))\s{{0,2}}(?P<prefix>[mMk]?)(?:W|w|Watts?|WATTS?){_END}"
-    r"(?!/(?:m|cm|K|C|mK)(?![^\W_]))"
+    r"(?!/(?:m|cm|K|C|mK)(?![^\W_]))(?!-[0-9]{2})"
 )
 _PERCENT = re.compile(
     rf"{_START}(?P<number>[0-9]{{1,3}}(?:[.,][0-9]{{1,3}})?|\.[0-9]{{1,3}})\s?%(?!\s?(?:RH|hum|duty|eff|load|derat))", re.IGNORECASE
@@ -110,14 +111,14 @@ _PRICE = re.compile(
 
 # what a word beside a voltage makes of it
 _LABEL = re.compile(
-    r"(?P<none>(?<![^\W_])(?:V(?:F|GS|GE|TH|BE|EB|C|CL|CC|DD|IN|OUT|IOTM)|transient|ESD|HBM|CDM|CMTI|surge|pulse|sat|clamp\w{0,4})(?![^\W_]))"
+    r"(?P<none>(?<![^\W_])(?:V(?:F|GS|GE|TH|BE|EB|C|CL|CC|DD|IN|OUT|IOTM)|gate[\s-]?(?:voltage|threshold)|ansteuer\w{0,4}|transient|ESD|HBM|CDM|CMTI|surge|pulse|sat|clamp\w{0,4})(?![^\W_]))"
     r"|(?P<impulse>(?<![^\W_])(?:impulse|VIOSM)(?![^\W_]))"
     r"|(?P<viorm>(?<![^\W_])(?:VIORM|repetitive\speak(?:\s(?:isolation|insulation))?(?:\svoltage)?)(?![^\W_]))"
     r"|(?P<viowm>(?<![^\W_])(?:VIOWM|continuous\s(?:barrier|isolation|insulation)(?:\swithstand)?(?:\svoltage)?)(?![^\W_]))"
     r"|(?P<working>(?<![^\W_])working(?:\svoltage)?(?![^\W_]))"
     r"|(?P<rated>(?<![^\W_])rated\sinsulation\svoltage(?![^\W_]))"
     r"|(?P<test>(?<![^\W_])(?:iso|viso|isol|isolation|insulation(?!\sres)|withstand\w{0,3}|hi-?pot|dwv|dielectric\sstrength|test(?:ed)?)(?:\svoltage)?(?![^\W_]))"
-    r"|(?P<coil>(?<![^\W_])coil(?![^\W_]))",
+    r"|(?P<coil>(?<![^\W_])(?:coil|spule|bobine|bobina)(?![^\W_]))",
     re.IGNORECASE,
 )
 _LABEL_REACH = 24
@@ -290,6 +291,8 @@ def _ordinary(found: Found, volts: list[_Volts], text: str, kind: str) -> None:
         found.ratings["isolation_test"] = test
     if kind == "tvs" and (standoff := _STANDOFF.search(text)) is not None:
         found.ratings["voltage"] = Rating(_float(standoff["before"] or standoff["after"]), "V", "dc", standoff[0].strip())
+    if kind == "regulator" and (entry := _input(text)) is not None:
+        found.ratings["voltage"] = entry
     if kind not in _WITH_VOLTAGE:
         return
     if kind == "fuse":  # the voltage of a breaking capacity is not the rated one where another stands beside it
@@ -299,6 +302,27 @@ def _ordinary(found: Found, volts: list[_Volts], text: str, kind: str) -> None:
         voltage = Rating(float(f"{split['whole']}.{split['part']}"), "V", "", split[0])
     if voltage is not None:
         found.ratings["voltage"] = voltage
+
+
+# the highest voltage a regulator may be fed with: `4.5 to 28V input`, `VIN 4.5-36 V`, `up to 36 V input`; at a step-down
+# regulator also a voltage above the usual outputs, since texts name that of the input
+_SPAN = r"(?:(?<=[0-9])\s?V?\s?(?:to|-|~|\u2013|\.{2,3})\s?|up\sto\s|bis\s|max\.?\s)"
+_INPUT = re.compile(
+    rf"{_SPAN}(?P<before>{_NUMBER})\s?V(?:DC)?\s(?:max\.?\s)?(?:input|in)(?![^\W_])"
+    rf"|(?<![^\W_])(?:VIN|input|eingang(?:sspannung)?)(?:\s(?:voltage|range)){{0,2}}[\s:=]{{0,2}}(?:{_NUMBER})?{_SPAN}(?P<after>{_NUMBER})\s?V{_END}",
+    re.IGNORECASE,
+)
+_STEP_DOWN = re.compile(r"(?<![^\W_])(?:buck(?![\s/-]?boost)|step[\s-]?down)(?![^\W_])", re.IGNORECASE)
+_ABOVE_OUTPUTS = 28.0  # V (common practice, no source)
+
+
+def _input(text: str) -> Rating | None:
+    match = _INPUT.search(text)
+    if match is not None:
+        return Rating(_float(match["before"] or match["after"]), "V", "", match[0].strip())
+    if not _STEP_DOWN.search(text):
+        return None
+    return next((rating for rating, _, _ in _voltages(text) if _ABOVE_OUTPUTS <= rating.value < 1000), None)
 
 
 # the peak of one half wave that a rectifier stands: `IFSM 60A`, `30A surge`
@@ -390,6 +414,8 @@ def _fuse(found: Found, text: str, kind: str) -> None:
         found.attributes["breaking_class"] = ("H", f"{body[0]} {tube[0]}")
 
 
+# converter modules bear their power in the type: `F0505S-2WR2`
+_MODULE_POWER = re.compile(r"(?<=[A-Z]-)(?P<number>[0-9]{1,2})W(?=R[0-9])")
 HOTTEST = 300  # degC; a larger figure before a C is a type number, such as 817C
 
 
@@ -397,6 +423,8 @@ def _thermal(found: Found, text: str, kind: str) -> None:
     """Power and highest temperature. The power of a suppressor is that of a pulse, not a rating to run at."""
     if kind != "tvs":
         powers = [_power(match) for match in _POWER.finditer(text)]
+        if kind == "isolated-module" and not powers and (typed := _MODULE_POWER.search(text)) is not None:
+            powers = [Rating(float(typed["number"]), "W", "", typed[0])]
         if powers:
             found.ratings["power"] = min(powers, key=_value)
     if "C" not in text and "c" not in text:

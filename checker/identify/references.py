@@ -62,7 +62,7 @@ def _vr(count: int, value: str) -> str:
 
 _ROWS: tuple[tuple[str, str, frozenset[str], Callable[[int, str], str] | None], ...] = (
     ("R RES RSH RSHUNT", "resistor", _RESISTIVE, None),
-    ("RN RA RM RP RNET", "network", _RESISTIVE, None),
+    ("RN RA RM RP RR RNET", "network", _RESISTIVE, None),
     ("RV", "varistor", _RESISTIVE, _rv),
     ("VR", "regulator", _RESISTIVE | {"regulator"}, _vr),
     ("VAR VDR MOV", "varistor", _RESISTIVE, None),
@@ -98,7 +98,7 @@ _ROWS: tuple[tuple[str, str, frozenset[str], Callable[[int, str], str] | None], 
     ("F FU FUSE XF", "fuse", frozenset({"fuse", "resettable-fuse"}), None),
     ("GDT", "gas-tube", frozenset({"gas-tube"}), None),
     ("SG", "spark-gap", frozenset({"spark-gap", "gas-tube"}), None),
-    ("SW S SA SB BTN BUT KEY", "switch", frozenset({"switch"}), None),
+    ("SW S SA SB BTN BUT KEY ENC", "switch", frozenset({"switch"}), None),
     ("JP SJ LK W", "jumper", frozenset({"jumper", "net-tie"}), None),
     ("NT", "net-tie", frozenset({"net-tie"}), None),
     ("BT BAT GB", "battery", frozenset({"battery", "connector"}), None),

@@ -15,7 +15,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from decimal import Decimal
 
@@ -396,8 +396,15 @@ def _impedance(text: str, kind: str, other: _Found | None) -> tuple[_Found | Non
 _NO_UNIT_FUSE = re.compile(r"(?<![^\W_])(?:TT|FF|[TFM])\s?(?P<number>[0-9]{1,2}[.,][0-9]{1,2})(?![^\W_])")
 
 
+# the current of a holder is the most it may hold, not that of the fuse in it
+_HOLDER = re.compile(r"fuse[\s-]?(?:holder|clip)|sicherungshalter|porte[\s-]?fusible|porta[\s-]?fus[i\u00ed][bv]", re.IGNORECASE)
+_MARKED = re.compile(r"(?<![^\W_])(?:TT|FF|[TFM])\s?[0-9]")
+
+
 def _amperes(text: str, kind: str) -> _Found | None:
     """The smallest current: the others are breaking capacity or trip current."""
+    if _HOLDER.search(text) and not _MARKED.search(text):
+        return None
     found = list(_tokens(text, "A", "fuse"))
     if not found:
         match = _NO_UNIT_FUSE.search(text) if kind == "fuse" else None
@@ -411,7 +418,9 @@ def _amperes(text: str, kind: str) -> _Found | None:
 
 
 _DECIMAL_V = re.compile(r"(?<![0-9.,])(?P<whole>[0-9]{1,3})V(?P<part>[0-9]{1,2})(?![0-9])(?![A-Za-z]{3})")
-_ZENER_TYPE = re.compile(r"(?<![^\W_])BZ[A-Z][0-9]{2,3}-?[A-D](?P<number>[0-9]{1,3})(?![0-9]|V[0-9])", re.IGNORECASE)
+_ZENER_TYPE = re.compile(
+    r"(?<![^\W_])(?:BZ[A-Z][0-9]{2,3}-?[A-D]|MM[35]Z(?=[0-9]{1,3}V))(?P<number>[0-9]{1,3})(?![0-9]|V[0-9])", re.IGNORECASE
+)
 _STANDOFF_TYPE = re.compile(
     r"(?<![A-Za-z])(?:SM[ABCDF]J|SMF|5KP|SM8S)(?P<number>[0-9]{1,3}(?:\.[0-9])?)(?:C?A)?(?![^\W_])(?!\.[0-9])", re.IGNORECASE
 )
@@ -444,6 +453,27 @@ def _volts(text: str, kind: str) -> _Found | None:
     return None if values[0] == 0 else _Found(values[0], sure, True, first.start(), first.end())
 
 
+# --- fields named for the quantity, values in the place of a part number ---------------------------------------------------------
+
+
+def _field(unit: str) -> Callable[[str, str], Decoded | None]:
+    return lambda text, kind: decode(text, kind) if _UNITS.get(kind) == unit else None
+
+
+# fields of a symbol that hold its value where the value text is a part number
+FIELDS: dict[str, Callable[[str, str], Decoded | None]] = {
+    f"field:{name}": _field(unit)
+    for unit, names in (("ohm", "R Resistance"), ("F", "C Capacitance"), ("H", "L Inductance"), ("Hz", "Freq Frequency"))
+    for name in names.split()
+}
+
+
+def whole(text: str, kind: str) -> Decoded | None:
+    """The value of a text that is nothing but a value with its unit or prefix: `100nF` in the column of part numbers."""
+    decoded = decode(text, kind) if text[:1].isdigit() and not text.isdigit() else None
+    return None if decoded is None or decoded.rest else decoded
+
+
 # --- codes inside a maker's part number -----------------------------------------------------------------------------------------
 
 _PART_NUMBER = re.compile(r"[A-Za-z0-9][A-Za-z0-9./+-]{5,39}")
@@ -453,6 +483,7 @@ _PACKED_OHMS = (
     re.compile(r"[A-Z]{3,5}(?:0201|0402|0603|0805|1206|1210|1812|2010|2512)([0-9]{1,3}[RKM][0-9]{0,3})(?:[BDFGJ][A-Z]{2,5})?\Z"),
 )
 _OHM_CODE = re.compile(r"(?<=[FD])([1-9][0-9]{2}[0-6])(?![0-9])|(?<![0-9])([1-9][0-9]{2}[0-6])(?=F(?![0-9]))")
+_COIL_CODE = re.compile(r"-(?P<code>[0-9]R[0-9]|R[0-9]{2}|[1-9][0-9][0-4])[KLMNY]?(?=-|\Z)")
 _OHM_CODE_SHORT = re.compile(r"(?<=[A-Z]J)([1-9][0-9][0-6])(?=V\Z)")
 
 
@@ -460,7 +491,8 @@ def part_number_value(type_text: str, kind: str) -> Decoded | None:
     """The value a maker's part number spells, when exactly one reading fits; evidence for a disagreement, never a value by itself.
 
     A capacitor: `..104K..` in pF; with tolerance M or Z `sure` is False, since electrolytic types count the same digits in uF.
-    A chip resistor: `..-0710KL`, `..0603100K`, `..F1001V`; never sure.
+    A chip resistor: `..-0710KL`, `..0603100K`, `..F1001V`; never sure. An inductor: `..-3R3N` in uH. A zener or
+    suppressor: `BZX84C6V2L`, `SMBJ24CA`.
     """
     number = type_text[: limits.CELL].strip().upper()
     if not _PART_NUMBER.fullmatch(number) or number.isdigit() or number.isalpha():
@@ -470,6 +502,13 @@ def part_number_value(type_text: str, kind: str) -> Decoded | None:
         if len({match[1] for match in codes}) != 1:
             return None
         return Decoded(float(_code(codes[0][1], -12)), "F", codes[0][2] in "JK", "")
+    if kind == "inductor":
+        coil = _COIL_CODE.search(number)
+        marked = None if coil is None else _marked_inductor(coil["code"])
+        return None if marked is None else Decoded(float(marked.value), "H", False, "")
+    if kind in ("zener", "tvs"):
+        spelled = _volts(number, kind)
+        return None if spelled is None else Decoded(float(spelled.value), "V", False, "")
     if kind != "resistor":
         return None
     for pattern in _PACKED_OHMS:

@@ -117,7 +117,7 @@ def _from_part(found: Mapping[str, Evidence], isle: Islands, ref: str, kind: str
     elif kind == "triac":
         here.mains.setdefault("triac", (STRONG, f"triac {ref}", part.fact))
     elif kind == "capacitor" and candidate.marked(*_LINE_CLASSES) and not candidate.marked("Y1", "Y2", "Y3", "Y4"):
-        ends = [net for net in part.nets() if earth_like(net) or role(net) == "earth"]
+        ends = [net for net in part.nets() if earth_like(net) or role(net) == "earth" or _meets_earth_contact(isle, net)]
         for island in islands if not ends else ():
             sort = "line-capacitor" if len(islands) == 1 else "line-capacitor-end"
             weight = STRONG if len(islands) == 1 else MIDDLING
@@ -146,6 +146,30 @@ def _from_part(found: Mapping[str, Evidence], isle: Islands, ref: str, kind: str
     elif kind == "capacitor" and (rating := candidate.ratings.get("voltage")) is not None and 250 <= float(rating.value) < 1000:
         if len(islands) == 1:
             here.mains.setdefault("rating", (WEAK, f"capacitor {ref} rated {float(rating.value):.0f} V", part.fact))
+
+
+def _behind_y_capacitors(isle: Islands, net: str, connector: str) -> bool:
+    """Whether capacitors of class Y tie a contact to two nets of the same connector's other circuits: an unnamed earth contact."""
+    here = isle.island(net)
+    others = {other for pin in isle.design.parts[connector].pins if (other := pin.net) in isle.live and isle.island(other) != here}
+    islands = {isle.island(other) for other in others}
+    tied = [
+        other
+        for ref in isle.live[net]
+        if isle.kind(ref) == "capacitor" and isle.choice[ref].marked("Y1", "Y2", "Y3", "Y4") and isle.design.parts[ref].fitted
+        for other in isle.design.parts[ref].nets()
+        if other in isle.live and isle.island(other) in islands
+    ]
+    return len(set(tied)) > 1
+
+
+def _meets_earth_contact(isle: Islands, net: str) -> bool:
+    """Whether a net leads to the earth contact of a connector."""
+    return any(
+        isle.kind(ref) in CONNECTORS and pin.net == net and role(pin.name) == "earth"
+        for ref in isle.live.get(net, ())
+        for pin in isle.design.parts[ref].pins
+    )
 
 
 def _is_ac(name: str) -> bool:
@@ -177,7 +201,7 @@ def _from_connector(found: Mapping[str, Evidence], isle: Islands, ref: str, kind
         earth = named[pin.number] == "earth" or ((earth_like(pin.name) or pin.name.upper() in ("E", "G", "GND")) and carries)
         if earth or (carries and role(pin.net or "") not in ("line", "neutral") and earth_like(pin.net or "")):
             evidence.earth.setdefault("inlet", (STRONG, f"earth contact {ref}.{pin.number}", part.fact))
-        elif role(pin.net or "") == "earth" or named[pin.number] == "earth":
+        elif role(pin.net or "") == "earth" or named[pin.number] == "earth" or _behind_y_capacitors(isle, pin.net or "", ref):
             continue
         elif mains_entry or ({"line", "neutral"} <= poles and role(pin.net or "") in ("line", "neutral")):
             evidence.mains.setdefault("connector", (STRONG, f"mains connector {ref} ({candidate.because})", part.fact))

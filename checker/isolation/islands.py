@@ -284,8 +284,9 @@ def settle_capacitors(isle: Islands) -> None:
 
 
 def _joins(isle: Islands, candidate: Candidate, stub: list[str]) -> bool:
-    if candidate.kind in LIMITERS:
-        return not any(earth_like(net) for net in stub)
+    if candidate.kind in LIMITERS:  # what a capacitor of class Y leads to is another side
+        y_class = any(isle.choice[ref].marked("Y1", "Y2", "Y3", "Y4") for net in stub for ref in isle.live[net])
+        return not y_class and not any(earth_like(net) for net in stub)
     if candidate.marks or ((rating := candidate.ratings.get("voltage")) is not None and float(rating.value) >= LINE_RATING):
         return False
     value = candidate.value

@@ -15,33 +15,27 @@ Pins are numbered by their order in the file and are not those of a package. Nod
 that a circuit whose two sides both stand on it has no barrier here. Controlled sources and switches are parts of their two output
 nodes; the nodes they sense carry no current and are left out, as are substrates of transistors. Other files that are named are
 never opened, expressions never worked out. Numbers are read as simulators do: `M` is milli, `Meg` mega. Bring a bill of materials
-and a declaration for everything else.
+and a declaration for everything else; a coupling called `K_T1` is part T1 of that bill, a sub-circuit `XU2` part U2.
 """
 
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
 
 from checker import limits
 from checker.errors import InputError
 from checker.files import Blob, decoded
 from checker.model.fact import Source
 from checker.model.reading import NetRecord, Node, Note, PartRecord, Reader, Reading, SymbolPin
-from checker.neutral import neutral
-from checker.readers import sniff, spice_cards
+from checker.readers import sniff, spice_cards, spice_notes
 from checker.readers.spice_cards import Device
 from checker.readers.spice_flat import GROUND, Flat, Part, Scope
 from checker.readers.spice_lines import Card, cards
 
 FORM = "SPICE netlist"
 
-_SHOWN = 5
 _REMEDY = "A netlist of the schematic editor says more than one of a simulator; export that if there is one."
-_LIMITED = (
-    "simulation netlist: it has no connectors, ratings or footprints, its pins are numbered by their order in the file, "
-    "and what a simulation puts on node 0 is one net; it shows connections, bill of materials and declaration must say the rest"
-)
+_AUTOMATIC = re.compile(r"N[0-9]{3}|NC_[0-9]+")  # names a schematic editor gave
 _OPENING = frozenset({".include", ".inc", ".lib", ".incl"})
 _COMMANDS = frozenset(
     ".param .params .func .tran .ac .dc .op .noise .tf .four .ic .nodeset .options .option .opt .temp .step .meas .measure .probe "
@@ -58,8 +52,9 @@ def claims(head: str) -> bool:
 class _File:
     """Sorts the statements of a file."""
 
-    def __init__(self, path: str):
+    def __init__(self, path: str, title: str):
         self.path = path
+        self.titled = title.lower().startswith(".subckt")
         self.top = Scope("", 0, [])
         self.types: dict[str, str] = {}  # model in small letters -> type
         self.shared = {GROUND}
@@ -70,15 +65,14 @@ class _File:
 
     def take(self, card: Card) -> None:
         """One statement. Raises InputError for one that changes what is connected and is not understood."""
-        if card.letter == "K":
-            self._scope.couplings.append(card)
-        elif card.letter != ".":
-            self._scope.cards.append(card)
+        if card.letter != ".":
+            self._scope.take(card)
         elif card.keyword == ".subckt":
             self._begin(card)
         elif card.keyword == ".ends":
             if self._scope.outer is None:
-                raise InputError(self.path, "`.ends` without `.subckt`", line=card.line)
+                remedy = "The first line of a file is its title, whatever it holds; put another line in front of it."
+                raise InputError(self.path, "`.ends` without `.subckt`", line=card.line, remedy=remedy if self.titled else "")
             self._scope = self._scope.outer
         elif card.keyword == ".model":
             if len(card.words) > 2:
@@ -101,6 +95,8 @@ class _File:
                 self.path, "the file holds too many sub-circuits", line=card.line, expected=f"at most {limits.PARTS:,}"
             )
         made = Scope(words[1], card.line, words[2:], self._scope)
+        if len({node.lower() for node in made.nodes}) < len(made.nodes):
+            raise InputError(self.path, "a sub-circuit names a node twice", line=card.line, found=" ".join(card.words)[:200])
         if made.name.lower() in self._scope.inner:
             raise InputError(self.path, "a sub-circuit is defined twice", line=card.line, found=made.name)
         self._scope.inner[made.name.lower()] = made
@@ -128,40 +124,6 @@ class _File:
         return list(found.values())
 
 
-def _notes(file: _File, flat: Flat, first: str) -> Iterator[Note]:
-    """What was left out, each sort once."""
-    path = file.path
-    yield Note("skipped", _LIMITED, (Source(path),))
-    if file.opening:
-        text = f"{len(file.opening)} statements name other files, which are not opened: {_listed(file.opening)}"
-        yield Note("skipped", text, tuple(Source(path, card.line) for card in file.opening[:_SHOWN]))
-    if file.unread:
-        text = f"{len(file.unread)} statements not understood and skipped: {_listed(file.unread)}"
-        yield Note("skipped", text, tuple(Source(path, card.line) for card in file.unread[:_SHOWN]))
-    unsolved = [device for device in flat.used if spice_cards.is_expression(device.value)]
-    if unsolved:
-        shown = ", ".join(neutral(device.ref, 40) for device in unsolved[:_SHOWN])
-        text = f"{len(unsolved)} values are expressions and are not worked out: {shown}"
-        yield Note("skipped", text, tuple(Source(path, device.line) for device in unsolved[:_SHOWN]))
-    sensing = [device for device in flat.used if device.letter in spice_cards.SENSING or device.substrate]
-    if sensing:
-        shown = ", ".join(neutral(device.ref, 40) for device in sensing[:_SHOWN])
-        text = f"nodes that carry no current (sensed ones, substrates) are left out at {len(sensing)} parts: {shown}"
-        yield Note("skipped", text, tuple(Source(path, device.line) for device in sensing[:_SHOWN]))
-    if flat.whole:
-        shown = ", ".join(neutral(ref, 40) for ref in flat.whole[:_SHOWN])
-        text = f"{len(flat.whole)} sub-circuits are taken as one part each, with pins in the order of the file: {shown}"
-        yield Note("no-symbol", text, (Source(path),), tuple(flat.whole[:_SHOWN]))
-    if re.match(r"[RCLDQMX][A-Za-z_]*[0-9]+[ \t]+[^ \t]+[ \t]+[^ \t]+[ \t]+[^ \t]+", first, re.IGNORECASE):
-        yield Note("skipped", f"the first line is the title, whatever it holds: {neutral(first, 80)}", (Source(path, 1),))
-
-
-def _listed(found: list[Card]) -> str:
-    """Keywords or references, no paths: these are of somebody's machine."""
-    words = list(dict.fromkeys(neutral(card.words[0], 40) for card in found))
-    return ", ".join(words[:_SHOWN]) + (", ..." if len(words) > _SHOWN else "")
-
-
 def read(blob: Blob) -> Reading:
     """The netlist. Raises InputError, with the line, for what cannot be a whole netlist."""
     head = sniff.head(blob)
@@ -170,13 +132,13 @@ def read(blob: Blob) -> Reading:
         raise InputError(blob.path, what, found=sniff.describe(head), expected="a title, then parts such as R1 IN OUT 10k")
     text, note = decoded(blob)
     text = text.removeprefix("\ufeff").replace("\r\n", "\n").replace("\r", "\n")
-    file = _File(blob.path)
+    first = text.partition("\n")[0].strip(sniff.WHITE)
+    file = _File(blob.path, first)
     for card in cards(text, blob.path):
         file.take(card)
     file.end()
     flat = Flat(blob.path, file.top, file.devices, file.types, file.shared)
-    first = text.partition("\n")[0]
-    title = re.sub(r"\A(?:\*|\.title\b)\s*", "", first.strip(sniff.WHITE), flags=re.IGNORECASE)
+    title = re.sub(r"\A(?:\*|\.title\b)\s*", "", first, flags=re.IGNORECASE)
     parts, nets = _records(flat, blob.path)
     encoding = [Note("encoding", note, (Source(blob.path),))] if note else []
     return Reading(
@@ -186,7 +148,7 @@ def read(blob: Blob) -> Reading:
         sha256=blob.sha256,
         parts=parts,
         nets=nets,
-        notes=(*encoding, *_notes(file, flat, first)),
+        notes=(*encoding, *spice_notes.notes(blob.path, flat, file.opening, file.unread, first)),
         title="" if re.search(r"[/\\]", title) else title[: limits.NAME],
     )
 
@@ -206,7 +168,7 @@ def _records(flat: Flat, path: str) -> tuple[tuple[PartRecord, ...], tuple[NetRe
         if count > limit:
             raise InputError(path, f"the file holds too many {what}", expected=f"at most {limit:,}")
     return tuple(_record(part, path) for part in flat.parts), tuple(
-        NetRecord(name, name, tuple(nodes), nodes[0].source) for name, nodes in nets.items()
+        NetRecord("" if _AUTOMATIC.fullmatch(name) else name, name, tuple(nodes), nodes[0].source) for name, nodes in nets.items()
     )
 
 

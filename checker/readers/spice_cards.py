@@ -3,14 +3,13 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
-from decimal import Decimal
 
 from checker import limits
 from checker.errors import InputError
 from checker.model.fact import Fact, Source
-from checker.readers.bom_headings import attribute
+from checker.readers.spice_figures import figure, in_units, is_expression
 from checker.readers.spice_lines import Card
 
 # letter -> names of its terminals in the order of its nodes, and a symbol that says what it is; nodes that only sense are left out
@@ -32,20 +31,23 @@ _TERMINALS = {
     "W": (("", ""), "Controlled_Switch"),
     "T": (("", "", "", ""), "Transmission_Line"),
 }
-SENSING = frozenset("EGS")  # cards with two further nodes that carry no current
+CONTROLLED = frozenset("BEFGHSW")  # cards that sense elsewhere; further nodes of theirs carry no current
 MODELLING = frozenset("ABEFGH")  # cards that no drawing of a board holds: a sub-circuit with one is the model of one part
 _NO_PART = frozenset("VIBEFGHSTW")  # their reference letters mean other parts on a board
 _MODELLED = frozenset("DJZQM")
-_PLACED = re.compile(r"X[A-Z]{1,2}[0-9]+\Z", re.IGNORECASE)  # XU2
-_DOUBLED = re.compile(r"[A-Za-z]_(?=[^\W_])")  # R_R57
-_UNIT = re.compile(r"([+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?)([A-Za-zµμ\u03a9\u2126]*)\Z")
-_POWERS = {"f": -15, "p": -12, "n": -9, "u": -6, "µ": -6, "μ": -6, "m": -3, "k": 3, "g": 9, "t": 12}
-_SHOWN_IN = {
-    "R": ((9, "G\u03a9"), (6, "M\u03a9"), (3, "k\u03a9"), (0, "\u03a9"), (-3, "m\u03a9")),
-    "C": ((-6, "uF"), (-9, "nF"), (-12, "pF")),
-    "L": ((0, "H"), (-3, "mH"), (-6, "uH"), (-9, "nH")),
-}
+_DOUBLED = re.compile(r"([A-Z])_(?=\1|[A-Z]{1,4}[0-9]+[A-Z]?\Z)", re.IGNORECASE)  # R_R57, X_U2; R_load is called so
+_PLACED = re.compile(r"X(?=[A-Z]{1,2}[0-9]+\Z)|K(?=(?:T|TR|TX)[0-9]+\Z)", re.IGNORECASE)  # XU2, KT1
+_NUMBERED = re.compile(r"[DQ](?=[0-9]N[0-9])", re.IGNORECASE)  # D1N4007, a model of 1N4007
 _TYPES = {"npn": "Q_NPN", "pnp": "Q_PNP", "lpnp": "Q_PNP", "nmos": "NMOS", "pmos": "PMOS", "vdmos": "MOSFET", "d": "D"}
+# parameter -> letters of the cards that it says something of, "" for all, what it says, and the unit of a number
+_PARAMETERS = {
+    "mfg": ("", "maker", ""),
+    "pn": ("", "type", ""),
+    "tol": ("RCL", "tolerance", "%"),
+    "v": ("C", "rating:voltage", "V"),
+    "pwr": ("R", "rating:power", "W"),
+    "type": ("C", "technology", ""),
+}
 
 
 @dataclass(slots=True)
@@ -67,9 +69,8 @@ class Device:
     @property
     def ref(self) -> str:
         """The reference on the schematic: `R_R57` is R57, `XU2` U2."""
-        if _DOUBLED.match(self.name):
-            return self.name[2:]
-        return self.name[1:] if self.letter == "X" and _PLACED.match(self.name) else self.name
+        letter = _DOUBLED.match(self.name) or _PLACED.match(self.name)
+        return self.name[letter.end() :] if letter else self.name
 
 
 def device(card: Card, models: Iterable[str], path: str) -> Device | None:
@@ -110,7 +111,7 @@ def device(card: Card, models: Iterable[str], path: str) -> Device | None:
 def _base_nodes(words: list[str], models: Iterable[str]) -> int:
     """Whether a bipolar transistor has a substrate: the word that is a known model decides, else a number that is an area."""
     if len(words) > 5 and words[4].lower() not in models:
-        return 4 if words[5].lower() in models or not _UNIT.match(words[5]) else 3
+        return 4 if words[5].lower() in models or figure(words[5]) is None else 3
     return 3
 
 
@@ -138,36 +139,11 @@ def _short(card: Card, path: str, expected: str) -> InputError:
     return InputError(path, "a part has too few words", line=card.line, found=" ".join(card.words)[:200], expected=expected)
 
 
-def is_expression(text: str) -> bool:
-    """Whether a value is to be worked out, which is never done here."""
-    return bool(text) and text[0] in "{'"
-
-
-def in_units(text: str, letter: str) -> str:
-    """A value in words that are read one way everywhere: `1M` of a resistor is 1 mΩ here, `1Meg` 1 MΩ; "" for what is no number.
-
-    Letters behind the scale count for nothing: `10uF`, `4.7kOhm`.
-    """
-    found = _UNIT.match(text.replace("\u00b5", "µ"))
-    if not found or letter not in _SHOWN_IN:
-        return ""
-    suffix = found[2].lower()
-    number = Decimal(found[1])
-    if suffix.startswith("mil"):
-        number *= Decimal("25.4e-6")
-    elif suffix.startswith("meg"):
-        number = number.scaleb(6)
-    else:
-        number = number.scaleb(_POWERS.get(suffix[:1], 0))
-    if not -20 < number.adjusted() < 15 and number:
-        return ""
-    scales = _SHOWN_IN[letter]
-    power, unit = next((scale for scale in scales if abs(number) >= Decimal(1).scaleb(scale[0])), scales[-1])
-    return f"{number.scaleb(-power).normalize():f} {unit}"
-
-
 def facts(made: Device, types: dict[str, str], path: str) -> tuple[Fact, ...]:
-    """What a card says of its part. types: model in small letters -> its type."""
+    """What a card says of its part. types: model in small letters -> its type.
+
+    Sources, loads and switches of a simulation are of no kind a board has, and no bill of materials lists them.
+    """
     source = Source(path, made.line)
     found = []
     if made.value:
@@ -175,14 +151,34 @@ def facts(made: Device, types: dict[str, str], path: str) -> tuple[Fact, ...]:
         found.append(Fact("value", text or made.value, source, text=made.value if text and text != made.value else ""))
     kind = types.get(made.model.lower(), made.model).lower()
     if made.model and not (made.letter in _MODELLED and made.model.lower() in (*_TYPES, "njf", "pjf")):
-        found.append(Fact("type", made.model, source))
-    symbol = "IC" if made.letter == "X" else _TERMINALS[made.letter][1] if made.letter in _TERMINALS else _TYPES.get(kind, "")
+        found.append(Fact("type", _NUMBERED.sub("", made.model, 1)[: limits.CELL], source))
+    symbol = _symbol(made, kind)
     if made.letter in _NO_PART:
         found.append(Fact("kind", "unknown", source, text=f"{symbol.replace('_', ' ').lower()} of a simulation"))
-    symbol = symbol or {"Q": "Bipolar_Transistor", "M": "MOSFET"}[made.letter]
-    found.append(Fact("symbol", symbol, source))
-    for name, text in made.parameters.items():
-        meaning = {"mfg": "maker", "pn": "type"}.get(name) or (attribute(name) if name == "tol" else None)
-        if meaning and text:
-            found.append(Fact(meaning, text[: limits.CELL], source))
+        found.append(Fact("in_bom", False, source))
+    if symbol:
+        found.append(Fact("symbol", symbol, source))
+    found += _stated(made, source)
     return tuple(found)
+
+
+def _symbol(made: Device, kind: str) -> str:
+    """A symbol that says what a part is; "" for a sub-circuit whose reference says more: XF1 is a fuse, XJ1 a connector."""
+    if made.letter == "X":
+        return "" if made.ref != made.name else "IC"
+    if made.letter in _TERMINALS:
+        return _TERMINALS[made.letter][1]
+    return _TYPES.get(kind, "") or {"Q": "Bipolar_Transistor", "M": "MOSFET"}[made.letter]
+
+
+def _stated(made: Device, source: Source) -> Iterator[Fact]:
+    """What parameters tell of the part that is bought: `mfg="..." pn="..." tol=5 V=25`."""
+    for name, (letters, meaning, unit) in _PARAMETERS.items():
+        text = made.parameters.get(name, "")
+        if not text or is_expression(text) or (letters and made.letter not in letters):
+            continue
+        number = figure(text) if unit else None
+        if unit and number is None:
+            continue
+        shown = f"{number.normalize():f} {unit}" if number is not None else text
+        yield Fact(meaning, shown[: limits.CELL], source, text=f"{name}={text}"[: limits.CELL] if shown != text else "")

@@ -2,24 +2,27 @@
 
 A sub-circuit is placed where `X` names it, wherever it is defined. It stays one part, not looked into, where its definition is not
 in the file, where it holds controlled sources (then it is the model of a part), and where the schematic calls it a part (`XU2`,
-`X_U2`), unless it holds coupled coils.
+`X_U2`), unless it holds coupled coils: then its core has the name of the part, and what else is inside belongs to the model.
 """
 
 from __future__ import annotations
 
-from collections import defaultdict
-from collections.abc import Callable, Iterable, Iterator
+from collections import Counter
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 
 from checker import limits
 from checker.errors import InputError
 from checker.model.fact import Fact, Source
 from checker.neutral import neutral
-from checker.readers import spice_cards
+from checker.readers import spice_cards, spice_cores
 from checker.readers.spice_cards import Device
+from checker.readers.spice_cores import Core
 from checker.readers.spice_lines import Card
 
 GROUND = "0"
+_GROUNDS = frozenset({"0", "gnd"})
+_EVERYWHERE = "$g_"  # begins nodes that are one everywhere
 
 
 @dataclass(slots=True, eq=False)
@@ -32,7 +35,13 @@ class Scope:
     outer: Scope | None = None
     cards: list[Card] = field(default_factory=list)
     couplings: list[Card] = field(default_factory=list)
+    models: bool = False  # it holds cards that no board does
     inner: dict[str, Scope] = field(default_factory=dict)
+
+    def take(self, card: Card) -> None:
+        """A part or a coupling of coils."""
+        (self.couplings if card.letter == "K" else self.cards).append(card)
+        self.models = self.models or card.letter in spice_cards.MODELLING
 
     def find(self, name: str) -> Scope | None:
         """The sub-circuit of that name as seen from here."""
@@ -48,10 +57,20 @@ class Scope:
 class Part:
     """A part where it is placed. pins: (number, name, net)."""
 
+    letter: str
     ref: str
     line: int
     facts: tuple[Fact, ...]
     pins: list[tuple[str, str, str]]
+
+
+@dataclass(slots=True)
+class Supply:
+    """A voltage source where it is placed, and one of its nets, not node 0 where it has another."""
+
+    ref: str
+    device: Device
+    net: str
 
 
 class Flat:
@@ -61,12 +80,17 @@ class Flat:
         self.path, self.types = path, types
         self.shared = frozenset(node.lower() for node in shared)  # nodes that are the same everywhere
         self.whole: list[str] = []  # sub-circuits that were taken as one part
+        self.coupled: list[tuple[str, Core]] = []  # coupled coils as placed
+        self.supplies: list[Supply] = []
         self.parts: list[Part] = []
         self._parts_of = parts
         self._devices: dict[int, list[Device]] = {}  # id of a scope
+        self._cores: dict[int, list[Core]] = {}
         self._weights: dict[int, int] = {}
         self._open: list[Scope] = []
-        self._names: dict[str, str] = {}  # net in small letters -> as written first
+        self.grounds: dict[str, str] = {}  # spellings of node 0, in small letters -> as written first
+        self._names: dict[tuple[str, str], str] = {}  # circuit and node in small letters -> net, as written first
+        self._taken: set[str] = set()
         self._weigh(top)
         self._place(top, "", {})
 
@@ -78,7 +102,7 @@ class Flat:
     def _block(self, scope: Scope, device: Device) -> Scope | None:
         """The definition a part is placed from, None where it stays one part."""
         found = scope.find(device.model) if device.letter == "X" else None
-        if found is None or any(card.letter in spice_cards.MODELLING for card in found.cards):
+        if found is None or found.models:
             return None
         return found if device.ref == device.name or found.couplings else None
 
@@ -95,7 +119,9 @@ class Flat:
             )
         self._open.append(scope)
         self._devices[id(scope)] = self._parts_of(scope)
-        weight = 0
+        coils = {device.name.lower(): device for device in self._devices[id(scope)] if device.letter == "L"}
+        self._cores[id(scope)] = spice_cores.cores(scope.couplings, coils, self.path)
+        weight = len(scope.couplings)
         for device in self._devices[id(scope)]:
             block = self._block(scope, device)
             weight += 1 + len(device.nodes) + (self._weigh(block) if block is not None else 0)
@@ -118,36 +144,54 @@ class Flat:
         folded = node.lower()
         if folded in given:
             return given[folded]
-        name = node if not path or folded in self.shared else f"{path}/{node}"
-        if len(name) > limits.NAME:
-            raise InputError(
-                self.path, "the name of a node is too long", found=name, expected=f"at most {limits.NAME:,} characters"
-            )
-        return self._names.setdefault(name.lower(), name)
+        if folded in _GROUNDS:
+            self.grounds.setdefault(folded, node)
+            folded, node = GROUND, GROUND
+        inside = "" if folded in self.shared or folded.startswith(_EVERYWHERE) else path
+        if (inside, folded) not in self._names:
+            name = f"{inside}/{node}" if inside else node
+            if len(name) > limits.NAME:
+                expected = f"at most {limits.NAME:,} characters"
+                raise InputError(self.path, "the name of a node is too long", found=name, expected=expected)
+            while name.lower() in self._taken:  # a node that is written as one inside a sub-circuit is named here
+                name += "'"
+            self._taken.add(name.lower())
+            self._names[inside, folded] = name
+        return self._names[inside, folded]
 
-    def _place(self, scope: Scope, path: str, given: dict[str, str]) -> None:
-        refs = self._references(scope)
-        coils = {device.name.lower(): device for device in self._devices[id(scope)] if device.letter == "L"}
-        cores = list(self._cores(scope, coils))
-        wound = {id(coil) for _, core in cores for coil in core}
-        for device in self._devices[id(scope)]:
+    def _place(self, scope: Scope, path: str, given: dict[str, str], part: str = "", modelled: bool = False) -> None:
+        """Every part of a circuit. part: the reference of the part it is the model of. modelled: whether it is inside of such."""
+        devices, cores = self._devices[id(scope)], self._cores[id(scope)]
+        refs = _references([*devices, *(core.device for core in cores)])
+        wound = {id(coil) for core in cores for coil in core.coils}
+        for device in devices:
             if id(device) in wound:
                 continue
             nets = [self._net(node, path, given) for _, node in device.nodes]
             ref = self._path(path, refs[id(device)], device)
             block = self._block(scope, device)
             if block is not None:
-                self._place(block, f"{path}/{refs[id(device)]}", dict(zip(map(str.lower, block.nodes), nets, strict=True)))
+                inner = dict(zip(map(str.lower, block.nodes), nets, strict=True))
+                model = device.ref != device.name
+                self._place(block, f"{path}/{refs[id(device)]}", inner, ref if model and not modelled else "", model or modelled)
                 continue
             names = [name for name, _ in device.nodes]
+            if device.letter == "V":
+                self.supplies.append(Supply(ref, device, next((net for net in nets if net != GROUND), GROUND)))
             if device.letter == "X":
                 self.whole.append(ref)
                 found = scope.find(device.model)
                 names = found.nodes if found is not None and len(found.nodes) == len(nets) else names
             pins = [(str(at), name, net) for at, (name, net) in enumerate(zip(names, nets, strict=True), 1)]
-            self.parts.append(Part(ref, device.line, spice_cards.facts(device, self.types, self.path), pins))
-        for card, core in cores:
-            self.parts.append(self._transformer(card, core, path, given))
+            said = spice_cards.facts(device, self.types, self.path)
+            if modelled:
+                said = (*said, Fact("in_bom", False, Source(self.path, device.line)))
+            self.parts.append(Part(device.letter, ref, device.line, said, pins))
+        for core in cores:
+            ref = part if part and len(cores) == 1 else self._path(path, refs[id(core.device)], core.device)
+            pins = [(str(at), name, self._net(node, path, given)) for at, (name, node) in enumerate(core.device.nodes, 1)]
+            self.coupled.append((ref, core))
+            self.parts.append(Part("K", ref, core.device.line, spice_cores.facts(core, self.path), pins))
 
     def _path(self, path: str, ref: str, device: Device) -> str:
         ref = f"{path}/{ref}" if path else ref
@@ -156,52 +200,8 @@ class Flat:
             raise InputError(self.path, "the reference of a part is too long", line=device.line, found=ref, expected=expected)
         return ref
 
-    def _references(self, scope: Scope) -> dict[int, str]:
-        """id of a part -> its reference: as on the schematic where that is no other part's name too."""
-        claimed: dict[str, list[Device]] = defaultdict(list)
-        for device in self._devices[id(scope)]:
-            claimed[device.name.lower()].append(device)
-            if device.ref != device.name:
-                claimed[device.ref.lower()].append(device)
-        return {
-            id(device): device.ref if len(claimed[device.ref.lower()]) == 1 else device.name for device in self._devices[id(scope)]
-        }
 
-    def _cores(self, scope: Scope, coils: dict[str, Device]) -> Iterator[tuple[Card, list[Device]]]:
-        """(first card `K`, its coils in order) of each core; cards that share a coil are of one core."""
-        cores: list[tuple[Card, dict[str, Device]]] = []
-        for card in scope.couplings:
-            named = [word.lower() for word in card.positional()[1:] if word[:1] in "Ll"]
-            missing = next((name for name in named if name not in coils), "")
-            if missing or len(named) < 2:
-                found = missing or " ".join(card.words)[:200]
-                what = "a coupling names a coil that is not there" if missing else "a coupling names fewer than two coils"
-                raise InputError(self.path, what, line=card.line, found=found, expected="two or more parts L and a factor")
-            core = {name: coils[name] for name in named}
-            apart = []
-            for first, other in cores:
-                if core.keys() & other.keys():
-                    card, core = first, other | core
-                else:
-                    apart.append((first, other))
-            cores = [*apart, (card, core)]
-        yield from ((card, list(core.values())) for card, core in cores)
-
-    def _transformer(self, card: Card, core: list[Device], path: str, given: dict[str, str]) -> Part:
-        """Coupled coils as one part with a winding each, its pins numbered in the order of the coils."""
-        pins = [
-            (str(2 * at + end + 1), coil.ref, self._net(coil.nodes[end][1], path, given))
-            for at, coil in enumerate(core)
-            for end in (0, 1)
-        ]
-        source = Source(self.path, card.line)
-        windings = ", ".join(f"{2 * at + 1}-{2 * at + 2}" for at in range(len(core)))
-        names = ", ".join(neutral(coil.ref, 40) for coil in core[:8])
-        facts = (
-            Fact("kind", "transformer", source, text=" ".join(card.words)[: limits.CELL]),
-            Fact("windings", windings, source, text=f"coupled coils {names}"),
-            Fact("symbol", "Transformer", source),
-        )
-        name = card.words[0]
-        ref = name[2:] if name[1:2] == "_" and len(name) > 2 else name
-        return Part(f"{path}/{ref}" if path else ref, card.line, facts, pins)
+def _references(devices: Sequence[Device]) -> dict[int, str]:
+    """id of a part -> its reference: as on the schematic where that is no other part's name too."""
+    claimed = Counter(name for device in devices for name in {device.name.lower(), device.ref.lower()})
+    return {id(device): device.ref if claimed[device.ref.lower()] == 1 else device.name for device in devices}

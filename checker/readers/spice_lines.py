@@ -61,7 +61,7 @@ def cards(text: str, path: str) -> Iterator[Card]:
         if not row or row[0] == "*":
             continue
         words = _WORD.findall(_plain(row[1:] if row[0] == "+" else row))
-        if control or words[:1] == [".control"]:
+        if control or (words and words[0].lower() == ".control"):
             control = 0 if words and words[0].lower() == ".endc" else control or number
             continue
         count += len(words)

@@ -9,6 +9,7 @@ from decimal import Decimal, InvalidOperation
 
 from checker import limits
 from checker.errors import InputError
+from checker.neutral import neutral
 from checker.readers import bom_headings as headings
 from checker.readers.bom_sections import Record
 
@@ -20,8 +21,8 @@ class Room:
     """What one workbook may still hold: a cell that is repeated, or a text that many cells name, is small in the file only."""
 
     path: str
-    cells: int = limits.SHEET_CELLS
-    letters: int = limits.SHEET_TEXT
+    cells: int
+    letters: int
 
     def take(self, letters: int) -> None:
         """Room for a cell of so many characters. Raises InputError when there is none."""
@@ -56,22 +57,30 @@ class Sheet:
     fault: InputError | None = None
 
     def put(self, row: int, column: int, text: str) -> None:
-        """A cell that holds text. Beyond what a list of parts may have, the sheet ends with a `fault`."""
-        if not text or self.fault is not None:
+        """A cell that holds text; one beyond what a list of parts may have is a `fault` of the sheet.
+
+        Raises InputError when the workbook has no more room.
+        """
+        if not text:
             return
+        self.room.take(len(text))
+        fault: tuple[str, str] | None = None
         if column > limits.BOM_COLUMNS:
-            self.fault = self.refusal("too many columns", row, place(row, column), f"at most {limits.BOM_COLUMNS}")
+            fault = "too many columns", f"at most {limits.BOM_COLUMNS}"
         elif row not in self.cells and len(self.cells) >= limits.BOM_ROWS:
-            self.fault = self.refusal(f"more than {limits.BOM_ROWS:,} rows", row, "", f"at most {limits.BOM_ROWS:,}")
+            fault = f"more than {limits.BOM_ROWS:,} rows", f"at most {limits.BOM_ROWS:,}"
         elif len(text) > limits.TOKEN:
-            self.fault = self.refusal("a cell is too long", row, place(row, column), f"at most {limits.TOKEN:,} characters")
-        else:
-            self.room.take(len(text))
+            fault = "a cell is too long", f"at most {limits.TOKEN:,} characters"
+        if fault is None:
             self.cells.setdefault(row, {})[column] = text
+        elif self.fault is None:
+            self.fault = self.refusal(fault[0], row, place(row, column), fault[1])
 
     def refusal(self, what: str, row: int, found: str, expected: str = "", remedy: str = "") -> InputError:
         """The error for a row of this sheet."""
-        return InputError(self.room.path, f"sheet {shown(self.name)}: {what}", line=row, found=found, expected=expected, remedy=remedy)
+        return InputError(
+            self.room.path, f"sheet {shown(self.name)}: {what}", line=row, found=found, expected=expected, remedy=remedy
+        )
 
     def records(self) -> list[Record]:
         """Rows that hold something, each with its number, and a blank one wherever rows are left out.
@@ -91,11 +100,12 @@ class Sheet:
         over = range(left + 1, min(right, limits.BOM_COLUMNS) + 1) if _counts_for_all(text) else ()
         for row in rows[bisect_left(rows, top) : bisect_right(rows, bottom)]:
             there = self.cells[row]
-            if row == top and not any(column < left or column > right for column in there):
-                continue  # a caption over the whole table
+            self.room.take(0)
+            if not any(column < left or column > right for column in there):
+                continue  # a caption over the whole table, or a row without anything of its own
             for column in (*((left,) if row > top else ()), *over):
-                self.room.take(len(text))
                 if column not in there:
+                    self.room.take(len(text))
                     there[column] = text
                     self.carried[row, column] = top
 
@@ -129,7 +139,8 @@ def place(row: int, column: int) -> str:
 
 
 def shown(name: str) -> str:
-    """A sheet's name as the programs write it before a cell, `Parts` or `'Parts 2'`."""
+    """A sheet's name, made harmless, as the programs write it before a cell: `Parts` or `'Parts 2'`."""
+    name = neutral(name, 64)
     return name if name.isalnum() else "'" + name.replace("'", "''") + "'"
 
 
@@ -142,12 +153,12 @@ def figure(text: str) -> Decimal | None:
     return value if value.is_finite() else None
 
 
-def number(text: str, percent: bool = False) -> str:
-    """A stored figure as people write it: `100`, `0.47`, `5%`; other text as it is."""
+def number(text: str, unit: str = "", percent: bool = False) -> str:
+    """A stored figure as people write it, with its unit: `100`, `4.7E-7`, `0.00000047 F`, `5%`; other text as it is."""
     value = figure(text)
     if value is None:
         return text
-    value = (value * 100 if percent else value).normalize()
-    if value and not -15 <= value.adjusted() <= 15:
-        return f"{value:E}{'%' * percent}"
-    return f"{value if value else 0:f}{'%' * percent}"
+    value = abs(value) if not value else (value * 100 if percent else value).normalize()
+    exponent = value.adjusted() if value else 0
+    written = f"{value:E}" if exponent > 15 or exponent < -15 or (exponent < -5 and not unit) else f"{value:f}"
+    return f"{written}{unit}{'%' * percent}"

@@ -7,12 +7,13 @@ import re
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime, timedelta
+from functools import lru_cache
 from typing import Any
 
 from checker import limits
 from checker.errors import InputError
-from checker.readers.workbook_sheet import Room, Sheet, number, place
-from checker.readers.workbook_zip import Archive, attribute, local
+from checker.readers.workbook_sheet import Room, Sheet, number, place, shown
+from checker.readers.workbook_zip import SAVE, Archive, attribute, local
 
 START = "_rels/.rels"
 
@@ -22,7 +23,7 @@ _ASIDE = re.compile(r'"[^"]*"|\\.|\[[^\]]*\]|_.|\*.')  # what of a format is no 
 _ESCAPE = re.compile(r"_x([0-9A-Fa-f]{4})_")
 _DATES = frozenset((*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)))  # built-in formats of dates and times
 _PERCENTS = frozenset((9, 10))
-_LAST_DAY = 2_958_465  # 9999-12-31
+_LAST_DAY = 2_957_003  # 9999-12-31 counted from 1904
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,11 +64,16 @@ def sheets(archive: Archive, room: Room) -> Iterator[Sheet]:
     for count, found in enumerate(archive.elements(name, "sheet")):
         if count >= limits.SHEETS:
             raise InputError(archive.path, "the workbook has too many sheets", expected=f"at most {limits.SHEETS}")
-        kind, member = targets.get(attribute(found, "id"), ("", ""))
-        if kind == "worksheet" and member in archive:
-            sheet = Sheet(room, attribute(found, "name")[:64], attribute(found, "state") in ("", "visible"))
-            _fill(archive, member, sheet, book)
-            yield sheet
+        sheet = Sheet(room, attribute(found, "name")[:64], attribute(found, "state") in ("", "visible"))
+        kind, member = targets.get(attribute(found, "id"), ("worksheet", ""))
+        if kind != "worksheet":  # a chart or a dialogue
+            continue
+        if member not in archive:
+            raise InputError(
+                archive.path, "the workbook lacks one of its files", expected=f"sheet {shown(sheet.name)}", remedy=SAVE
+            )
+        _fill(archive, member, sheet, book)
+        yield sheet
 
 
 def _targets(archive: Archive, name: str) -> Mapping[str, tuple[str, str]]:
@@ -92,12 +98,20 @@ def _strings(archive: Archive, name: str) -> Iterator[str]:
 
 def _text(element: Any) -> str:
     """The text of a string with its runs; reading aids (`rPh`) are no part of it."""
-    return _plain("".join(found.text or "" for found in element.iter() if local(found) == "t" and local(found.getparent()) != "rPh"))
+    return _plain(
+        "".join(found.text or "" for found in element.iter() if local(found) == "t" and local(found.getparent()) != "rPh")
+    )
 
 
 def _plain(text: str) -> str:
     """Characters that XML has no room for are written `_x000D_`; a line ends with LF alone."""
-    return _ESCAPE.sub(lambda found: chr(int(found[1], 16)), text).replace("\r\n", "\n") if "_x" in text else text
+    return _ESCAPE.sub(_character, text).replace("\r\n", "\n") if "_x" in text else text
+
+
+def _character(found: re.Match[str]) -> str:
+    """The character of an escape; NUL and halves of characters stay as they are written."""
+    code = int(found[1], 16)
+    return chr(code) if code and not 0xD800 <= code < 0xE000 else found[0]
 
 
 def _formats(archive: Archive, name: str) -> Sequence[_Format]:
@@ -114,6 +128,7 @@ def _formats(archive: Archive, name: str) -> Sequence[_Format]:
     return found
 
 
+@lru_cache(maxsize=1024)
 def _format(identity: int, code: str) -> _Format:
     """Only the first section of a format is looked at, the one for positive figures."""
     code = code[: limits.CELL].partition(";")[0]
@@ -183,11 +198,11 @@ def _value(cell: Any, sheet: Sheet, at: tuple[int, int], book: _Book) -> str:
     if look.dated and (date := _date(stored, book.since_1904)):
         sheet.dates.add(at)
         return date
-    return number(stored, look.percent) + look.unit
+    return number(stored, look.unit, look.percent)
 
 
 def _date(stored: str, since_1904: bool) -> str:
-    """The day of a stored figure, counted from 1899-12-30 (before March 1900 from the day after) or from 1904-01-01; "" for none."""
+    """The day of a figure, counted from 1899-12-30 (before March 1900 from the day after) or from 1904-01-01; "" for none."""
     try:
         days = float(stored)
     except ValueError:
@@ -195,4 +210,4 @@ def _date(stored: str, since_1904: bool) -> str:
     if not 0 <= days <= _LAST_DAY:
         return ""
     first = datetime(1904, 1, 1) if since_1904 else datetime(1899, 12, 30 + (days < 61))
-    return (first + timedelta(days=days)).strftime("%Y-%m-%d")
+    return (first + timedelta(days=days)).date().isoformat()

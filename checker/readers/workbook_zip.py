@@ -16,7 +16,7 @@ from checker.errors import InputError
 from checker.files import Blob
 from checker.readers.xml_netlist import ATTRIBUTES, SETTINGS
 
-_SAVE = "Save the bill of materials anew, as XLSX, ODS or CSV."
+SAVE = "Save the bill of materials anew, as XLSX, ODS or CSV."
 _ENTRY = b"PK\x01\x02"  # begins each entry of the list of members
 _BROKEN = (
     zipfile.BadZipFile,
@@ -55,14 +55,14 @@ class Archive:
     def _accept(self, member: zipfile.ZipInfo) -> None:
         name = member.filename
         if name.startswith("/") or "\\" in name or ".." in name.split("/") or ":" in name:
-            raise InputError(self.path, "a file in the workbook has a path that leads outside it", found=name, remedy=_SAVE)
+            raise InputError(self.path, "a file in the workbook has a path that leads outside it", found=name, remedy=SAVE)
         if name in self._members:
-            raise InputError(self.path, "the workbook holds a file twice", found=name, remedy=_SAVE)
+            raise InputError(self.path, "the workbook holds a file twice", found=name, remedy=SAVE)
         if member.flag_bits & 1:
             raise InputError(self.path, "the workbook is locked with a password", remedy="Save it without a password.")
         if member.compress_type not in (zipfile.ZIP_STORED, zipfile.ZIP_DEFLATED):
             what = "a file in the workbook is packed in a way that workbooks are not"
-            raise InputError(self.path, what, found=name, expected="deflate", remedy=_SAVE)
+            raise InputError(self.path, what, found=name, expected="deflate", remedy=SAVE)
         if member.file_size > limits.ZIP_MEMBER_BYTES:
             found = f"{member.file_size:,} bytes in {name}"
             raise self._beyond("a file in the workbook is too large", found, limits.ZIP_MEMBER_BYTES)
@@ -79,14 +79,14 @@ class Archive:
         """The bytes of a member. Raises InputError when it is absent or damaged, or longer than it says."""
         member = self._members.get(name)
         if member is None:
-            raise InputError(self.path, "the workbook lacks one of its files", expected=name, remedy=_SAVE)
+            raise InputError(self.path, "the workbook lacks one of its files", expected=name, remedy=SAVE)
         try:
             with self._zip.open(member) as stream:
                 data = stream.read(member.file_size + 1)
         except _BROKEN as error:
             raise self._broken(error, name) from None
         if len(data) > member.file_size:
-            raise InputError(self.path, "a file in the workbook is longer than it says", found=name, remedy=_SAVE)
+            raise InputError(self.path, "a file in the workbook is longer than it says", found=name, remedy=SAVE)
         return data
 
     def elements(self, name: str, *tags: str) -> Iterator[Any]:
@@ -103,7 +103,7 @@ class Archive:
                 if event == "start":
                     count += 1
                     if count == 1 and element.getroottree().docinfo.doctype:
-                        raise InputError(self.path, "a document type stands in the workbook", found=name, remedy=_SAVE)
+                        raise InputError(self.path, "a document type stands in the workbook", found=name, remedy=SAVE)
                     if count > limits.ATOMS:
                         raise self._beyond("the workbook holds too many elements", name, limits.ATOMS)
                     if len(element.attrib) > ATTRIBUTES:
@@ -118,7 +118,7 @@ class Archive:
                     _forget(element)
         except (etree.XMLSyntaxError, ValueError, LookupError) as error:
             said = str(error).split("\n")[0][:200]
-            raise InputError(self.path, f"{name} of the workbook is no XML ({said})", remedy=_SAVE) from None
+            raise InputError(self.path, f"{name} of the workbook is no XML ({said})", remedy=SAVE) from None
 
     def _beyond(self, what: str, found: str, limit: int) -> InputError:
         return InputError(self.path, what, found=found, expected=f"at most {limit:,}")
@@ -144,6 +144,9 @@ def local(element: Any) -> str:
 def attribute(element: Any, name: str, default: str = "") -> str:
     """An attribute by its local name."""
     value = element.get(name)
-    if value is not None:
-        return str(value)
-    return next((str(text) for key, text in element.attrib.items() if key.rpartition("}")[2] == name), default)
+    return str(value) if value is not None else attributes(element).get(name, default)
+
+
+def attributes(element: Any) -> dict[str, str]:
+    """All attributes by their local names; the first counts where two namespaces have one of the same name."""
+    return {key.rpartition("}")[2]: value for key, value in reversed(element.items())}

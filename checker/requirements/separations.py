@@ -127,6 +127,8 @@ def _fuses(board: Board, stress: Stress) -> Iterator[Spacing]:
         nets = part.nets()
         if not part.fitted or board.kind(ref) not in _FUSES or len(nets) != 2:
             continue
+        if any(net not in board.isolation.domain_of for net in nets):  # an end that leads nowhere
+            continue
         pole = next((stress.poles.get(net, net) for net in nets if stress.poles.get(net, net) in others), None)
         if pole is None:
             continue

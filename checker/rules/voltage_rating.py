@@ -119,10 +119,14 @@ def ask(analysis: Analysis, clause: Clause) -> Iterator[Verdict]:
 
 
 def _core(analysis: Analysis, ref: str) -> tuple[str, str] | None:
-    """(core, missing fact) for a rated part on a winding that nothing bounds."""
-    for pins in _pins(analysis, ref):
-        if analysis.stress.between(pins.one, pins.other) is None and _rated(analysis, ref) is not None:
-            told = [analysis.stress.loose[net] for net in (pins.one, pins.other) if net in analysis.stress.loose]
+    """(core, missing fact) for a rated part on a winding that nothing bounds, or on what is rectified from it."""
+    nets = analysis.design.parts[ref].nets()
+    ends = [(pins.one, pins.other) for pins in _pins(analysis, ref)] if _rated(analysis, ref) is not None else []
+    if analysis.kind(ref) == "capacitor" and len(nets) == 2 and not analysis.isolation.crossing(ref):
+        ends = [(nets[0], nets[1])] if "voltage" in analysis.choice[ref].ratings else []
+    for one, other in ends:
+        if analysis.stress.between(one, other) is None:
+            told = [analysis.stress.loose[net] for net in (one, other) if net in analysis.stress.loose]
             if told:
                 return told[0]
     return None
@@ -130,7 +134,7 @@ def _core(analysis: Analysis, ref: str) -> tuple[str, str] | None:
 
 def _loose(analysis: Analysis, clause: Clause, core: str, fact: str, refs: list[str]) -> Verdict:
     parts = (core, *refs)
-    because = f"{', '.join(refs)} stand on windings of {core}, and nothing bounds the voltages there"
+    because = f"{', '.join(refs)} stand on windings of {core} or on what these feed, and nothing bounds the voltages there"
     step = Step(because, tuple(analysis.design.parts[ref].fact for ref in parts))
     then = (("stated, and the ratings cover what follows", "pass"), ("stated, and one is too low", "fail"))
     supply = "BOM column Turns (1-2:128, 3-4:16)" if fact.startswith("turns") else "outputs in the declaration"

@@ -17,9 +17,9 @@ rating is judged by what stands here.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from itertools import product
+from itertools import permutations, product
 
 from checker.formulas.waveform import bottom, higher, lower, minus, plus, top
 from checker.model.fact import Fact
@@ -94,7 +94,15 @@ def cores(board: Board, sources: Mapping[str, Potential], line: Mapping[str, Pot
         found.loose.update(dict.fromkeys(ends, (ref, "voltage that one of its windings is rectified to")))
     found.nets = {net: known for net, known in found.nets.items() if not (net in sources and sources[net].held)}
     found.loose = {net: told for net, told in found.loose.items() if net not in found.nets and net not in sources}
+    known = {*sources, *found.nets, *found.rails}
+    found.loose.update(_fed(there, found.loose, known))
     return found
+
+
+def _fed(there: Sequence[Valve], loose: Mapping[str, tuple[str, str]], known: Collection[str]) -> dict[str, tuple[str, str]]:
+    """What rectifiers charge from windings that nothing bounds."""
+    ends = [pair for valve in there if not valve.closes for pair in permutations((valve.anode, valve.cathode))]
+    return {far: loose[near] for near, far in ends if near in loose and far not in loose and far not in known}
 
 
 def _ways(

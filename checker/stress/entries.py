@@ -21,8 +21,9 @@ def entries(board: Board, hazard: str = "mains") -> Mapping[str, Entry]:
     """Supply entries of the side with this hazard ("mains" or "dc"), by reference.
 
     A connector on that side is a candidate; an inlet, both poles named, a fuse, varistor or filter at a pole each speak for
-    it. The best win; a connector that nothing speaks for is the entry only when it is the only one. A further connector with
-    both poles named, or an inlet, whose poles no line conductor of these reaches must bring the supply in itself.
+    it, an integrated circuit at one of three or more nameless contacts against it. The best win; a connector that nothing
+    speaks for is the entry only when it is the only one. A further connector with both poles named, or an inlet, whose poles
+    no line conductor of these reaches must bring the supply in itself.
     """
     scored: list[tuple[int, str, Entry]] = []
     for ref, candidate in board.choice.items():
@@ -101,7 +102,8 @@ def _score(board: Board, kind: str, entry: Entry, hazard: str) -> int:
         board.kind(other) == "fuse" for net in entry.poles for other, _ in board.design.nets[net].pins if other in board.choice
     )
     named = (entry.line is not None and entry.neutral is not None) or (hazard == "dc" and _names_supply(board, entry))
-    score = 4 * (kind == "inlet") + 2 * named + 3 * ("fuse" in kinds or left_out)
+    signals = len(entry.poles) > 2 and not entry.lines and entry.neutral is None and bool(kinds & {"ic", "controller"})
+    score = 4 * (kind == "inlet") + 2 * named + 3 * ("fuse" in kinds or left_out) - 3 * signals
     return score + ("varistor" in kinds) + bool(kinds & {"filter", "common-mode-choke"}) + ("bridge" in kinds)
 
 

@@ -23,6 +23,9 @@ RESISTORS, REFERENCE, ZENER = 0.05, 0.02, 0.05  # tolerances when none is stated
 ZENER_MOST = 1.1  # of the nominal voltage while it clamps, tolerance and heat included (common practice, no source)
 LED = (1.0, 1.3)  # V, forward drop of a coupler's diode (common practice, no source)
 _BESIDE_VOLTS = frozenset("ISO OUT SEC A B C D P AUX MAIN DC VCC VDD VOUT V SYS LOGIC REG STBY SB DIG ANA EXT USB RAIL".split())
+_VOLTS = re.compile(r"(?<![\d.,x-])(\d{1,3}(?:[.,]\d{1,2})?) ?V(?![A-Za-z\d~])")
+_OUTPUT = re.compile(r"(?<![A-Za-z])(?:V?OUT|OUTPUT|SORTIE|AUSGANG|SALIDA|USCITA|V?OUT[+-])(?![A-Za-z])", re.IGNORECASE)
+TOUCHED = 60.0  # V; above this a connector's figure is rather its rating
 _PLAIN_FIGURE = re.compile(r"[+-]?(\d{1,3}V\d{0,2}|V\d{1,2}V?\d?)")
 
 SUPPLY_TRUST = 4
@@ -73,6 +76,7 @@ def rails(board: Board, grounds: Mapping[str, str]) -> Iterator[Rail]:
     for name, domain in board.isolation.domains.items():
         if name in grounds and domain.hazard != "mains":
             yield from _by_name(board, domain, grounds[name])
+            yield from _by_connector(board, domain, grounds[name])
 
 
 def grounds(board: Board) -> dict[str, str]:
@@ -305,3 +309,20 @@ def _by_name(board: Board, domain: Domain, back: str) -> Iterator[Rail]:
             volts = -volts
         step = Step(f"{net} is named after {volts:g} V", (board.design.nets[net].fact,), result=volts, unit="V", form="dc")
         yield _rail(net, back, volts, NAMED, step, 1)
+
+
+def _by_connector(board: Board, domain: Domain, back: str) -> Iterator[Rail]:
+    """The voltage that the text of an output connector of two nets states: `12V OUT`, `sortie LED 36V 550mA`."""
+    for ref in domain.parts:
+        part = board.design.parts[ref]
+        nets = part.nets()
+        if board.kind(ref) != "connector" or not part.fitted or len(nets) != 2 or back not in nets:
+            continue
+        for fact in (fact for fact in part.facts if fact.attribute in ("value", "description")):
+            text = str(fact.value)
+            found = {float(volts.replace(",", ".")) for volts in _VOLTS.findall(text)}
+            if len(found) == 1 and _OUTPUT.search(text) and (volts := found.pop()) <= TOUCHED:
+                net = nets[0] if nets[1] == back else nets[1]
+                step = Step(f"{ref} says {text[:60]!r}: {net} is at {volts:g} V", (fact,), result=volts, unit="V", form="dc")
+                yield _rail(net, back, volts, NAMED, step, 1)
+                break
