@@ -151,12 +151,25 @@ _SUPERCAP = re.compile(r"super\s?cap|ultra\s?cap|edlc|double.?layer|(?<![^\W_])[
 _LONG_BEFORE_COMMA = re.compile(r"(?<![0-9.,])([0-9]{4,7}),")
 
 
+_SCIENTIFIC = re.compile(  # 4.7E-7 and 0.00000047, as spreadsheets write them
+    r"(?<![\w.,])(?:[0-9]{1,6}(?:\.[0-9]{1,17})?[eE][+-][0-9]{1,2}|0\.000[0-9]{1,17})(?![0-9.,])"
+)
+_PREFIXES = {-12: "p", -9: "n", -6: "u", -3: "m", 0: "", 3: "k", 6: "M", 9: "G"}
+
+
+def _with_prefix(found: re.Match[str]) -> str:
+    """A figure with a power of ten as one with a prefix: `4.7E-7` is `470n`; as it stands where no prefix reaches it."""
+    value = Decimal(found[0])
+    power = value.adjusted() // 3 * 3
+    return f"{value.scaleb(-power).normalize():f}{_PREFIXES[power]}" if value and power in _PREFIXES else found[0]
+
+
 def decode(text: str, kind: str) -> Decoded | None:
     """The value that `text` gives a part of this kind (one of `model.candidate.KINDS`), or None when it gives none."""
     unit = _UNITS.get(kind)
     if unit is None:
         return None
-    text = plain(text)
+    text = _SCIENTIFIC.sub(_with_prefix, plain(text))
     if "," in text:
         text = _LONG_BEFORE_COMMA.sub(r"\1, ", text)  # `1206,100n` is a list, not a decimal comma
     found: _Found | None
