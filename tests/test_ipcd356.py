@@ -516,7 +516,7 @@ def test_real_boards_are_read_and_joined(name: str) -> None:
         (
             "mains-strip",
             {"K1", "K2", "K3", "K4", "PS1"},
-            {("fuse", ("RV1", "F1")), ("stored-charge", ("C1",))},
+            {("fuse", ("RV1", "F1")), ("stored-charge", ("C1", "F1"))},
             {("PS1", "R1"): 23.8522},
         ),
         ("engine-ecu", {"U4"}, set(), {}),

@@ -25,6 +25,7 @@ FORM = "netlist of lines"
 _WORD = re.compile(r"[^ \t\r\n\f\v]++")
 _SHOWN = 5
 _LOOKED_AT = 4  # hyphens of a reference
+_BARE = "a netlist of lines names nets and pins only: values, types and bodies must come from a bill of materials"
 _ROW = "a net, a TAB, then pins such as R1-2"
 
 
@@ -96,6 +97,7 @@ def read(blob: Blob) -> Reading:
         if row.strip(sniff.WHITE):
             _net(circuit, row, at)
     notes = [Note("encoding", note, (Source(blob.path),))] if note else []
+    notes.append(Note("skipped", _BARE, (Source(blob.path),)))
     return circuit.reading(blob, FORM, (*notes, *_doubtful(circuit.places())))
 
 

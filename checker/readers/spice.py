@@ -35,7 +35,7 @@ from checker.readers.spice_lines import Card, cards
 FORM = "SPICE netlist"
 
 _REMEDY = "A netlist of the schematic editor says more than one of a simulator; export that if there is one."
-_AUTOMATIC = re.compile(r"N[0-9]{3}|NC_[0-9]+")  # names a schematic editor gave
+_AUTOMATIC = re.compile(r"N[0-9]{3}|\$N_[0-9]+|NC_[0-9]+|(?:Net|unconnected)-_.*_")  # names that schematic editors give
 _OPENING = frozenset({".include", ".inc", ".lib", ".incl"})
 _COMMANDS = frozenset(
     ".param .params .func .tran .ac .dc .op .noise .tf .four .ic .nodeset .options .option .opt .temp .step .meas .measure .probe "

@@ -323,6 +323,8 @@ def _by_connector(board: Board, domain: Domain, back: str) -> Iterator[Rail]:
             found = {float(volts.replace(",", ".")) for volts in _VOLTS.findall(text)}
             if len(found) == 1 and _OUTPUT.search(text) and (volts := found.pop()) <= TOUCHED:
                 net = nets[0] if nets[1] == back else nets[1]
+                if not (ground_like(back) or (net.endswith("+") and back.endswith("-"))):
+                    continue  # which of the two is above the other is not said
                 step = Step(f"{ref} says {text[:60]!r}: {net} is at {volts:g} V", (fact,), result=volts, unit="V", form="dc")
                 yield _rail(net, back, volts, NAMED, step, 1)
                 break
