@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from contextlib import suppress
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from checker import limits, plugins
+from checker import limits, pipeline, plugins, rulesets, testing
 from checker.api import verify
 from checker.assemble.bom_match import CUT
 from checker.assemble.join import assemble
@@ -19,7 +20,7 @@ from checker.files import read as read_file
 from checker.model.circuit import Design
 from checker.model.declaration import Declaration
 from checker.model.fact import Fact, Source, Trust
-from checker.model.reading import NOTE_KINDS, PadRecord, Reading, Row
+from checker.model.reading import NOTE_KINDS, Note, PadRecord, Reading, Row
 from checker.readers import ipcd356, sniff
 from checker.readers.ipcd356_records import CODES
 
@@ -537,3 +538,15 @@ def test_what_is_said_of_real_boards(
     if name == "mains-strip":
         side = {net: domain.side for domain in report.domains for net in domain.nets}
         assert (side["NET-(J1-PIN_1)"], side["S1-AC{SLASH}L)"], side["GND"]) == ("primary", "primary", "secondary")
+
+
+def test_one_net_on_both_sides_of_a_barrier_is_a_question_where_its_name_may_be_cut() -> None:
+    path = Path(__file__).resolve().parents[1] / "fixtures" / "rules" / "barrier-insulation.yaml"
+    (case,) = [case for case in testing.load_cases(path).cases if case.name == "the output return is the primary return"]
+    netlist, *more = testing.readings(case.parts, case.rows, case.pads)
+    cut = replace(netlist, notes=(*netlist.notes, Note("nets-merged", "names may be cut", (), nets=("PGND",))))
+    outcomes = {}
+    for given in (netlist, cut):
+        found = pipeline.judge("board", [given, *more], case.declaration, rulesets.load_all(case.rulesets), ()).report.verdicts
+        (outcomes[given is cut],) = [v.outcome for v in found if v.rule == "barrier-insulation" and v.nets == ["PGND"]]
+    assert outcomes == {False: "fail", True: "open"}

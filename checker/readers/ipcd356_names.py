@@ -86,7 +86,7 @@ class Aliases:
 def _note(kind: str, text: str, nets: Mapping[str, int], path: str) -> Note:
     shown = list(nets)[:_SHOWN]
     names = ", ".join(neutral(name, 40) for name in shown) + (", ..." if len(nets) > _SHOWN else "")
-    return Note(kind, f"{text} ({names})", tuple(Source(path, nets[name]) for name in shown), nets=tuple(shown))
+    return Note(kind, f"{text} ({names})", tuple(Source(path, nets[name]) for name in shown), nets=tuple(nets))
 
 
 def told_apart(records: Sequence[Record], path: str) -> list[Note]:

@@ -5,7 +5,8 @@ part joins or hangs across two domains, when one net is on both sides of insulat
 two sides that must be kept apart, or when protective earth meets the mains by anything but a classed capacitor or a surge
 limiter. It passes for each barrier that only insulating parts and capacitors cross (the capacitors have a rule of their own).
 
-Open: a part of unknown type lies where an isolator would lie; the question names it. Open with level note: an insulating
+Open: a part of unknown type lies where an isolator would lie; the question names it. Open too where a form of netlist may have
+made one net of two (names that were cut, node 0 of a simulation) and that net is on both sides. Open with level note: an insulating
 part has both sides in one circuit and nothing tells that it should insulate there.
 
 To settle it: take the part out, or declare what it is (`parts: {U1: {kind: digital-isolator}}`).
@@ -99,6 +100,17 @@ def _of_short(analysis: Analysis, clause: Clause, short: Short) -> Verdict:
             what = "Two circuits that must be kept apart are joined."
         because = short.step.text + (f"; shortest path {way}" if way and way not in short.step.text else "")
         subject = Subject(short.chain or short.parts, short.nets, key=tuple(sorted({*short.chain, *short.parts})) or short.nets)
+        merged = {net for note in analysis.design.notes if note.kind == "nets-merged" for net in note.nets} & set(short.nets)
+        if merged and not short.chain:
+            net = min(merged)
+            missing = Missing(
+                f"whether {net} is one net on the board",
+                "the netlist of the schematic (S-expression, XML or EDIF) in place of this form, which may have made one net of two",
+                (("one net", "fail"), ("two nets", "judged as two circuits")),
+                short.parts[0] if short.parts else "",
+            )
+            text = f"{short.step.text}; the form of the netlist may have made {net} one net of two"
+            return clause.opens(subject, what, text, Step(text, (short.step,)), missing)
         return clause.fails(subject, what, because, short.step, found=Words(way or ", ".join(short.nets)))
     missing = Missing(
         "whether this part is meant to insulate",
