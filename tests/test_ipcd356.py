@@ -546,7 +546,7 @@ def test_one_net_on_both_sides_of_a_barrier_is_a_question_where_its_name_may_be_
     netlist, *more = testing.readings(case.parts, case.rows, case.pads)
     cut = replace(netlist, notes=(*netlist.notes, Note("nets-merged", "names may be cut", (), nets=("PGND",))))
     outcomes = {}
-    for given in (netlist, cut):
-        found = pipeline.judge("board", [given, *more], case.declaration, rulesets.load_all(case.rulesets), ()).report.verdicts
-        (outcomes[given is cut],) = [v.outcome for v in found if v.rule == "barrier-insulation" and v.nets == ["PGND"]]
+    for taken in (netlist, cut):
+        found = pipeline.judge("board", [taken, *more], case.declaration, rulesets.load_all(case.rulesets), ()).report.verdicts
+        (outcomes[taken is cut],) = [v.outcome for v in found if v.rule == "barrier-insulation" and v.nets == ["PGND"]]
     assert outcomes == {False: "fail", True: "open"}

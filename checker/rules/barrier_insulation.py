@@ -105,7 +105,7 @@ def _of_short(analysis: Analysis, clause: Clause, short: Short) -> Verdict:
             net = min(merged)
             missing = Missing(
                 f"whether {net} is one net on the board",
-                "the netlist of the schematic (S-expression, XML or EDIF) in place of this form, which may have made one net of two",
+                "the netlist of the schematic (S-expression, XML, EDIF): this form may have made one net of two",
                 (("one net", "fail"), ("two nets", "judged as two circuits")),
                 short.parts[0] if short.parts else "",
             )
