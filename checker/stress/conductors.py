@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping
 
+from checker.model.names import ground_like
 from checker.model.rule import Board
 from checker.model.terminals import named
 from checker.stress.potential import SENSE, SMOOTHING
 
 _SWITCHES = frozenset({"mosfet", "igbt", "bipolar"})
+SWITCH_PINS = frozenset("DRAIN D SW HV COLLECTOR C D1 D2 SW1 SW2 DRAIN1 DRAIN2 LX PH".split())
 _JOINS = frozenset({"fuse", "resettable-fuse", "jumper", "net-tie", "ferrite", "thermistor"})
 
 
@@ -58,7 +60,11 @@ def _windings(board: Board, ref: str) -> Iterator[tuple[str, str]]:
 
 
 def _held(board: Board) -> frozenset[str]:
-    """Nets with a smoothing capacitor: a choke between two of them carries direct current and drops none of its voltage."""
+    """Nets with a smoothing capacitor: a choke between two of them carries direct current and drops none of its voltage.
+
+    One with an end on a switch or a winding couples on what swings there, unless its other end is a return.
+    """
+    swinging, returns = _swinging(board), _returns(board)
     found: set[str] = set()
     for ref, candidate in board.choice.items():
         value = candidate.value
@@ -68,7 +74,34 @@ def _held(board: Board) -> frozenset[str]:
             and value is not None
             and float(value.value) >= SMOOTHING
         ):
-            found.update(board.design.parts[ref].nets())
+            nets = board.design.parts[ref].nets()
+            if swinging.isdisjoint(nets) or not returns.isdisjoint(nets):
+                found.update(nets)
+    return frozenset(found)
+
+
+def _swinging(board: Board) -> frozenset[str]:
+    """Nets on windings, and on drains, collectors and switch pins."""
+    found: set[str] = set()
+    for ref, candidate in board.choice.items():
+        part = board.design.parts[ref]
+        if part.fitted and candidate.kind == "transformer":
+            found.update(part.nets())
+        elif part.fitted and candidate.kind in _SWITCHES:
+            found.update(named(part, ("D", "C", "DRAIN", "COLLECTOR")))
+        elif part.fitted and candidate.kind in ("controller", "ic", "regulator"):
+            found.update(named(part, SWITCH_PINS))
+    return frozenset(found)
+
+
+def _returns(board: Board) -> frozenset[str]:
+    """Per circuit the net with most pins, and every net that is named as ground."""
+    found: set[str] = set()
+    for domain in board.isolation.domains.values():
+        nets = [net for net in domain.nets if net in board.design.nets]
+        found.update(net for net in nets if ground_like(net))
+        if nets:
+            found.add(max(nets, key=lambda net: (len(board.design.nets[net].pins), net)))
     return frozenset(found)
 
 

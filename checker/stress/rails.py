@@ -13,10 +13,10 @@ from dataclasses import dataclass
 from checker.model.declaration import Output
 from checker.model.domain import Domain
 from checker.model.fact import Fact
-from checker.model.names import ground_like, supply_volts, tokens
+from checker.model.names import entry_like, ground_like, supply_volts, tokens
 from checker.model.rule import Board
 from checker.model.step import Step
-from checker.model.terminals import ANODE, CATHODE, anode_and_cathode, coupler, named
+from checker.model.terminals import ANODE, CATHODE, GROUND, SUPPLY, anode_and_cathode, coupler, named
 
 NAMED = 0.10  # tolerance of a voltage that only a name states (common practice, no source)
 RESISTORS, REFERENCE, ZENER = 0.05, 0.02, 0.05  # tolerances when none is stated (common practice, no source)
@@ -80,7 +80,8 @@ def rails(board: Board, grounds: Mapping[str, str]) -> Iterator[Rail]:
 
 
 def grounds(board: Board) -> dict[str, str]:
-    """Domain name -> its reference net: the return of a declared output, else a net named as ground, else the busiest net."""
+    """Domain name -> its reference net: the return of a declared output, else a net that is ground by its name, or by what hangs on
+    it, else the busiest net. Ties go by name, so that every form of a file gives the same."""
     found: dict[str, str] = {}
     domain_of = board.isolation.domain_of
     for output in board.declaration.outputs:
@@ -88,11 +89,37 @@ def grounds(board: Board) -> dict[str, str]:
             found.setdefault(domain_of[output.return_net], output.return_net)
     for name, domain in board.isolation.domains.items():
         if name not in found and domain.nets and domain.hazard != "mains":
-            busy = {net: len(board.design.nets[net].pins) for net in domain.nets if net in board.design.nets}
-            alike = [net for net in busy if ground_like(net)] or list(busy)
+            nets = [net for net in domain.nets if net in board.design.nets]
+            low = {net: _low(board, net) for net in nets}
+            alike = [net for net in nets if ground_like(net)] or [net for net in nets if low[net] > 0] or nets
             if alike:
-                found[name] = min(alike, key=lambda net: (-busy[net], supply_volts(net) is not None or net[:1] in "V+", net))
+                found[name] = min(
+                    alike,
+                    key=lambda net: (
+                        -max(low[net], 0) if not ground_like(net) else 0,
+                        -len(board.design.nets[net].pins),
+                        supply_volts(net) is not None or net[:1] in "V+",
+                        net,
+                    ),
+                )
     return found
+
+
+def _low(board: Board, net: str) -> int:
+    """How many parts say by the names of their pins that a net is ground, less those that say that it is a supply."""
+    score = 0
+    for ref, number in board.design.nets[net].pins:
+        if ref not in board.choice or not board.design.parts[ref].fitted:
+            continue
+        kind = board.kind(ref)
+        name = next((pin.name.strip().upper() for pin in board.design.parts[ref].pins if pin.number == number), "")
+        if kind in ("ic", "controller", "regulator", "module"):
+            score += (name in GROUND) - (name in SUPPLY)
+        elif kind == "capacitor":
+            score += (name == "-") - (name == "+")
+        elif kind == "shunt-reference":
+            score += name in ANODE
+    return score
 
 
 def _declared(board: Board, output: Output, grounds: Mapping[str, str]) -> Iterator[Rail]:
@@ -119,6 +146,8 @@ def _direct_supply(board: Board, grounds: Mapping[str, str]) -> Iterator[Rail]:
                 nets = [net for net in board.design.parts[ref].nets() if net in domain.nets]
                 if board.kind(ref) == "connector" and len(nets) == 2 and back in nets:
                     net = nets[1 - nets.index(back)]
+                    if not _is_above(board, net, back):
+                        continue
                     fact = Fact("supply", supply.voltage.text or f"{supply.voltage.high:g} V", supply.source)
                     step = Step(
                         f"the supply of {supply.voltage.high:g} V comes in at {ref} between {net} and {back}",
@@ -126,6 +155,13 @@ def _direct_supply(board: Board, grounds: Mapping[str, str]) -> Iterator[Rail]:
                     )  # fmt: skip
                     yield Rail(net, back, supply.voltage.high, supply.voltage.high, step, SUPPLY_TRUST)
                     return
+
+
+def _is_above(board: Board, net: str, back: str) -> bool:
+    """Whether anything says which of two nets is the higher: a declared return, names, pins of circuits, polarised capacitors."""
+    returned = any(output.return_net == back for output in board.declaration.outputs)
+    named_so = ground_like(back) or supply_volts(net) is not None or entry_like(net) or (net.endswith("+") and back.endswith("-"))
+    return returned or named_so or _low(board, back) > 0 or _low(board, net) < 0
 
 
 def _regulator(board: Board, ref: str) -> Iterator[Rail]:

@@ -10,11 +10,11 @@ from checker.model.rule import Board
 from checker.model.step import Step
 from checker.model.terminals import GROUND, named
 from checker.stress.buses import diodes
+from checker.stress.conductors import SWITCH_PINS
 from checker.stress.potential import DROPS, SENSE, SERIES, Potential
 
 DRIVE = 3  # parts in series between a winding and what it drives (common practice, no source)
 CROWD = 8  # parts on one net, beyond which it drives nothing but is a ground or a rail
-_SWITCH_PINS = frozenset("DRAIN D SW HV COLLECTOR C D1 D2 SW1 SW2 DRAIN1 DRAIN2".split())
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,7 +70,7 @@ def valves(board: Board, sources: Mapping[str, Potential], same: Mapping[str, st
                 control = frozenset(map(conductor, _driving(board, gate[0], ref))) if len(gate) == 1 else frozenset()
                 yield Valve(conductor(source[0]), conductor(drain[0]), True, control)
         elif candidate.kind in ("controller", "ic", "regulator"):
-            drains, grounds = named(part, _SWITCH_PINS), named(part, GROUND | {"S", "SOURCE"})
+            drains, grounds = named(part, SWITCH_PINS), named(part, GROUND | {"S", "SOURCE"})
             for net in drains if grounds and len(drains) <= 2 else ():
                 yield Valve(conductor(grounds[0]), conductor(net), True)
 
