@@ -50,9 +50,6 @@ WITHOUT_NAMES = {
     "through-insulation": "the same",
     "pad-span": "what is needed on the pads, for the same reason",
 }
-# Passes for the wrong reason: the bootstrap capacitor of a step-down controller without names
-# of pins, whose switched end is taken for the output (conductors.py counts that capacitor as one that smooths).
-BOOTSTRAP = {("isolated-fieldbus-node", "C2"), ("vehicle-charger-control", "C5")}
 
 
 def reading(form: str, trial: Trial) -> Reading:
@@ -137,7 +134,7 @@ def test_poorer_forms_only_lose_what_rests_on_names_of_pins(name: str, form: str
     full, poor = essence(report(name, "sexpr")), essence(report(name, form))
     lost, found = full - poor, poor - full
     assert {rule for rule, _, _ in lost} <= set(WITHOUT_NAMES), lost
-    gained = [key for key in found if key[2] != "open" and (name, *key[1]) not in BOOTSTRAP]
+    gained = [key for key in found if key[2] != "open"]
     assert not gained
     settled = {(rule, part) for rule, parts, _ in lost for part in parts}
     assert all(settled & {(rule, part) for part in parts} for rule, parts, outcome in found if outcome == "open")

@@ -81,7 +81,7 @@ def _held(board: Board) -> frozenset[str]:
 
 
 def _swinging(board: Board) -> frozenset[str]:
-    """Nets on windings, and on drains, collectors and switch pins."""
+    """Nets on windings, and on drains, collectors, switch pins, and pins of circuits that have no name."""
     found: set[str] = set()
     for ref, candidate in board.choice.items():
         part = board.design.parts[ref]
@@ -91,6 +91,7 @@ def _swinging(board: Board) -> frozenset[str]:
             found.update(named(part, ("D", "C", "DRAIN", "COLLECTOR")))
         elif part.fitted and candidate.kind in ("controller", "ic", "regulator"):
             found.update(named(part, SWITCH_PINS))
+            found.update(pin.net for pin in part.pins if pin.net is not None and not pin.name.strip())
     return frozenset(found)
 
 
