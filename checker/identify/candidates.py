@@ -11,6 +11,7 @@ from collections.abc import Callable, Iterator, Sequence
 from typing import Any
 
 from checker.identify import catalogue, described, kinds, marks, packages, ratings, values, windings
+from checker.identify.winding_names import named_turns
 from checker.model.candidate import Candidate, Disagreement, Mark, Winding
 from checker.model.circuit import Design, Part
 from checker.model.declaration import Declaration, DeclaredPart
@@ -86,6 +87,9 @@ def _candidate(part: Part, facts: Sequence[Fact], declared: DeclaredPart | None,
     if kind == "transformer":
         rated.update(_rated_voltages(texts, once))
     wound = declared.windings if declared is not None and declared.windings else _windings(facts, once)
+    if kind == "transformer" and not any(winding.turns for winding in wound):
+        said = tuple(_best(facts, attribute) for attribute in ("turns", "description", "value"))
+        wound = once(named_turns, said, tuple((pin.number, pin.name) for pin in part.pins)) or wound
     return Candidate(
         kind=kind,
         label=label,

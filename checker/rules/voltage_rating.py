@@ -137,7 +137,11 @@ def _loose(analysis: Analysis, clause: Clause, core: str, fact: str, refs: list[
     because = f"{', '.join(refs)} stand on windings of {core} or on what these feed, and nothing bounds the voltages there"
     step = Step(because, tuple(analysis.design.parts[ref].fact for ref in parts))
     then = (("stated, and the ratings cover what follows", "pass"), ("stated, and one is too low", "fail"))
-    supply = "BOM column Turns (1-2:128, 3-4:16)" if fact.startswith("turns") else "outputs in the declaration"
+    supply = "outputs in the declaration"
+    if fact.startswith("turns"):
+        supply = "BOM column Turns (1-2:128, 3-4:16)"
+    elif fact.endswith("is charged to"):
+        supply = "rails in the declaration"
     missing = Missing(fact, supply, then, core)
     return clause.opens(Subject(parts, key=(core, "windings")), _WHAT, because, step, missing)
 

@@ -10,8 +10,8 @@ from checker.formulas.waveform import Wave, bottom, higher, largest, least, lowe
 from checker.model.rule import Board
 from checker.model.step import Step
 from checker.model.stress import Bounds, Voltage
-from checker.stress.cores import CITATION
-from checker.stress.potential import Potential
+from checker.stress.plateaus import furthest, limits_of, reached
+from checker.stress.potential import CITATION, Potential
 from checker.stress.spread import Field
 from checker.stress.strings import String, facts
 
@@ -97,28 +97,21 @@ class Voltages:
         return self._of_core(one, other) or self._of_potentials(one, other)
 
     def _of_core(self, one: str, other: str) -> Voltage | None:
-        """The plateau of the voltage between two nets of which a winding carries one or both, spikes aside."""
+        """The plateau of the voltage between two nets of which a core moves one or both, spikes aside."""
         first, second = self.potential(one, usual=True), self.potential(other, usual=True)
         if first is None or second is None or first.frame != second.frame:
             return None
-        swings = [first.swing, second.swing]
-        known = next((swing for swing in swings if swing is not None), None)
-        if known is None or any(swing is not None and swing.core != known.core for swing in swings):
+        known = next((of for end in (first, second) if (of := end.fed or end.swing) is not None), None)
+        if known is None or any(of.core != known.core for end in (first, second) if (of := end.fed or end.swing) is not None):
             return None
-        hard = [
-            (swing.low, swing.high) if swing is not None else _hard(self.potential(net, usual=False))
-            for net, swing in zip((one, other), swings, strict=True)
-        ]
-        if hard[0] is None or hard[1] is None:
+        limits = [limits_of(end, hard=self.potential(net, usual=False), like=known) for net, end in ((one, first), (other, second))]
+        if limits[0] is None or limits[1] is None:
             return None
-        low, high = minus(hard[0][0], hard[1][1]), minus(hard[0][1], hard[1][0])
         most, sure, spikes = [], [], []
-        for at, way in enumerate(known.ways):
-            turns = sum(sign * swing.ways[at].turns for sign, swing in zip((1, -1), swings, strict=True) if swing is not None)
-            most += [top(largest(plus(low, turns * e), plus(high, turns * e))) for e in (way.low, way.high)]
-            swung = [known.spike * turns * e for e in (way.low, way.high)]
-            spikes += [top(largest(plus(low, volts), plus(high, volts))) for volts in swung]
-            sure.append(max(top(least(plus(low, turns * e), plus(high, turns * e))) for e in (way.surely_low, way.surely_high)))
+        for ways in zip(limits[0], limits[1], strict=True):
+            most.append(furthest(*ways, 1.0))
+            spikes.append(furthest(*ways, known.spike))
+            sure.append(reached(*ways))
         if not math.isfinite(max(most)):
             return None
         return _plateau(one, other, min(sure), max(most), max(spikes), (first.step, second.step))
@@ -156,10 +149,6 @@ class Voltages:
             self._figures[waves] = _figures(never, sure)
         figures = self._figures[waves]
         return None if figures is None else _told(one, other, figures, (soft[0].step, soft[1].step), self._frequency)
-
-
-def _hard(known: Potential | None) -> tuple[Wave, Wave] | None:
-    return None if known is None else (known.low, known.high)
 
 
 def _plateau(one: str, other: str, surely: float, most: float, spike: float, steps: tuple[Step, ...]) -> Voltage:

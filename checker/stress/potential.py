@@ -9,6 +9,8 @@ from typing import NamedTuple
 from checker.formulas.waveform import Wave, bottom, top
 from checker.model.step import Step
 
+CITATION = "equal volts per turn, mean zero over a cycle (published method)"
+
 
 class Turns(NamedTuple):
     """Of one set of winding directions. turns: with their sign. low <= volts per turn <= high at every moment of a switching
@@ -38,13 +40,40 @@ class Swing:
     spike: float = 1.0
 
 
+class Line(NamedTuple):
+    """low + turns x e .. high + turns x e: a potential by the volts per turn e of a core."""
+
+    low: Wave
+    high: Wave
+    turns: float
+
+
+class Limits(NamedTuple):
+    """Of one set of winding directions. e: the range of the volts per turn. above: each member is an upper bound, the highest of
+    its lines; below: each member is a lower bound, the lowest of its lines."""
+
+    e: Turns
+    above: tuple[tuple[Line, ...], ...]
+    below: tuple[tuple[Line, ...], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Fed:
+    """How a net that rectifiers feed from windings follows the core. ways: as those of the swings of that core."""
+
+    core: str
+    ways: tuple[Limits, ...]
+    spike: float
+
+
 @dataclass(frozen=True, slots=True)
 class Potential:
     """low <= potential <= high at every moment of the mains cycle, V against the reference of `frame`, in normal use at the
     highest supply voltage.
 
     held: something holds the net at a steady potential (a supply, a smoothing capacitor). output: it lives on what the board
-    transforms or regulates, no supply feeds it. swing: what a winding has in low and high, None for a net on none.
+    transforms or regulates, no supply feeds it. swing: what a winding has in low and high, None for a net on none. fed: how it
+    follows a core whose rectifiers feed it before a choke, None elsewhere.
     """
 
     frame: str
@@ -54,6 +83,7 @@ class Potential:
     held: bool = False
     output: bool = False
     swing: Swing | None = None
+    fed: Fed | None = None
 
     @property
     def bounded(self) -> bool:
@@ -70,6 +100,7 @@ class Drops:
 
     diode: float = 1.2  # one rectifier diode at surge current
     forward: float = 1.5  # a clamping diode while it conducts
+    schottky: float = 0.9  # the same for a Schottky diode
     sense: float = 5.0  # across a sense resistor of at most SENSE ohm
     light: float = 6.0  # across a light-emitting diode of a coupler or lamp, either way round
 
@@ -77,4 +108,5 @@ class Drops:
 DROPS = Drops()
 SENSE = 10.0  # ohm; at most this much in series with a switch is a sense resistor (common practice, no source)
 SERIES = 100.0  # ohm; at most this much in a line conductor limits inrush and carries the line on (common practice, no source)
+COUPLING = 1e-6  # F; a capacitor in series with a winding from here on keeps its voltage over a cycle (common practice, no source)
 SMOOTHING = 47e-9  # F; from here on a capacitor holds a rectified voltage (common practice, no source)

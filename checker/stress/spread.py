@@ -207,7 +207,7 @@ def _narrowed(found: Field, sources: Mapping[str, Potential], net: str, far: str
     step = Step(
         f"in normal use {net} keeps within {max(up, down):g} V of {far}, for which a part between them is rated", (there.step,)
     )
-    found.usual[net] = Potential(known.frame, low, high, step, swing=known.swing)
+    found.usual[net] = Potential(known.frame, low, high, step, swing=known.swing, fed=known.fed)
     return True
 
 

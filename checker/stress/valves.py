@@ -2,32 +2,47 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from checker.formulas.waveform import plus
 from checker.model.rule import Board
 from checker.model.step import Step
-from checker.model.terminals import GROUND, named
+from checker.model.terminals import GROUND, SUPPLY, named
 from checker.stress.buses import diodes
 from checker.stress.conductors import SWITCH_PINS
 from checker.stress.potential import DROPS, SENSE, SERIES, Potential
 
 DRIVE = 3  # parts in series between a winding and what it drives (common practice, no source)
 CROWD = 8  # parts on one net, beyond which it drives nothing but is a ground or a rail
+_DRIVER_PINS = frozenset("OUT OUTA OUTB OUT1 OUT2 GATE DRV DRIVE LO".split())  # between supply and ground of their circuit
 
 
 @dataclass(frozen=True, slots=True)
 class Valve:
     """Conducts from anode to cathode; closes: a switch, which can be closed both ways.
 
-    control: conductors that drive the gate or base of a switch over resistors and capacitors.
+    control: conductors that drive the gate or base of a switch over resistors and capacitors. drop: at most, V, while it conducts.
     """
 
     anode: str
     cathode: str
     closes: bool
     control: frozenset[str] = frozenset()
+    drop: float = DROPS.forward
+
+
+_SCHOTTKY = re.compile(
+    r"schottky|(?<![A-Za-z0-9])(?:1N58(?:1[7-9]|2[0-5])|B58(?:17|18|19)|(?:SS|SK|SB|B)[1-5][2-6]\w?|MBR\w*\d{3,}\w*)(?![A-Za-z0-9])",
+    re.I,
+)
+
+
+def drop(board: Board, ref: str) -> float:
+    """The most that a rectifier drops: less for a Schottky diode, by its symbol, its type or its description."""
+    texts = (board.design.parts[ref].text(name) for name in ("symbol", "value", "description"))
+    return DROPS.schottky if board.kind(ref) == "diode" and any(map(_SCHOTTKY.search, texts)) else DROPS.forward
 
 
 def _near(board: Board, sources: Mapping[str, Potential], same: Mapping[str, str]) -> dict[str, str]:
@@ -62,7 +77,7 @@ def valves(board: Board, sources: Mapping[str, Potential], same: Mapping[str, st
             continue
         if candidate.kind in ("diode", "bridge"):
             for anode, cathode in diodes(board, ref):
-                yield Valve(conductor(anode), conductor(cathode), False)
+                yield Valve(conductor(anode), conductor(cathode), False, drop=drop(board, ref))
         elif candidate.kind in ("mosfet", "igbt", "bipolar"):
             drain, source = named(part, ("D", "C", "DRAIN", "COLLECTOR")), named(part, ("S", "E", "SOURCE", "EMITTER"))
             if len(drain) == len(source) == 1:
@@ -73,6 +88,10 @@ def valves(board: Board, sources: Mapping[str, Potential], same: Mapping[str, st
             drains, grounds = named(part, SWITCH_PINS), named(part, GROUND | {"S", "SOURCE"})
             for net in drains if grounds and len(drains) <= 2 else ():
                 yield Valve(conductor(grounds[0]), conductor(net), True)
+            supplies = named(part, SUPPLY)
+            for net in named(part, _DRIVER_PINS) if grounds and len(supplies) == 1 else ():
+                yield Valve(conductor(grounds[0]), conductor(net), True)
+                yield Valve(conductor(net), conductor(supplies[0]), True)
 
 
 def _driving(board: Board, gate: str, switch: str) -> set[str]:

@@ -25,13 +25,13 @@ class Section:
 
 
 def sections(board: Board, ref: str, same: Mapping[str, str]) -> list[Section]:
-    """The sections of a core; empty when the turns of one winding are neither stated nor follow from rated voltages."""
+    """The sections of those windings of a core whose turns are stated or follow from rated voltages."""
     at = {pin.number: pin.net for pin in board.design.parts[ref].pins}
     found = []
     for number, winding in enumerate(board.choice[ref].windings or _by_sides(board, ref)):
         turns = winding.turns or (_rated_turns(board, ref, [at.get(pin) for pin in winding.pins]),) * (len(winding.pins) - 1)
         if len(turns) != len(winding.pins) - 1 or not all(turns):
-            return []
+            continue
         for count, (first, second) in zip(turns, pairwise(winding.pins), strict=True):
             one, two = at.get(first), at.get(second)
             if one is not None and two is not None:
