@@ -190,6 +190,7 @@ def test_a_mains_supply_is_judged_as_from_its_first_form(tmp_path: Path) -> None
         ("(edifVersion 2 0 0)", "(edifVersion 4 0 0)", ("a.edf:1", "the version of EDIF is not known", "2 0 0")),
         ("(keywordLevel 0)", "(keywordLevel 1)", ("defines keywords of its own",)),
         ("(instanceRef I2)", "(instanceRef I7)", ("joins an instance that is not there", "I7")),
+        ("(net N2 (joined", "(net N2 (joind", ("a net holds a form that is not known there", "joind")),
         ("(portRef B ", "(portRef Q ", ("joins a port that is not there", "Q")),
         ("(instance I2", "(instance I1", ("an instance is given twice",)),
         ('"4k7"', '"4k7', ("not closed",)),

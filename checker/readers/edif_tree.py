@@ -34,6 +34,7 @@ _SILENT = frozenset(
     "permutable simulate timing weakjoined mustjoin figure boundingbox commentgraphics pagesize annotate portimplementation "
     "display nettype criticality origin".split()
 )
+_OF_NET = _SILENT | {"rename", "array", "joined", "net", "instance", "netdelay", "viewref", "cellref", "name"}
 _PIN_NUMBERS = frozenset({"pinnumber", "pinno", "pin", "no", "num", "packagepin", "padno", "pad"})
 
 
@@ -212,6 +213,9 @@ class Library:
 
     def _net(self, item: Form) -> Join:
         named = self.place.named(item[1] if len(item) > 1 else "", item, "a net")
+        for inner in item.forms():
+            if inner.keyword not in _OF_NET:  # a misspelt `joined` would lose a connection without a word
+                raise self.place.wrong("a net holds a form that is not known there", inner, "(joined (portRef ...))")
         made = Join(named, item.line, [side for joined in item.children("joined") for side in self._sides(joined)], self._page)
         for inner in item.children("net"):
             made.sides += self._net(inner).sides
